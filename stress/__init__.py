@@ -1,0 +1,1 @@
+"""capstress: what every capacitor of a piece of equipment really bears."""

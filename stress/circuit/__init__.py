@@ -1,0 +1,1 @@
+"""Netlist and part sheet to a circuit of positions and parts. Nothing here simulates."""

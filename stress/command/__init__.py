@@ -1,0 +1,1 @@
+"""The command line: options to arguments, findings to exit status."""

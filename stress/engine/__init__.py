@@ -1,0 +1,1 @@
+"""Cases to answers: decks, ngspice, steady states, workers."""

@@ -1,0 +1,1 @@
+"""Results, limits and policies to findings, risk order and explanation."""

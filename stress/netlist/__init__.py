@@ -1,0 +1,1 @@
+"""Lines to cards to an expanded flat netlist. Knows no electricity."""

@@ -1,0 +1,52 @@
+"""What a part can stand, and who says so."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import StrEnum
+
+
+class Rating(StrEnum):
+    """The rating system of a limit, which decides the condition it is judged in."""
+
+    DESIGN_CENTRE = "design-centre"
+    DESIGN_MAXIMUM = "design-maximum"
+    ABSOLUTE = "absolute"
+
+
+# The name of every stress, with the unit of its value. `Limit`s and stresses share these keys.
+STRESSES = {
+    "plate_W": "W",
+    "screen_W": "W",
+    "grid_W": "W",
+    "grid_A": "A",
+    "cathode_A": "A",
+    "plate_V": "V",
+    "screen_V": "V",
+    "heater_cathode_V": "V",
+    "power_W": "W",
+    "voltage_V": "V",
+    "current_A": "A",
+    "average_A": "A",
+    "peak_A": "A",
+    "reverse_V": "V",
+    "ripple_A": "A",
+}
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Limit:
+    """The largest value of one stress.
+
+    Attributes:
+        value: In the unit of `STRESSES[stress]`.
+        source: Where it comes from, in words that can be printed: "sheet", or the published
+            source of the type table, or what was assumed.
+        rating: The rating system.
+        assumed: True when nobody stated it; then it never makes a critical leakage.
+    """
+
+    value: float
+    source: str
+    rating: Rating = Rating.DESIGN_CENTRE
+    assumed: bool = False

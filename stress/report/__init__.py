@@ -1,0 +1,1 @@
+"""One renderer each: terminal, JSON, CSV, HTML. Decides nothing, computes nothing."""

@@ -1,0 +1,1 @@
+"""The questions: functions from a circuit and a solver to frozen results."""
