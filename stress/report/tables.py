@@ -1,0 +1,316 @@
+"""The tables of a review: one source for the terminal, the page and the CSV files."""
+
+from __future__ import annotations
+
+import csv
+from collections.abc import Iterator
+from dataclasses import dataclass
+from pathlib import Path
+
+from stress.circuit.circuit import Part, Position
+from stress.parts.limit import Limit, Rating
+from stress.report import words
+from stress.report.words import amount
+from stress.study.result import Failure, Review
+
+NARROW, WIDE, PAGE, FILE = "narrow", "wide", "page", "file"
+SHOWN = frozenset({NARROW, WIDE, PAGE})
+BROAD = frozenset({WIDE, PAGE})
+EVERYWHERE = SHOWN | {FILE}
+BUT_NARROW = BROAD | {FILE}
+
+
+@dataclass(frozen=True, slots=True)
+class Column:
+    """One column: `key` heads it in CSV files, `title` elsewhere; `places` is where it shows."""
+
+    key: str
+    title: str
+    number: bool = False
+    places: frozenset[str] = EVERYWHERE
+
+
+@dataclass(frozen=True, slots=True)
+class Cell:
+    """What people read, and the same as the SI number (or text) for files and sorting."""
+
+    text: str
+    value: float | str | None = None
+
+    @property
+    def written(self) -> str:
+        """As it stands in a CSV file: the number unrounded, else the words."""
+        return repr(float(self.value)) if isinstance(self.value, int | float) else self.text
+
+
+@dataclass(frozen=True, slots=True)
+class Table:
+    """Rows of as many cells as there are columns."""
+
+    name: str
+    columns: tuple[Column, ...]
+    rows: tuple[tuple[Cell, ...], ...]
+
+    def __post_init__(self) -> None:
+        if any(len(row) != len(self.columns) for row in self.rows):
+            raise ValueError(f"a row of the table of {self.name} does not fit its columns")
+
+    def place(self, place: str) -> Table:
+        """Return the table with the columns that show in one place."""
+        kept = [i for i, column in enumerate(self.columns) if place in column.places]
+        return Table(
+            self.name,
+            tuple(self.columns[i] for i in kept),
+            tuple(tuple(row[i] for i in kept) for row in self.rows),
+        )
+
+
+POSITIONS = (
+    Column("rank", "#", number=True),
+    Column("position", "part"),
+    Column("role", "role", places=frozenset({NARROW})),
+    Column("role_text", "role", places=BUT_NARROW),
+    Column("fitted", "marked", places=BROAD),
+    Column("style", "style", places=frozenset({FILE})),
+    Column("value_F", "value", number=True, places=frozenset({FILE})),
+    Column("rated_V", "rated", number=True, places=frozenset({NARROW, FILE})),
+    Column("bears_V", "bears", number=True),
+    Column("worst_V", "worst", number=True),
+    Column("worst_condition", "in", places=BUT_NARROW),
+    Column("brief_V", "brief", number=True, places=BUT_NARROW),
+    Column("ripple_rms_A", "ripple", number=True, places=BUT_NARROW),
+    Column("critical_ohm", "damage below", number=True),
+    Column("victim", "to", places=BUT_NARROW),
+    Column("functional_ohm", "works above", number=True, places=BUT_NARROW),
+    Column("fit", "fit", places=SHOWN),
+    Column("fit_value_F", "fit value", number=True, places=frozenset({FILE})),
+    Column("fit_rated_V", "fit rated", number=True, places=frozenset({FILE})),
+    Column("fit_style", "fit style", places=frozenset({FILE})),
+    Column("leakage_max_A", "may leak", number=True, places=BUT_NARROW),
+    Column("leakage_test_V", "at", number=True, places=BUT_NARROW),
+    Column("do", "do", places=frozenset({NARROW})),
+    Column("severity", "do", places=BUT_NARROW),
+)
+PARTS = (
+    Column("part", "part"),
+    Column("kind", "what"),
+    Column("stress", "stress"),
+    Column("judged", "bears", number=True),
+    Column("condition", "in"),
+    Column("largest", "largest", number=True, places=BUT_NARROW),
+    Column("largest_condition", "in", places=BUT_NARROW),
+    Column("limit", "limit", number=True),
+    Column("rating", "rating system", places=BUT_NARROW),
+    Column("source", "limit from", places=BUT_NARROW),
+    Column("verdict", "verdict"),
+)
+FAILURES = (
+    Column("position", "part"),
+    Column("fault", "fault"),
+    Column("condition", "in", places=BUT_NARROW),
+    Column("dangerous", "dangerous"),
+    Column("victims", "past a limit"),
+    Column("text", "what happens"),
+)
+PROOFS = (
+    Column("condition", "condition"),
+    Column("method", "method"),
+    Column("cycles", "periods", number=True),
+    Column("jacobian_cycles", "for the Jacobian", number=True),
+    Column("points", "points a period", number=True),
+    Column("distance", "distance", number=True),
+    Column("residual", "residual", number=True),
+    Column("multiplier", "multiplier", number=True),
+)
+WITHIN, PAST, NO_LIMIT = "within", "PAST ITS LIMIT", "no limit known"
+
+
+def write_csv(review: Review, folder: Path) -> tuple[Path, ...]:
+    """Write positions.csv, parts.csv and failures.csv; return their paths.
+
+    Raises:
+        OSError: Where they cannot be written.
+    """
+    folder.mkdir(parents=True, exist_ok=True)
+    paths = []
+    for table in (positions(review), parts(review), failures(review)):
+        shown = table.place(FILE)
+        path = folder / f"{table.name}.csv"
+        with path.open("w", encoding="utf-8", newline="") as file:
+            writer = csv.writer(file)
+            writer.writerow([column.key for column in shown.columns])
+            writer.writerows([_inert(cell.written) for cell in row] for row in shown.rows)
+        paths.append(path)
+    return tuple(paths)
+
+
+def _inert(text: str) -> str:
+    """Return text that no spreadsheet takes for a formula."""
+    try:
+        float(text)
+    except ValueError:
+        text = words.plain(text)
+        return "'" + text if text[:1] in ("=", "+", "-", "@") else text
+    return text
+
+
+def positions(review: Review) -> Table:
+    """Return the table of positions, in the order of work, those without a rank last."""
+    rank = {risk.position: risk.rank for risk in review.risks}
+    ordered = sorted(review.circuit.positions, key=lambda each: rank.get(each.name, len(rank) + 1))
+    return Table("positions", POSITIONS, tuple(_position(review, each) for each in ordered))
+
+
+def _position(review: Review, of: Position) -> tuple[Cell, ...]:
+    name = of.name
+    worst = review.worst.get(name)
+    risk = next((each for each in review.risks if each.position == name), None)
+    nominal = review.working.positions.get(name, {}).get("nominal")
+    no_nominal = words.missing_in(review, "nominal")
+    leakage = review.leakage.get(name)
+    governing = leakage.governing if leakage else None
+    if leakage is None:
+        critical = functional = Cell(words.NOT_STUDIED)
+    elif not leakage.limited:
+        critical = functional = Cell("not limited")
+    elif governing is None:
+        critical, functional = Cell(words.NO_DAMAGE), Cell(words.NO_EFFECT)
+    else:
+        critical = Cell(words.critical(governing), governing.critical_ohm)
+        functional = Cell(words.functional(governing), governing.functional_ohm)
+    victim = governing.victim if governing else None
+    fit = review.replacements.get(name)
+    bench = review.bench.get(name)
+    cells = {
+        "rank": Cell(str(risk.rank), risk.rank) if risk else Cell("none"),
+        "position": Cell(name),
+        "role": Cell(of.role.value),
+        "role_text": Cell(of.role_text),
+        "fitted": Cell(words.marked(of)),
+        "style": Cell(of.style.name),
+        "value_F": _number(of.value_F, "F"),
+        "rated_V": _number(of.rated_V, "V"),
+        "bears_V": _number(nominal.dc_V if nominal else None, "V", missing=no_nominal),
+        "worst_V": _number(worst.worst_V if worst else None, "V", missing="unsolved"),
+        "worst_condition": Cell(worst.condition if worst else "none"),
+        "brief_V": _number(worst.brief_V if worst else None, "V", missing="none"),
+        "ripple_rms_A": _number(nominal.ripple_rms_A if nominal else None, "A", missing=no_nominal),
+        "critical_ohm": critical,
+        "victim": Cell(f"{victim.part} {words.quantity(victim.quantity)}" if victim else "nothing"),
+        "functional_ohm": functional,
+        "fit": Cell(words.fit(fit) if fit else words.NOT_STUDIED),
+        "fit_value_F": _number(fit.value_F if fit else None, "F"),
+        "fit_rated_V": _number(fit.rated_V if fit else None, "V"),
+        "fit_style": Cell(fit.style if fit else words.NOT_STUDIED),
+        "leakage_max_A": _number(bench.leakage_max_A if bench else None, "A"),
+        "leakage_test_V": _number(bench.test_V if bench else None, "V"),
+        "do": Cell(risk.severity.value.partition("-")[0] if risk else "nothing"),
+        "severity": Cell(words.SEVERITIES[risk.severity] if risk else "nothing"),
+    }
+    return tuple(cells[column.key] for column in POSITIONS)
+
+
+def _number(value: float | None, unit: str, *, missing: str = words.NOT_KNOWN) -> Cell:
+    return Cell(amount(value, unit, missing=missing), value)
+
+
+def parts(review: Review) -> Table:
+    """Return the table of the other parts: a row for every stress that has a number or a limit."""
+    rows = (row for each in review.circuit.parts for row in _part(review, each))
+    return Table("parts", PARTS, tuple(rows))
+
+
+def _part(review: Review, of: Part) -> Iterator[tuple[Cell, ...]]:
+    held = review.working.parts.get(of.name, {})
+    names = dict.fromkeys([*of.limits, *(name for each in held.values() for name in each)])
+    for stress in names:
+        limit = of.limits.get(stress)
+        by_condition = {
+            condition: values[stress] for condition, values in held.items() if stress in values
+        }
+        condition = _judged_in(review, limit)
+        judged = by_condition.get(condition)
+        largest = max(by_condition, key=lambda each: by_condition[each], default=None)
+        unit = words.unit_of(stress)
+        if limit is None:
+            verdict = NO_LIMIT
+        elif judged is None:
+            verdict = words.missing_in(review, condition)
+        else:
+            verdict = PAST if judged > limit.value else WITHIN
+        yield (
+            Cell(of.name),
+            Cell(f"{of.kind.value} {of.type}".rstrip()),
+            Cell(words.quantity(stress), stress),
+            _number(judged, unit, missing=words.missing_in(review, condition)),
+            Cell(condition),
+            _number(by_condition[largest] if largest else None, unit, missing="unsolved"),
+            Cell(largest or "none"),
+            _number(limit.value if limit else None, unit),
+            Cell(limit.rating.value if limit else "none"),
+            Cell(_source(limit)),
+            Cell(verdict),
+        )
+
+
+def _judged_in(review: Review, limit: Limit | None) -> str:
+    """Return the condition a limit holds in: design-centre ones already allow for the line."""
+    high = any(each.name == "high" for each in review.working.conditions)
+    design_centre = limit is None or limit.rating is Rating.DESIGN_CENTRE
+    return "high" if high and not design_centre else "nominal"
+
+
+def _source(limit: Limit | None) -> str:
+    if limit is None:
+        return "not known: add it to the sheet"
+    return f"assumed: {limit.source}" if limit.assumed else limit.source
+
+
+def failures(review: Review) -> Table:
+    """Return the table of what each failure of each position does."""
+    rows = (
+        _failure(each)
+        for position in review.circuit.positions
+        for each in review.failures.get(position.name, ())
+    )
+    return Table("failures", FAILURES, tuple(rows))
+
+
+def _failure(of: Failure) -> tuple[Cell, ...]:
+    victims = "; ".join(words.victim(each) for each in of.victims)
+    if of.unanswered:
+        victims = of.unanswered.kind
+    return (
+        Cell(of.position),
+        Cell(of.fault),
+        Cell(of.condition),
+        Cell("yes" if of.dangerous else "no"),
+        Cell(victims or "nothing"),
+        Cell(" ".join((of.text, *of.consequences)) or "nothing to tell"),
+    )
+
+
+def proofs(review: Review) -> Table:
+    """Return how each condition was settled, and how far from settled it may be."""
+    rows = []
+    for condition in review.working.conditions:
+        proof = review.working.proofs.get(condition.name)
+        if proof is None:
+            missing = words.missing_in(review, condition.name)
+            rows.append((Cell(condition.name), Cell(missing), *[Cell("none")] * 6))
+            continue
+        rows.append(
+            (
+                Cell(condition.name),
+                Cell(proof.method),
+                Cell(str(proof.cycles), proof.cycles),
+                Cell(str(proof.jacobian_cycles), proof.jacobian_cycles),
+                Cell(str(proof.points), proof.points),
+                Cell(f"{proof.distance:.1e}", proof.distance),
+                Cell(f"{proof.residual:.1e}", proof.residual),
+                Cell("none", None)
+                if proof.multiplier is None
+                else Cell(f"{proof.multiplier:.4f}", proof.multiplier),
+            )
+        )
+    return Table("proofs", PROOFS, tuple(rows))

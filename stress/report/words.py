@@ -1,0 +1,113 @@
+"""The words all reports share: trade names of stresses, and words in place of missing numbers."""
+
+from __future__ import annotations
+
+import unicodedata
+
+from stress.circuit.circuit import Position
+from stress.finding import Severity
+from stress.parts.limit import STRESSES
+from stress.study.result import LeakageIn, Replacement, Review, Victim
+from stress.text.figure import figure
+
+NOT_KNOWN = "not known"
+NOT_STUDIED = "not studied"
+NO_DAMAGE = "no damage"
+NO_EFFECT = "no effect"
+NOT_LIMITED = "not limited by the netlist"
+
+SEVERITIES = {
+    Severity.REPLACE: "replace before power",
+    Severity.TEST: "test before power",
+    Severity.WATCH: "watch",
+    Severity.NOTE: "note",
+}
+
+QUANTITIES = {
+    "plate_W": "plate dissipation",
+    "screen_W": "screen dissipation",
+    "grid_W": "grid dissipation",
+    "grid_A": "grid current",
+    "cathode_A": "cathode current",
+    "plate_V": "plate voltage",
+    "screen_V": "screen voltage",
+    "heater_cathode_V": "heater-cathode voltage",
+    "power_W": "power",
+    "voltage_V": "voltage",
+    "current_A": "current",
+    "average_A": "average current",
+    "peak_A": "peak current",
+    "reverse_V": "reverse voltage",
+    "ripple_A": "ripple current",
+}
+
+
+def amount(value: float | None, unit: str, *, missing: str = NOT_KNOWN) -> str:
+    """Return a number as the trade writes it, or the word that says why there is none."""
+    return missing if value is None else figure(value, unit)
+
+
+def quantity(stress: str) -> str:
+    """Return what the trade calls a stress; a name that is not in the list stays as it is."""
+    return QUANTITIES.get(stress, stress)
+
+
+def unit_of(stress: str) -> str:
+    """Return the unit of a stress by its name."""
+    return STRESSES.get(stress, stress.rpartition("_")[2])
+
+
+def plain(text: str) -> str:
+    """Return the text without control characters, which a name in a netlist may smuggle in."""
+    return "".join("�" if unicodedata.category(c) in ("Cc", "Cf") else c for c in text)
+
+
+def victim(of: Victim) -> str:
+    """Return what is driven past which limit: "XU2 plate dissipation 14.6 W, limit 12 W"."""
+    unit = unit_of(of.quantity)
+    text = f"{of.part} {quantity(of.quantity)} {figure(of.stress, unit)}"
+    text += f", limit {figure(of.limit.value, unit)}"
+    if of.limit.assumed:
+        text += " (assumed)"
+    return text + (f", {of.after_text}" if of.after_text else "")
+
+
+def marked(of: Position) -> str:
+    """Return what is fitted: "paper 0.02 µF, 400 V"."""
+    value = amount(of.value_F, "F", missing="value not known")
+    return f"{of.style.name} {value}, {amount(of.rated_V, 'V', missing='rating not known')}"
+
+
+def fit(of: Replacement) -> str:
+    """Return what to fit: "0.022 µF film, 630 V", "2 x 47 µF aluminium, 450 V, two in series"."""
+    many = f"{of.quantity} x " if of.quantity > 1 else ""
+    text = f"{many}{figure(of.value_F, 'F')} {of.style}"
+    if of.safety_class:
+        text += f", class {of.safety_class}"
+    if of.ac_V is not None:
+        text += f", {figure(of.ac_V, 'V')} AC"
+    if of.rated_V is not None:
+        text += f", {figure(of.rated_V, 'V')}"
+    return text + (f", {of.arrangement}" if of.arrangement else "")
+
+
+def missing_in(review: Review, condition: str) -> str:
+    """Return why a condition has no numbers: "unsolved", "does not settle", "not run" …"""
+    for unanswered in review.working.unanswered:
+        if unanswered.case.split(" / ")[0] == condition:
+            return unanswered.kind
+    return "not run"
+
+
+def critical(of: LeakageIn) -> str:
+    """Return the critical leakage of one condition in words."""
+    if of.critical_ohm is not None:
+        return "always" if of.always else figure(of.critical_ohm, "ohm")
+    return of.unanswered[0].kind if of.unanswered else NO_DAMAGE
+
+
+def functional(of: LeakageIn) -> str:
+    """Return the functional leakage of one condition in words."""
+    if of.functional_ohm is not None:
+        return figure(of.functional_ohm, "ohm")
+    return of.unanswered[0].kind if of.unanswered else NO_EFFECT
