@@ -74,6 +74,16 @@ class Trace:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Surge:
+    """What a position bears for a moment at switch-on, and the case that made it."""
+
+    case: str
+    peak_V: float
+    reverse_V: float | None
+    phase_deg: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Working:
     """The working stress of everything, by condition name.
 
@@ -84,6 +94,8 @@ class Working:
         supply_V: Node to condition to mean volts against ground, for every node.
         traces: Position name to its pictures.
         proofs: By condition name.
+        inrush: Position name to its surge; empty where it was not run.
+        inrush_parts: Rectifier and diode name to the peaks at switch-on.
         unanswered: By condition name, what has no number.
         notices: What was held, tied down or quieted, in words.
     """
@@ -94,6 +106,8 @@ class Working:
     nodes: Mapping[str, Mapping[str, float]] = NOTHING
     traces: Mapping[str, tuple[Trace, ...]] = NOTHING
     proofs: Mapping[str, Proof] = NOTHING
+    inrush: Mapping[str, Surge] = NOTHING
+    inrush_parts: Mapping[str, Mapping[str, float]] = NOTHING
     unanswered: tuple[Unanswered, ...] = ()
     notices: tuple[str, ...] = ()
 

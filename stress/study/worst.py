@@ -1,0 +1,41 @@
+"""The worst a position bears: what lasts, and what is brief."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+from stress.circuit.circuit import Circuit
+from stress.study import conditions as stock
+from stress.study.result import Working, Worst
+
+
+def worst(circuit: Circuit, *, working: Working) -> Mapping[str, Worst]:
+    """Return, by position name, the worst lasting and the worst brief voltage and their cases.
+
+    A position without any settled lasting condition is left out.
+    """
+    lasting = {c.name for c in working.conditions if c.lasts}
+    found: dict[str, Worst] = {}
+    for position in circuit.positions:
+        by_condition = working.positions.get(position.name, {})
+        lasts = {name: s for name, s in by_condition.items() if name in lasting}
+        if not lasts:
+            continue
+        name = max(lasts, key=lambda n: lasts[n].peak_V)
+        brief = {n: s.peak_V for n, s in by_condition.items() if n not in lasting}
+        surge = working.inrush.get(position.name)
+        if surge is not None:
+            brief[stock.INRUSH] = surge.peak_V
+        briefest = max(brief, key=lambda n: brief[n], default=None)
+        reverse = [s.reverse_V for s in by_condition.values() if s.reverse_V is not None]
+        if surge is not None and surge.reverse_V is not None:
+            reverse.append(surge.reverse_V)
+        found[position.name] = Worst(
+            position=position.name,
+            worst_V=lasts[name].peak_V,
+            condition=name,
+            brief_V=brief[briefest] if briefest is not None else None,
+            brief_condition=briefest,
+            reverse_V=max(reverse, default=None),
+        )
+    return found
