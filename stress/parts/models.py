@@ -1,0 +1,70 @@
+"""The built-in models: SPICE text by type, and emission by heater voltage."""
+
+from __future__ import annotations
+
+import tomllib
+from collections.abc import Mapping
+from functools import cache
+from pathlib import Path
+
+from stress.parts import types
+from stress.parts.model import Unit
+from stress.parts.model_text import subcircuit_text
+from stress.parts.type import TypeEntry
+
+TABLE = Path(__file__).parent / "model_table"
+
+
+def subcircuit(name: str) -> str | None:
+    """Return the `.subckt` of the built-in model of a type, or None.
+
+    The name is matched as by `stress.parts.types.find`; the subcircuit carries the name that
+    was asked for. Pins: plate grid cathode; plate screen grid cathode; rectifiers plate
+    [plate2] cathode; then diode, diode2, oscillator, plate2, grid2, cathode2 as far as the
+    type has them (`TypeEntry.pins`). One unit of a double triode is one subcircuit.
+    """
+    entry = types.find(name)
+    if entry is None:
+        return None
+    found = units(entry)
+    return subcircuit_text(name, pins=entry.pins, units=found) if found else None
+
+
+def units(entry: TypeEntry) -> tuple[Unit, ...]:
+    """Return the units of the model of a type, () where there is none."""
+    return _table().get(entry.model or entry.name, ())
+
+
+def modelled() -> tuple[TypeEntry, ...]:
+    """Return the entries that have a model."""
+    return tuple(entry for entry in types.all_types() if units(entry))
+
+
+def emission(entry: TypeEntry, heater_share: float) -> float:
+    """Return the share of full emission at a share of the rated heater voltage.
+
+    A straight line from none to full between 70 and 85 % of the rated voltage for cathode
+    types, between 50 and 80 % for filaments. Common practice: receivers wake up on a slow
+    supply at about 70 to 80 % of the line, battery and rectifier filaments earlier; only the
+    two ends are used in advice, the line between is a convention.
+    """
+    if entry.warm_up == "instant":
+        return 1.0
+    low, full = (0.5, 0.8) if entry.directly_heated else (0.7, 0.85)
+    return min(1.0, max(0.0, (heater_share - low) / (full - low)))
+
+
+@cache
+def _table() -> Mapping[str, tuple[Unit, ...]]:
+    found: dict[str, tuple[Unit, ...]] = {}
+    for path in sorted(TABLE.glob("*.toml")):
+        for name, rows in tomllib.loads(path.read_text(encoding="utf-8")).items():
+            found[name] = tuple(
+                Unit(
+                    row["form"],
+                    tuple(row["pins"]),
+                    {k: v for k, v in row.items() if k not in ("form", "pins")},
+                )
+                for row in rows
+            )
+    return found
