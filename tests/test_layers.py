@@ -16,7 +16,7 @@ ORDER = (
     "study",
     "judge",
     "report",
-    "review",
+    "pipeline",
     "command",
 )
 LONGEST = 350

@@ -48,12 +48,14 @@ def insulation_of(position: Position) -> float:
 def metered_pins(part: Part) -> tuple[str, ...]:
     """Return the pins of a part that carry a 0 V source, one for each node.
 
-    The cathode (emitter) carries what the others carry. Of pins joined at one node the first
-    stands for all: their currents cannot be told apart in a flat circuit.
+    The cathode (emitter) carries what the others carry, and so does a pin tied to it. Of other
+    pins joined at one node the first stands for all: their currents cannot be told apart in a
+    flat circuit.
     """
     if part.kind not in METERED:
         return ()
-    seen, pins = set(), []
+    seen = {node for pin, node in part.pins.items() if pin.startswith(UNMETERED_PINS)}
+    pins = []
     for pin, node in part.pins.items():
         if not pin.startswith(UNMETERED_PINS) and node not in seen:
             seen.add(node)

@@ -43,9 +43,14 @@ def kinds_of(position: Position) -> tuple[str, ...]:
 
 
 def failures(
-    circuit: Circuit, *, healthy: Healthy, leakage: Mapping[str, Leakage], solver: Solver
+    circuit: Circuit,
+    studied: Sequence[Position],
+    *,
+    healthy: Healthy,
+    leakage: Mapping[str, Leakage],
+    solver: Solver,
 ) -> dict[str, tuple[Failure, ...]]:
-    """Return every failure of every position with a value, by position name.
+    """Return every failure of every studied position with a value, by position name.
 
     A short starts from the worst leak of the same position, its nearest relative.
     """
@@ -53,7 +58,7 @@ def failures(
         c for c in healthy.working.conditions if c.name in JUDGED and c.name in healthy.settled
     ]
     wanted: list[tuple[Scene, Fault]] = []
-    for position in circuit.positions:
+    for position in studied:
         if not position.value_F:
             continue
         ideal = across_ideal_source(circuit, position)
@@ -70,7 +75,7 @@ def failures(
         for (scene, fault), answer in zip(wanted, solver.solve(cases), strict=True)
     ]
     results = {}
-    for position in circuit.positions:
+    for position in studied:
         if position.value_F:
             own = [t for t in tries if t.fault.position == position.name]
             results[position.name] = tuple(_failures_of(circuit, position, own))

@@ -6,7 +6,7 @@ time, halved where anything moves; the crossing with the highest resistance is t
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 from itertools import pairwise
 from math import exp, floor, log, log10, sqrt
@@ -32,9 +32,11 @@ REFINEMENTS = 12
 SEARCHED = (stock.NOMINAL, stock.HIGH, stock.DRIVEN)
 
 
-def leakage(circuit: Circuit, *, healthy: Healthy, solver: Solver) -> dict[str, Leakage]:
-    """Return the leakage study of every position with a value, by name."""
-    positions = [p for p in circuit.positions if p.value_F]
+def leakage(
+    circuit: Circuit, studied: Sequence[Position], *, healthy: Healthy, solver: Solver
+) -> dict[str, Leakage]:
+    """Return the leakage study of every studied position with a value, by name."""
+    positions = [p for p in studied if p.value_F]
     limited = [p for p in positions if not across_ideal_source(circuit, p)]
     searched = [
         c for c in healthy.working.conditions if c.name in SEARCHED and c.name in healthy.settled
@@ -81,7 +83,9 @@ def sweep(
     for ohm, reply in zip(ladder, (yield cases), strict=True):
         readings[ohm] = read(scene, ohm, reply)
     between = [
-        (float(f"{sqrt(a * b):.6g}"), a) for a, b in _intervals(readings) if _moves(readings[a], readings[b])
+        (float(f"{sqrt(a * b):.6g}"), a)
+        for a, b in _intervals(readings)
+        if _moves(readings[a], readings[b])
     ]
     cases = tuple(scene.case(ohm, parent=_parent(scene, above, top)) for ohm, above in between)
     if cases:

@@ -1,0 +1,107 @@
+"""`capstress review`: everything at once."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+
+import click
+
+from stress.command.options import (
+    FAILED_ON,
+    UNSOLVED,
+    UNUSABLE,
+    high,
+    inputs,
+    jobs,
+    names_of,
+    plain_errors,
+    volts,
+)
+from stress.finding import Severity
+
+
+@click.command()
+@inputs
+@high
+@jobs
+@click.option("--only", metavar="C5,C6", help="Study the faults of these positions only.")
+@click.option("--policy", default="common-practice", show_default=True, help="Derating policy.")
+@click.option("--json", "json_file", type=click.Path(path_type=Path), help="Write all numbers.")
+@click.option("--html", "html_file", type=click.Path(path_type=Path), help="Write a page.")
+@click.option("--csv", "csv_folder", type=click.Path(path_type=Path), help="Write tables here.")
+@click.option("--verbose", is_flag=True, help="Show the method and its residuals as well.")
+@click.option(
+    "--fail-on",
+    type=click.Choice([severity.value for severity in Severity]),
+    help="Exit with status 1 when there is a finding of this severity or a more urgent one.",
+)
+def review(
+    file: Path,
+    sheet: Path | None,
+    libraries: tuple[Path, ...],
+    type_files: tuple[Path, ...],
+    dialect: str | None,
+    high: str | None,
+    jobs: int | None,
+    only: str | None,
+    policy: str,
+    json_file: Path | None,
+    html_file: Path | None,
+    csv_folder: Path | None,
+    verbose: bool,
+    fail_on: str | None,
+) -> None:
+    """Review the equipment of FILE: what every capacitor bears, and what to do first.
+
+    Exit status: 0 when the review was finished, whatever it found; 1 with --fail-on; 2 when the
+    input cannot be used; 3 when the engine left a case unsolved.
+    """
+    high_V = volts(high)
+    from rich.console import Console
+
+    from stress import pipeline
+    from stress.report.document import write_json
+    from stress.report.progress import progress
+    from stress.report.terminal import print_review
+
+    with plain_errors():
+        circuit = pipeline.load(
+            file,
+            sheet=sheet,
+            high_V=high_V,
+            libraries=libraries,
+            type_files=type_files,
+            dialect=dialect,
+        )
+        names = names_of(only or "", [position.name for position in circuit.positions])
+        _known_policy(policy)
+        with progress() as report:
+            found = pipeline.review_circuit(
+                circuit, only=names, policy=policy, jobs=jobs, progress=report
+            )
+        if json_file is not None:
+            write_json(found, json_file)
+        if html_file is not None:
+            from stress.report.page import write_page
+
+            write_page(found, html_file)
+        if csv_folder is not None:
+            from stress.report.tables import write_csv
+
+            write_csv(found, csv_folder)
+        print_review(found, Console(), verbose=verbose)
+    if found.run.unsolved:
+        sys.exit(UNSOLVED)
+    if fail_on is not None:
+        worst = min((f.severity.rank for f in found.findings), default=len(Severity))
+        if worst <= Severity(fail_on).rank:
+            sys.exit(FAILED_ON)
+
+
+def _known_policy(policy: str) -> None:
+    from stress.parts.policy import policies
+
+    if policy not in policies():
+        click.echo(f"no policy {policy!r}; there are {', '.join(policies())}", err=True)
+        sys.exit(UNUSABLE)

@@ -1,0 +1,174 @@
+"""Results and limits to findings: one rule a function, all of them in one list."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Mapping
+from dataclasses import dataclass
+
+from stress.circuit.circuit import Circuit
+from stress.finding import Finding, Severity
+from stress.study import conditions as stock
+from stress.study.failures import describe
+from stress.study.limits import limits
+from stress.study.result import Failure, Leakage, Risk, Victim, Working, Worst
+from stress.text.figure import figure
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Results:
+    """What the rules read."""
+
+    circuit: Circuit
+    working: Working
+    worst: Mapping[str, Worst]
+    leakage: Mapping[str, Leakage]
+    failures: Mapping[str, tuple[Failure, ...]]
+    risks: tuple[Risk, ...]
+
+
+def findings(results: Results) -> tuple[Finding, ...]:
+    """Return everything the user must know, the most urgent first, equal ones in rule order."""
+    found = [finding for rule in RULES for finding in rule(results)]
+    return tuple(sorted(found, key=lambda finding: finding.severity.rank))
+
+
+def ranked_positions(results: Results) -> Iterator[Finding]:
+    """Every position that asks for something, with the reason of its rank."""
+    for risk in results.risks:
+        if risk.severity is not Severity.NOTE:
+            yield Finding(
+                severity=risk.severity, where=risk.position, text=risk.reason, rule="risk-order"
+            )
+
+
+def healthy_over_limit(results: Results) -> Iterator[Finding]:
+    """Parts past a limit though nothing is wrong: the design, the sheet or the netlist is."""
+    for condition in results.working.conditions:
+        if condition.name not in (stock.NOMINAL, stock.HIGH):
+            continue
+        judged = limits(results.circuit, condition=condition)
+        for part, by_condition in results.working.parts.items():
+            for name, limit in judged.get(part, {}).items():
+                stress = by_condition.get(condition.name, {}).get(name)
+                if stress is None or stress <= limit.value or limit.assumed:
+                    continue
+                victim = Victim(part=part, quantity=name, stress=stress, limit=limit)
+                yield Finding(
+                    severity=Severity.WATCH,
+                    where=part,
+                    condition=condition.name,
+                    text=f"{describe(victim)} ({limit.rating}, {limit.source}) with every "
+                    "capacitor healthy",
+                    action="Check the sheet and the netlist against the real set.",
+                    rule="healthy-over-limit",
+                )
+
+
+def assumed_limits(results: Results) -> Iterator[Finding]:
+    """Leaks and failures that would pass a limit nobody stated: name the key that settles it."""
+    seen: dict[str, tuple[Victim, list[str]]] = {}
+    for name, leak in results.leakage.items():
+        governing = leak.governing
+        if governing is not None and governing.assumed_victim is not None:
+            seen.setdefault(governing.assumed_victim.part, (governing.assumed_victim, []))[
+                1
+            ].append(f"{name} leaky")
+    for name, failures in results.failures.items():
+        for failure in failures:
+            for victim in failure.victims:
+                if victim.limit.assumed:
+                    seen.setdefault(victim.part, (victim, []))[1].append(f"{name} {failure.fault}")
+    for part, (victim, causes) in seen.items():
+        which = ", ".join(dict.fromkeys(causes[:4])) + (" and others" if len(causes) > 4 else "")
+        yield Finding(
+            severity=Severity.NOTE,
+            where=part,
+            text=f"with {which}: {describe(victim)}. {victim.limit.source}",
+            action=f'State [resistors.{part}] rated = "…" to have it judged.',
+            rule="assumed-limit",
+        )
+
+
+def ripple_over_rating(results: Results) -> Iterator[Finding]:
+    """Positions whose ripple current passes the marked rating."""
+    for position in results.circuit.positions:
+        if position.ripple_A is None:
+            continue
+        by_condition = results.working.positions.get(position.name, {})
+        for name in (stock.HIGH, stock.NOMINAL):
+            stress = by_condition.get(name)
+            if stress is not None and stress.ripple_rms_A > position.ripple_A:
+                yield Finding(
+                    severity=Severity.TEST,
+                    where=position.name,
+                    condition=name,
+                    text=f"ripple current {figure(stress.ripple_rms_A, 'A')} rms, "
+                    f"rated {figure(position.ripple_A, 'A')}",
+                    rule="ripple-rating",
+                )
+                break
+
+
+def surge_of_rectifiers(results: Results) -> Iterator[Finding]:
+    """Rectifiers and diodes whose peaks at switch-on pass a repetitive limit."""
+    for part in results.circuit.parts:
+        peaks = results.working.inrush_parts.get(part.name, {})
+        limit = part.limits.get("reverse_V")
+        peak = peaks.get("reverse_V")
+        if limit is not None and peak is not None and peak > limit.value:
+            victim = Victim(part=part.name, quantity="reverse_V", stress=peak, limit=limit)
+            yield Finding(
+                severity=Severity.WATCH,
+                where=part.name,
+                condition=stock.INRUSH,
+                text=f"at switch-on {describe(victim)}",
+                rule="inrush-inverse-voltage",
+            )
+
+
+def without_number(results: Results) -> Iterator[Finding]:
+    """Every case the engine has no number for, counted by what it said."""
+    whys = list(results.working.unanswered)
+    for leak in results.leakage.values():
+        whys += [why for found in leak.by_condition for why in found.unanswered]
+    for failures in results.failures.values():
+        whys += [f.unanswered for f in failures if f.unanswered is not None]
+    for why in dict.fromkeys(whys):
+        if why.kind == "not limited by the netlist":
+            continue
+        where = why.case.partition(" / ")[2].split(" ")[0] or "equipment"
+        motorboats = why.kind == "unstable"
+        yield Finding(
+            severity=Severity.WATCH if motorboats else Severity.NOTE,
+            where=where,
+            condition=why.case,
+            text=f"{why.case}: {'the equipment motorboats' if motorboats else why.kind}; {why.text}",
+            rule=why.kind.replace(" ", "-"),
+        )
+
+
+def seen_without_solving(results: Results) -> Iterator[Finding]:
+    """What the graph and the reader have to say."""
+    yield from results.circuit.findings
+    yield from results.circuit.netlist.notices
+
+
+def held_in_simulation(results: Results) -> Iterator[Finding]:
+    """What was tied down, held or quieted to be solved."""
+    for notice in results.working.notices:
+        yield Finding(
+            severity=Severity.NOTE, where="equipment", text=notice, rule="held-in-simulation"
+        )
+
+
+Rule = Callable[[Results], Iterator[Finding]]
+RULES: tuple[Rule, ...] = (
+    ranked_positions,
+    healthy_over_limit,
+    ripple_over_rating,
+    surge_of_rectifiers,
+    without_number,
+    seen_without_solving,
+    assumed_limits,
+    held_in_simulation,
+)

@@ -1,0 +1,207 @@
+"""The whole path of a review, stage by stage; the only module that knows every stage."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import replace
+from pathlib import Path
+from time import monotonic
+from typing import TypeAlias
+
+from stress.circuit.build import build
+from stress.circuit.circuit import Circuit
+from stress.engine.pool import Pool
+from stress.judge.cautions import cautions
+from stress.judge.explain import explain
+from stress.judge.findings import Results, findings
+from stress.judge.risk import risks
+from stress.netlist.read import read as read_netlist
+from stress.parts import read_sheet, types
+from stress.parts.models import subcircuit
+from stress.parts.policy import policies
+from stress.parts.sheet import Sheet
+from stress.study.bench import bench
+from stress.study.conditions import conditions
+from stress.study.failures import failures
+from stress.study.inrush import inrush
+from stress.study.leakage import leakage
+from stress.study.replacement import replacement
+from stress.study.result import Review, Run
+from stress.study.working import work
+from stress.study.worst import worst
+from stress.text.span import SourceErrors
+
+USUAL_POLICY = "common-practice"
+POINTS = 22  # cases of one leakage sweep, for the time that is left
+
+Progress: TypeAlias = Callable[[str, int, int], None]  # stage, cases answered, cases expected
+
+
+def load(
+    path: str | Path,
+    *,
+    sheet: str | Path | None = None,
+    high_V: float | None = None,
+    libraries: Sequence[Path] = (),
+    type_files: Sequence[Path] = (),
+    dialect: str | None = None,
+) -> Circuit:
+    """Read a netlist and its part sheet and return the circuit.
+
+    Args:
+        path: The netlist.
+        sheet: The part sheet; None: the file of the same stem with the ending .toml, if any.
+        high_V: High line voltage, rms, instead of the sheet's.
+        libraries: Folders outside the netlist's own from which it may include files.
+        type_files: The user's own tables of types.
+        dialect: Instead of the one that is recognised.
+
+    Raises:
+        SourceErrors: Everything in netlist and sheet that prevents a simulation.
+        OSError: A file that cannot be read.
+    """
+    netlist = read_netlist(path, libraries=libraries, dialect=dialect, built_in=subcircuit)
+    if netlist.obstacles:
+        raise SourceErrors(netlist.obstacles)
+    known = read_sheet_of(path, sheet)
+    if high_V is not None:
+        known = replace(known, line=replace(known.line, high_V=high_V))
+    own = [entry for file in type_files for entry in types.load(file)]
+    return build(netlist, known, types=own)
+
+
+def read_sheet_of(path: str | Path, sheet: str | Path | None = None) -> Sheet:
+    """Return the part sheet of a netlist; an empty one where there is none."""
+    beside = Path(sheet) if sheet is not None else Path(path).with_suffix(".toml")
+    if sheet is None and not beside.is_file():
+        return Sheet()
+    return read_sheet.read(beside)
+
+
+def review(
+    path: str | Path,
+    *,
+    sheet: str | Path | None = None,
+    high_V: float | None = None,
+    only: Sequence[str] = (),
+    policy: str = USUAL_POLICY,
+    libraries: Sequence[Path] = (),
+    type_files: Sequence[Path] = (),
+    dialect: str | None = None,
+    jobs: int | None = None,
+    progress: Progress | None = None,
+) -> Review:
+    """Review the equipment of a netlist; see `load` for the arguments that are not here.
+
+    Args:
+        only: Names of the positions whose faults are studied; empty: all.
+        policy: Name of the derating policy.
+        jobs: Worker processes; None: one a core.
+        progress: Called with the stage, the cases solved and the cases expected.
+
+    Raises:
+        SourceErrors, OSError: As `load`.
+        KeyError: A position or a policy of no such name.
+    """
+    circuit = load(
+        path,
+        sheet=sheet,
+        high_V=high_V,
+        libraries=libraries,
+        type_files=type_files,
+        dialect=dialect,
+    )
+    return review_circuit(circuit, only=only, policy=policy, jobs=jobs, progress=progress)
+
+
+def review_circuit(
+    circuit: Circuit,
+    *,
+    only: Sequence[str] = (),
+    policy: str = USUAL_POLICY,
+    jobs: int | None = None,
+    progress: Progress | None = None,
+) -> Review:
+    """Review a circuit that has been built; see `review`."""
+    started = monotonic()
+    rules = policies()[policy]
+    studied = tuple(circuit.position(name) for name in only) or circuit.positions
+    stage = "working stress"
+    expected = len(conditions(circuit)) + (2 * POINTS + 8) * len(studied)
+
+    def tell(done: int, known: int) -> None:
+        if progress is not None:
+            progress(stage, done, max(known, expected))
+
+    with Pool(jobs=jobs, progress=tell) as pool:
+        healthy = work(circuit, solver=pool)
+        stage = "switch-on"
+        healthy = inrush(circuit, healthy=healthy, solver=pool)
+        stage = "leakage"
+        leaks = leakage(circuit, studied, healthy=healthy, solver=pool)
+        stage = "failures"
+        failed = failures(circuit, studied, healthy=healthy, leakage=leaks, solver=pool)
+        versions, totals = pool.versions(), pool.totals
+    working = healthy.working
+    worsts = worst(circuit, working=working)
+    order = risks(circuit, worst=worsts, leakage=leaks, failures=failed)
+    fitted = {
+        p.name: replacement(p, working=working, worst=worsts[p.name], policy=rules, circuit=circuit)
+        for p in circuit.positions
+        if p.name in worsts and p.value_F
+    }
+    limits = {
+        p.name: bench(
+            p,
+            working=working,
+            worst=worsts[p.name],
+            leakage=leaks.get(p.name),
+            circuit=circuit,
+            policy=rules,
+        )
+        for p in circuit.positions
+        if p.name in worsts and p.value_F
+    }
+    return Review(
+        circuit=circuit,
+        working=working,
+        worst=worsts,
+        leakage=leaks,
+        failures=failed,
+        replacements=fitted,
+        bench=limits,
+        risks=order,
+        findings=findings(
+            Results(
+                circuit=circuit,
+                working=working,
+                worst=worsts,
+                leakage=leaks,
+                failures=failed,
+                risks=order,
+            )
+        ),
+        explanations={
+            p.name: explain(
+                p,
+                circuit=circuit,
+                working=working,
+                worst=worsts.get(p.name),
+                leakage=leaks.get(p.name),
+                failures=failed.get(p.name, ()),
+                replacement=fitted.get(p.name),
+                bench=limits.get(p.name),
+                risk=next(risk for risk in order if risk.position == p.name),
+            )
+            for p in circuit.positions
+        },
+        cautions=cautions(circuit, working=working),
+        run=Run(
+            cases=totals.cases,
+            unsolved=totals.unsolved,
+            cycles=totals.cycles,
+            wall_s=monotonic() - started,
+        ),
+        versions=versions,
+        policy=policy,
+    )
