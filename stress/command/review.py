@@ -11,21 +11,19 @@ from stress.command.options import (
     FAILED_ON,
     UNSOLVED,
     UNUSABLE,
-    high,
+    Given,
     inputs,
     jobs,
     names_of,
     plain_errors,
-    volts,
 )
 from stress.finding import Severity
 
 
 @click.command()
 @inputs
-@high
 @jobs
-@click.option("--only", metavar="C5,C6", help="Study the faults of these positions only.")
+@click.option("--only", default="", metavar="C5,C6", help="Study the faults of these only.")
 @click.option("--policy", default="common-practice", show_default=True, help="Derating policy.")
 @click.option("--json", "json_file", type=click.Path(path_type=Path), help="Write all numbers.")
 @click.option("--html", "html_file", type=click.Path(path_type=Path), help="Write a page.")
@@ -37,14 +35,9 @@ from stress.finding import Severity
     help="Exit with status 1 when there is a finding of this severity or a more urgent one.",
 )
 def review(
-    file: Path,
-    sheet: Path | None,
-    libraries: tuple[Path, ...],
-    type_files: tuple[Path, ...],
-    dialect: str | None,
-    high: str | None,
+    given: Given,
     jobs: int | None,
-    only: str | None,
+    only: str,
     policy: str,
     json_file: Path | None,
     html_file: Path | None,
@@ -57,7 +50,6 @@ def review(
     Exit status: 0 when the review was finished, whatever it found; 1 with --fail-on; 2 when the
     input cannot be used; 3 when the engine left a case unsolved.
     """
-    high_V = volts(high)
     from rich.console import Console
 
     from stress import pipeline
@@ -66,15 +58,8 @@ def review(
     from stress.report.terminal import print_review
 
     with plain_errors():
-        circuit = pipeline.load(
-            file,
-            sheet=sheet,
-            high_V=high_V,
-            libraries=libraries,
-            type_files=type_files,
-            dialect=dialect,
-        )
-        names = names_of(only or "", [position.name for position in circuit.positions])
+        circuit = given.load()
+        names = names_of(only, circuit)
         _known_policy(policy)
         with progress() as report:
             found = pipeline.review_circuit(

@@ -4,10 +4,9 @@ from __future__ import annotations
 
 import sys
 from collections.abc import Callable
-from pathlib import Path
 from typing import TYPE_CHECKING
 
-from stress.command.options import UNSOLVED, names_of, plain_errors, volts
+from stress.command.options import UNSOLVED, Given, names_of, plain_errors
 
 if TYPE_CHECKING:
     from rich.console import Console
@@ -16,34 +15,21 @@ if TYPE_CHECKING:
 
 
 def review_one(
-    file: Path,
+    given: Given,
     position: str,
     *,
-    sheet: Path | None,
-    libraries: tuple[Path, ...],
-    type_files: tuple[Path, ...],
-    dialect: str | None,
-    high: str | None,
     jobs: int | None,
     show: Callable[[Review, str, Console], None],
 ) -> None:
     """Review one position and show it; ends the process with status 2 or 3 as `review` does."""
-    high_V = volts(high)
     from rich.console import Console
 
     from stress import pipeline
     from stress.report.progress import progress
 
     with plain_errors():
-        circuit = pipeline.load(
-            file,
-            sheet=sheet,
-            high_V=high_V,
-            libraries=libraries,
-            type_files=type_files,
-            dialect=dialect,
-        )
-        names = names_of(position, [p.name for p in circuit.positions])
+        circuit = given.load()
+        names = names_of(position, circuit)
         with progress() as report:
             found = pipeline.review_circuit(circuit, only=names, jobs=jobs, progress=report)
     console = Console()

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import pairwise
 from math import log10
 
 from stress.text.figure import figure
@@ -55,7 +56,7 @@ def _filled(curve: Sequence[tuple[float, float]], columns: int) -> list[tuple[fl
     """Return the points with straight lines on log R between them, one a column at least."""
     ordered = sorted(curve, reverse=True)
     found = list(ordered[:1])
-    for (ohm, share), (next_ohm, next_share) in zip(ordered, ordered[1:], strict=False):
+    for (ohm, share), (next_ohm, next_share) in pairwise(ordered):
         steps = max(round(columns * log10(ohm / next_ohm) / 4), 1)
         for k in range(1, steps + 1):
             part = k / steps
