@@ -217,6 +217,8 @@ class Replacement:
     value_max_F: float | None = None
     ac_V: float | None = None
     safety_class: str | None = None
+    balance_ohm: float | None = None  # of all balancing resistors of a series arrangement
+    ripple_Hz: float | None = None  # what `ripple_rms_A` belongs to
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
