@@ -1,8 +1,8 @@
 """Numbers with units as people write them, read strictly into SI floats; the only user of pint.
 
 The plain forms ("0.02 uF", "117 V", "1 Meg") are read by a table, exactly as decimal numbers.
-Compound units ("20 kohm/V", "100 V/us") and rarer ones ("104 degF") go through pint, which is
-slow to start and therefore made on first use only.
+Compound units ("5 mA*kV") and rarer ones ("104 degF") go through
+pint, which is slow to start and therefore made on first use only.
 """
 
 from __future__ import annotations
@@ -78,8 +78,10 @@ _SYMBOLS = (
     ("J", "num k", ("joule", "joules")),
     ("C", "pnum ", ("coulomb",)),
     ("m", "um ", ("metre", "meter")),
+    ("ohm/V", " kM", ("ohms/V", "ohm/volt", "ohms/volt", "ohm per volt", "ohms per volt")),
     ("%", " ", ("percent",)),
 )
+_SLOPES = {"V/s": 0, "V/ms": 3, "V/us": 6, "kV/us": 9, "V/ns": 9}
 _OLD = re.compile(r"(?:(u|m)?(u|m)(?:fd|f)s?\.?|mfd)", re.IGNORECASE)
 
 
@@ -154,7 +156,7 @@ def _table() -> Mapping[str, tuple[str, int]]:
         table[name] = ("ohm", 6)
     table |= {"min": ("min", 0), "minute": ("min", 0), "minutes": ("min", 0)}
     table |= {"h": ("h", 0), "hour": ("h", 0), "hours": ("h", 0)}
-    return table
+    return table | {slope: ("V/s", power) for slope, power in _SLOPES.items()}
 
 
 # Signs that stand for plain letters. Only these: a general folding would read "10²" as 102.
