@@ -2,17 +2,38 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
-from types import MappingProxyType
-from typing import Any
+from typing import Any, NoReturn
 
 from stress.finding import Finding
 from stress.netlist.expression import Expression
 from stress.text.span import SourceError, Span
 from stress.text.unit import unit
 
-NOTHING: Mapping[str, Any] = MappingProxyType({})
+
+class Nothing(Mapping[str, Any]):
+    """A mapping that holds nothing and is hashable, as a default of a record must be."""
+
+    __slots__ = ()
+
+    def __getitem__(self, key: str) -> NoReturn:
+        raise KeyError(key)
+
+    def __iter__(self) -> Iterator[str]:
+        return iter(())
+
+    def __len__(self) -> int:
+        return 0
+
+    def __hash__(self) -> int:
+        return 0
+
+    def __repr__(self) -> str:
+        return "{}"
+
+
+NOTHING = Nothing()
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,6 +67,7 @@ class Tags:
     rated_V: float | None = field(default=None, metadata=unit("V"))
     ripple_A: float | None = field(default=None, metadata=unit("A"))
     style: str | None = None
+    esr_ohm: float | None = field(default=None, metadata=unit("ohm"))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
