@@ -54,8 +54,8 @@ def figure(value: float, unit: str, *, digits: int = 3) -> str:
 
 
 def _from(unit: str, power: int) -> float:
-    """Return the mantissa from which a prefix is used: 0.001 µF is written, not 1000 pF."""
-    return 0.001 if unit == "F" and power == -6 else 1.0
+    """Return the mantissa from which a prefix is used: 0.001 µF, not 1000 pF; 0.5 W, not 500 mW."""
+    return {("F", -6): 0.001, ("W", 0): 0.1}.get((unit, power), 1.0)
 
 
 def _rounded(value: float, digits: int) -> float:
