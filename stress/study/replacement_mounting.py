@@ -12,7 +12,7 @@ WOUND = frozenset(
     {"paper", "paper-oil", "film", "film-pp", "film-ac", "snubber", "polystyrene", "line-X"}
 )
 FOIL_RULE = "outer foil to the end of lower impedance, where it shields (common practice)"
-CASE_RULE = "the case of an aluminium electrolytic is joined to its minus side (IEC 60384-4)"
+CASE_RULE = "the case of an aluminium electrolytic is joined to its minus side (common practice)"
 _AT_HZ = 1000.0  # where hum and pick-up are heard
 _CLEAR = 3.0  # times: less of a difference and either way round will do
 # What a pin adds to the conductance of its node, in siemens; sizes only (common practice).

@@ -1,0 +1,206 @@
+"""How large a reservoir may be: first-capacitor limit, rectifier's peak current, inrush.
+
+The published largest first capacitor comes from the type table. The peak current is simulated
+with every candidate in place at high line, and the surge of a switch-on from rest with the
+value that is to be fitted.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+
+from stress.circuit.circuit import Circuit, Kind, Part, Position, Role
+from stress.engine.case import Case, Ran, Settled, Transient
+from stress.parts import types
+from stress.study.measure import part_stresses
+from stress.study.plan import Plan
+from stress.study.result import Unanswered
+from stress.study.working import unanswered
+from stress.text.figure import figure
+from stress.text.unit import unit
+
+NEAR_OHM = 1000.0  # a resistor up to this between rectifier and reservoir is a surge resistor
+INRUSH_PERIODS = 12
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Tried:
+    """One capacitance, simulated in place; None where the engine had no number."""
+
+    value_F: float = field(metadata=unit("F"))
+    peak_A: float | None = field(default=None, metadata=unit("A"))
+    average_A: float | None = field(default=None, metadata=unit("A"))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Reservoir:
+    """What limits the capacitance of a reservoir.
+
+    Attributes:
+        position: Its name.
+        rectifiers: Names of the parts that charge it.
+        table_F: Largest first capacitor of the type table.
+        table_source: Its source.
+        tried: Every capacitance that was simulated, at high line.
+        limit_A: Peak current of one plate or diode.
+        value_max_F: The largest capacitance within both, or None where nothing is published.
+        inrush_A: Largest current of a rectifier while switched on from rest.
+        text: All of it in words.
+    """
+
+    position: str
+    rectifiers: tuple[str, ...]
+    table_F: float | None = field(default=None, metadata=unit("F"))
+    table_source: str = ""
+    tried: tuple[Tried, ...] = ()
+    limit_A: float | None = field(default=None, metadata=unit("A"))
+    value_max_F: float | None = field(default=None, metadata=unit("F"))
+    inrush_A: float | None = field(default=None, metadata=unit("A"))
+    text: str = ""
+    unanswered: tuple[Unanswered, ...] = ()
+
+
+def rectifiers_of(position: Position, *, circuit: Circuit) -> tuple[Part, ...]:
+    """Return the rectifiers whose output the position is on, straight or by a small resistor."""
+    if position.role not in (Role.RESERVOIR, Role.FLYING):
+        return ()
+    near = set(position.nodes) - {"0"}
+    for element in circuit.netlist.elements:
+        small = element.letter == "R" and element.value and element.value <= NEAR_OHM
+        if small and set(element.nodes) & near and "0" not in element.nodes:
+            near |= set(element.nodes)
+    pins = {Kind.RECTIFIER: ("cathode", "cathode2"), Kind.DIODE: ("minus", "plus")}
+    return tuple(
+        part
+        for part in circuit.parts
+        if any(part.pins.get(pin) in near for pin in pins.get(part.kind, ()))
+    )
+
+
+def table_limit(parts: Sequence[Part]) -> tuple[float | None, str]:
+    """Return the largest first capacitor the type table names, with type and source."""
+    found: list[tuple[float, str]] = []
+    for part in parts:
+        entry = types.find(part.type) if part.type else None
+        if entry is not None and entry.first_capacitor_max_F is not None:
+            source = entry.sources.get("first_capacitor_max_F", "")
+            found.append((entry.first_capacitor_max_F, f"{entry.name}: {source}"))
+    return min(found, default=(None, ""))
+
+
+def plan(
+    position: Position, *, circuit: Circuit, base: Case, candidates_F: Sequence[float]
+) -> Plan[Reservoir]:
+    """Ask for the rectifier's stress with every candidate in place; see `stress.study.plan`.
+
+    Args:
+        position: A reservoir.
+        circuit: With its rectifiers.
+        base: The healthy case at high line, answered before.
+        candidates_F: Rising; the smallest of them is the value that is to be fitted.
+    """
+    parts = rectifiers_of(position, circuit=circuit)
+    cases = [
+        replace(
+            base,
+            name=f"{base.name} / {position.name} {figure(value, 'F', digits=6)}",
+            parent=base.name,
+            fault=f"{position.name} {figure(value, 'F')}",
+            values={**base.values, position.name: value},
+        )
+        for value in candidates_F
+    ]
+    period_s = base.twin.period_s
+    if period_s is not None and candidates_F:
+        cases.append(
+            replace(
+                cases[0],
+                name=f"switched on / {position.name} {figure(candidates_F[0], 'F', digits=6)}",
+                parent=None,
+                analysis=Transient(stop_s=INRUSH_PERIODS * period_s, phase_deg=90.0),
+            )
+        )
+    answers = yield tuple(cases)
+    tried, missing = [], []
+    for value, case, answer in zip(candidates_F, cases, answers, strict=False):
+        peaks, average = [], []
+        if isinstance(answer, Settled):
+            for part in parts:
+                stresses = part_stresses(part, answer.waves, removed=case.removed)
+                peaks.append(stresses.get("peak_A", 0.0))
+                average.append(stresses.get("average_A", 0.0))
+        elif (why := unanswered(answer, case.name)) is not None:
+            missing.append(why)
+        tried.append(
+            Tried(
+                value_F=value,
+                peak_A=max(peaks, default=None),
+                average_A=max(average, default=None),
+            )
+        )
+    inrush = None
+    last = answers[-1] if len(answers) > len(candidates_F) else None
+    if isinstance(last, Ran):
+        surges = [part_stresses(part, last.waves).get("peak_A", 0.0) for part in parts]
+        inrush = max(surges, default=None)
+    return judged(
+        position, parts=parts, tried=tuple(tried), inrush_A=inrush, missing=tuple(missing)
+    )
+
+
+def judged(
+    position: Position,
+    *,
+    parts: Sequence[Part],
+    tried: tuple[Tried, ...],
+    inrush_A: float | None = None,
+    missing: tuple[Unanswered, ...] = (),
+) -> Reservoir:
+    """Return the limit that the type table and the simulated peaks leave."""
+    table_F, source = table_limit(parts)
+    stated = [part.limits["peak_A"] for part in parts if "peak_A" in part.limits]
+    limit_A = min((limit.value for limit in stated), default=None)
+    within = [
+        row.value_F
+        for row in tried
+        if limit_A is not None and row.peak_A is not None and row.peak_A <= limit_A
+    ]
+    by_peak = max(within, default=None)
+    known = [value for value in (table_F, by_peak) if value is not None]
+    if limit_A is not None and tried and by_peak is None and table_F is None and not missing:
+        known = [position.value_F or 0.0]
+    return Reservoir(
+        position=position.name,
+        rectifiers=tuple(part.name for part in parts),
+        table_F=table_F,
+        table_source=source,
+        tried=tried,
+        limit_A=limit_A,
+        value_max_F=min(known, default=None),
+        inrush_A=inrush_A,
+        text=_told(table_F, source, tried, limit_A, inrush_A),
+        unanswered=missing,
+    )
+
+
+def _told(
+    table_F: float | None,
+    source: str,
+    tried: tuple[Tried, ...],
+    limit_A: float | None,
+    inrush_A: float | None,
+) -> str:
+    said = []
+    if table_F is not None:
+        said.append(f"largest first capacitor {figure(table_F, 'F')} ({source})")
+    peaks = [(row.value_F, row.peak_A) for row in tried if row.peak_A is not None]
+    if peaks:
+        listed = ", ".join(
+            f"{figure(amps, 'A')} with {figure(farad, 'F')}" for farad, amps in peaks
+        )
+        limit = f", limit {figure(limit_A, 'A')}" if limit_A is not None else ", no limit stated"
+        said.append(f"rectifier peak {listed}{limit}")
+    if inrush_A is not None:
+        said.append(f"{figure(inrush_A, 'A')} at a switch-on from rest at the crest")
+    return "; ".join(said)
