@@ -10,6 +10,7 @@ from dataclasses import dataclass, field
 
 from stress.netlist.flat import NOTHING
 from stress.parts.limit import Limit
+from stress.text.span import Span
 from stress.text.unit import unit
 
 
@@ -67,6 +68,7 @@ class TubeEntry:
     rectifier: bool | None = None
     envelope: str | None = None
     heater_bias_V: float | None = field(default=None, metadata=unit("V"))
+    grid_circuit_ohm: float | None = field(default=None, metadata=unit("ohm"))
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -125,6 +127,8 @@ class Sheet:
         tester_V: Voltages the user's tester has.
         functional_share: Share by which a bias may move (0.1).
         likelihood: The user's factors on the likelihood of a fault, by style.
+        spans: Where each entry stands, by its table and its name in lower case, and each key
+            of it by its path, such as ("capacitors", "c5", "plus").
     """
 
     path: str | None = None
@@ -151,3 +155,9 @@ class Sheet:
     tester_V: tuple[float, ...] = ()
     functional_share: float = field(default=0.1, metadata=unit("1"))
     likelihood: Mapping[str, float] = NOTHING
+    spans: Mapping[tuple[str, ...], Span] = field(default_factory=dict, compare=False, repr=False)
+
+    def span(self, table: str, name: str, *keys: str) -> Span | None:
+        """Return where an entry, or a key of it, stands in the file."""
+        path = (table, name.lower(), *keys)
+        return self.spans.get(path) or self.spans.get(path[:2])

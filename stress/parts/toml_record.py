@@ -29,17 +29,27 @@ class Tables:
         self.document = document
         self.errors: list[SourceError] = []
 
+    def title(self, path: Path) -> str:
+        """Return a path as people write it: "[capacitors.C5] rated"."""
+        names, value = list(path), self.document.values
+        tables = []
+        while names and isinstance(value, dict) and isinstance(value.get(str(names[0])), dict):
+            value = value[str(names[0])]
+            tables.append(str(names.pop(0)))
+        items = [f"item {name + 1}" if isinstance(name, int) else name for name in names]
+        return " ".join([f"[{'.'.join(tables)}]"] * bool(tables) + [", ".join(items)] * bool(items))
+
     def wrong(self, path: Path, message: str, hint: str = "") -> Any:
         """Note that a value cannot be used; returns `MISSING`."""
         self.errors.append(
-            SourceError(f"{title(path)}: {message}", self.document.place(path), hint)
+            SourceError(f"{self.title(path)}: {message}", self.document.place(path), hint)
         )
         return MISSING
 
     def unknown(self, path: Path, kind: str, accepted: Sequence[str]) -> None:
         """Note a key that nobody reads."""
         name = str(path[-1])
-        where = f" in {title(path[:-1])}" if len(path) > 1 else ""
+        where = f" in {self.title(path[:-1])}" if len(path) > 1 else ""
         span = self.document.key(path)
         self.errors.append(
             SourceError(f'unknown {kind} "{name}"{where}', span, near(name, accepted))
@@ -111,17 +121,6 @@ def _required(make: Callable[..., Any]) -> set[str]:
         for f in (fields(make) if is_dataclass(make) else ())
         if f.default is MISSING_DEFAULT and f.default_factory is MISSING_DEFAULT
     }
-
-
-def title(path: Path) -> str:
-    """Return a path as people write it: "[capacitors.C5] rated"."""
-    names = [str(part) for part in path if not isinstance(part, int)]
-    if len(names) < 2:
-        return f"[{names[0]}]" if names else "the file"
-    places = [f", item {part + 1}" for part in path[2:] if isinstance(part, int)]
-    if len(names) == 2:
-        return f"[{names[0]}] {names[1]}{''.join(places)}"
-    return f"[{'.'.join(names[:-1])}] {names[-1]}{''.join(places)}"
 
 
 def shown(value: Any) -> str:
