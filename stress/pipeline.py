@@ -23,6 +23,7 @@ from stress.parts.sheet import Sheet
 from stress.study.bench import bench
 from stress.study.conditions import conditions
 from stress.study.failures import failures
+from stress.study.fault import parse
 from stress.study.inrush import inrush
 from stress.study.leakage import leakage
 from stress.study.replacement import replacement
@@ -84,6 +85,7 @@ def review(
     sheet: str | Path | None = None,
     high_V: float | None = None,
     only: Sequence[str] = (),
+    also: Sequence[str] = (),
     policy: str = USUAL_POLICY,
     libraries: Sequence[Path] = (),
     type_files: Sequence[Path] = (),
@@ -95,6 +97,7 @@ def review(
 
     Args:
         only: Names of the positions whose faults are studied; empty: all.
+        also: Known faults that are in every case, such as "C5 leaky 1 Meg".
         policy: Name of the derating policy.
         jobs: Worker processes; None: one a core.
         progress: Called with the stage, the cases solved and the cases expected.
@@ -102,6 +105,7 @@ def review(
     Raises:
         SourceErrors, OSError: As `load`.
         KeyError: A position or a policy of no such name.
+        ValueError: A known fault that cannot be read.
     """
     circuit = load(
         path,
@@ -111,13 +115,16 @@ def review(
         type_files=type_files,
         dialect=dialect,
     )
-    return review_circuit(circuit, only=only, policy=policy, jobs=jobs, progress=progress)
+    return review_circuit(
+        circuit, only=only, also=also, policy=policy, jobs=jobs, progress=progress
+    )
 
 
 def review_circuit(
     circuit: Circuit,
     *,
     only: Sequence[str] = (),
+    also: Sequence[str] = (),
     policy: str = USUAL_POLICY,
     jobs: int | None = None,
     progress: Progress | None = None,
@@ -134,7 +141,7 @@ def review_circuit(
             progress(stage, done, max(known, expected))
 
     with Pool(jobs=jobs, progress=tell) as pool:
-        healthy = work(circuit, solver=pool)
+        healthy = work(circuit, solver=pool, also=tuple(parse(text, circuit) for text in also))
         stage = "switch-on"
         healthy = inrush(circuit, healthy=healthy, solver=pool)
         stage = "leakage"

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import sys
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import click
 
@@ -19,11 +20,20 @@ from stress.command.options import (
 )
 from stress.finding import Severity
 
+if TYPE_CHECKING:
+    from stress.circuit.circuit import Circuit
+
 
 @click.command()
 @inputs
 @jobs
 @click.option("--only", default="", metavar="C5,C6", help="Study the faults of these only.")
+@click.option(
+    "--also",
+    multiple=True,
+    metavar="'C5 leaky 1 Meg'",
+    help="A known fault that is in every case; can be given again.",
+)
 @click.option("--policy", default="common-practice", show_default=True, help="Derating policy.")
 @click.option("--json", "json_file", type=click.Path(path_type=Path), help="Write all numbers.")
 @click.option("--html", "html_file", type=click.Path(path_type=Path), help="Write a page.")
@@ -38,6 +48,7 @@ def review(
     given: Given,
     jobs: int | None,
     only: str,
+    also: tuple[str, ...],
     policy: str,
     json_file: Path | None,
     html_file: Path | None,
@@ -61,9 +72,10 @@ def review(
         circuit = given.load()
         names = names_of(only, circuit)
         _known_policy(policy)
+        _known_faults(also, circuit)
         with progress() as report:
             found = pipeline.review_circuit(
-                circuit, only=names, policy=policy, jobs=jobs, progress=report
+                circuit, only=names, also=also, policy=policy, jobs=jobs, progress=report
             )
         if json_file is not None:
             write_json(found, json_file)
@@ -90,3 +102,14 @@ def _known_policy(policy: str) -> None:
     if policy not in policies():
         click.echo(f"no policy {policy!r}; there are {', '.join(policies())}", err=True)
         sys.exit(UNUSABLE)
+
+
+def _known_faults(also: tuple[str, ...], circuit: Circuit) -> None:
+    from stress.study.fault import parse
+
+    for text in also:
+        try:
+            parse(text, circuit)
+        except ValueError as problem:
+            click.echo(f"--also {text!r}: {problem}", err=True)
+            sys.exit(UNUSABLE)

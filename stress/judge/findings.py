@@ -64,6 +64,25 @@ def healthy_over_limit(results: Results) -> Iterator[Finding]:
                 )
 
 
+def leaks_between_nodes(results: Results) -> Iterator[Finding]:
+    """Leakage between sections of a can or between stated nodes that passes a limit."""
+    positions = {position.name for position in results.circuit.positions}
+    for name, leak in results.leakage.items():
+        found = leak.governing
+        if name in positions or found is None or found.critical_ohm is None:
+            continue
+        if found.victim is not None:
+            yield Finding(
+                severity=Severity.TEST,
+                where=name,
+                condition=found.condition,
+                text=f"below {figure(found.critical_ohm, 'ohm')} of leakage here "
+                f"{describe(found.victim)}",
+                action="One section bad, the whole can goes." if ":" in name else "",
+                rule="leak-between-nodes",
+            )
+
+
 def assumed_limits(results: Results) -> Iterator[Finding]:
     """Leaks and failures that would pass a limit nobody stated: name the key that settles it."""
     seen: dict[str, tuple[Victim, list[str]]] = {}
@@ -167,6 +186,7 @@ RULES: tuple[Rule, ...] = (
     healthy_over_limit,
     ripple_over_rating,
     surge_of_rectifiers,
+    leaks_between_nodes,
     without_number,
     seen_without_solving,
     assumed_limits,

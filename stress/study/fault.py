@@ -3,15 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from stress.circuit.circuit import Circuit, Position
+from stress.engine.case import Twin
 from stress.text.figure import figure
+from stress.text.quantity import QuantityError, quantity
 
 SHORT_OHM = 0.1
 OPEN_SHARE = 1e-9
 DRIED_SHARE, DRIED_ESR = 0.2, 10.0
 LOW_SHARE = 0.5
+KINDS = ("leaky", "short", "open", "dried", "low", "reversed")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -66,3 +69,51 @@ def across_ideal_source(circuit: Circuit, position: Position) -> bool:
         if not reached:
             return position.nodes[1] in joined
         joined |= reached
+
+
+def parse(text: str, circuit: Circuit) -> Fault:
+    """Read a known fault such as "C5 leaky 1 Meg" or "C7 open".
+
+    Raises:
+        ValueError: With what would be accepted.
+    """
+    name, _, rest = text.strip().partition(" ")
+    kind, _, ohm = rest.strip().partition(" ")
+    try:
+        position = circuit.position(name)
+    except KeyError:
+        known = ", ".join(p.name for p in circuit.positions)
+        raise ValueError(f"no position {name!r}; there are {known}") from None
+    if kind not in KINDS:
+        raise ValueError(f"no fault {kind!r}; there are {', '.join(KINDS)}")
+    if (kind == "leaky") != bool(ohm.strip()):
+        raise ValueError('a leak is given with its resistance, "C5 leaky 1 Meg", others without')
+    if kind != "leaky":
+        return Fault(position=position.name, kind=kind)
+    try:
+        value = quantity(ohm if "ohm" in ohm.lower() or "Ω" in ohm else f"{ohm} ohm", "ohm")
+    except QuantityError as problem:
+        raise ValueError(str(problem)) from problem
+    if value <= 0.0:
+        raise ValueError("a leakage resistance above zero is wanted")
+    return Fault(position=position.name, kind=kind, ohm=value)
+
+
+def applied(
+    twin: Twin, faults: tuple[Fault, ...], *, circuit: Circuit, esr_ohm: Mapping[str, float]
+) -> Twin:
+    """Return the twin with known faults in it, so that they are in every case."""
+    changed = {
+        name.lower(): value
+        for fault in faults
+        for name, value in values(
+            fault, circuit.position(fault.position), esr_ohm=esr_ohm[fault.position]
+        ).items()
+    }
+    if not changed:
+        return twin
+    elements = tuple(
+        replace(e, value=changed[e.name.lower()]) if e.name.lower() in changed else e
+        for e in twin.elements
+    )
+    return replace(twin, elements=elements)

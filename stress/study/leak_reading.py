@@ -39,7 +39,9 @@ class Scene:
             name=self.name(ohm),
             fault=str(fault),
             parent=parent,
-            values=values(fault, self.position, esr_ohm=self.healthy.esr_ohm[self.position.name]),
+            values=values(
+                fault, self.position, esr_ohm=self.healthy.esr_ohm.get(self.position.name, 0.0)
+            ),
         )
 
     def name(self, ohm: float) -> str:

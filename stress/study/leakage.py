@@ -16,6 +16,7 @@ from stress.engine.case import Settled
 from stress.engine.solver import Solver
 from stress.engine.twin import MOST_LEAKAGE_OHM, insulation_of
 from stress.study import conditions as stock
+from stress.study.between import leaks_between
 from stress.study.fault import across_ideal_source
 from stress.study.leak_reading import Reading, Scene, open_scene, read
 from stress.study.limits import all_stresses
@@ -35,8 +36,13 @@ SEARCHED = (stock.NOMINAL, stock.HIGH, stock.DRIVEN)
 def leakage(
     circuit: Circuit, studied: Sequence[Position], *, healthy: Healthy, solver: Solver
 ) -> dict[str, Leakage]:
-    """Return the leakage study of every studied position with a value, by name."""
+    """Return the leakage study of every studied position with a value, by name.
+
+    Where all positions are studied, leakage between sections and nodes is studied as well.
+    """
     positions = [p for p in studied if p.value_F]
+    if len(studied) == len(circuit.positions):
+        positions += leaks_between(circuit)
     limited = [p for p in positions if not across_ideal_source(circuit, p)]
     searched = [
         c for c in healthy.working.conditions if c.name in SEARCHED and c.name in healthy.settled

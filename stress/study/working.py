@@ -10,6 +10,8 @@ from stress.engine.case import Answer, Case, Settled, Twin, Unsolved, Wandering,
 from stress.engine.solver import Solver
 from stress.engine.twin import build, esr_of
 from stress.study import conditions as stock
+from stress.study.between import with_leaks_between
+from stress.study.fault import Fault, applied
 from stress.study.measure import harmonics, part_stresses, position_stress
 from stress.study.result import (
     Condition,
@@ -41,8 +43,10 @@ class Healthy:
     working: Working
 
 
-def work(circuit: Circuit, *, solver: Solver) -> Healthy:
+def work(circuit: Circuit, *, solver: Solver, also: tuple[Fault, ...] = ()) -> Healthy:
     """Solve every condition of the healthy equipment and measure it.
+
+    "Healthy" but for the known faults in `also`, which then are in every case.
 
     The first look at `nominal` finds the ripple frequency of every position, at which its
     assumed ESR is then taken (IEC 60384-1: tan δ and ESR belong to a frequency).
@@ -52,11 +56,12 @@ def work(circuit: Circuit, *, solver: Solver) -> Healthy:
     first = stock.case(circuit, wanted[0], twin=rough, name=FIRST_LOOK)
     looked = next(iter(solver.solve([first])))
     frequencies = _ripple_Hz(circuit, looked)
-    twin = build(circuit, frequency_Hz=frequencies)
     usual = 1.0 / circuit.period_s if circuit.period_s else 1000.0
     esr = {
         p.name: esr_of(p, frequency_Hz=frequencies.get(p.name, usual)) for p in circuit.positions
     }
+    sound = with_leaks_between(build(circuit, frequency_Hz=frequencies), circuit)
+    twin = applied(sound, also, circuit=circuit, esr_ohm=esr)
     cases = [
         stock.case(
             circuit,
