@@ -3,67 +3,25 @@
 from __future__ import annotations
 
 import csv
-from collections.abc import Iterator
-from dataclasses import dataclass
+from collections.abc import Iterable, Iterator
 from pathlib import Path
 
 from stress.circuit.circuit import Part, Position
 from stress.parts.limit import Limit, Rating
 from stress.report import words
-from stress.report.words import amount
+from stress.report.table import (
+    BROAD,
+    BUT_NARROW,
+    FILE,
+    NARROW,
+    SHOWN,
+    WIDE,
+    Cell,
+    Column,
+    Table,
+    number,
+)
 from stress.study.result import Failure, Review
-
-NARROW, WIDE, PAGE, FILE = "narrow", "wide", "page", "file"
-SHOWN = frozenset({NARROW, WIDE, PAGE})
-BROAD = frozenset({WIDE, PAGE})
-EVERYWHERE = SHOWN | {FILE}
-BUT_NARROW = BROAD | {FILE}
-
-
-@dataclass(frozen=True, slots=True)
-class Column:
-    """One column: `key` heads it in CSV files, `title` elsewhere; `places` is where it shows."""
-
-    key: str
-    title: str
-    number: bool = False
-    places: frozenset[str] = EVERYWHERE
-
-
-@dataclass(frozen=True, slots=True)
-class Cell:
-    """What people read, and the same as the SI number (or text) for files and sorting."""
-
-    text: str
-    value: float | str | None = None
-
-    @property
-    def written(self) -> str:
-        """As it stands in a CSV file: the number unrounded, else the words."""
-        return repr(float(self.value)) if isinstance(self.value, int | float) else self.text
-
-
-@dataclass(frozen=True, slots=True)
-class Table:
-    """Rows of as many cells as there are columns."""
-
-    name: str
-    columns: tuple[Column, ...]
-    rows: tuple[tuple[Cell, ...], ...]
-
-    def __post_init__(self) -> None:
-        if any(len(row) != len(self.columns) for row in self.rows):
-            raise ValueError(f"a row of the table of {self.name} does not fit its columns")
-
-    def place(self, place: str) -> Table:
-        """Return the table with the columns that show in one place."""
-        kept = [i for i, column in enumerate(self.columns) if place in column.places]
-        return Table(
-            self.name,
-            tuple(self.columns[i] for i in kept),
-            tuple(tuple(row[i] for i in kept) for row in self.rows),
-        )
-
 
 POSITIONS = (
     Column("rank", "#", number=True),
@@ -78,7 +36,7 @@ POSITIONS = (
     Column("worst_V", "worst", number=True),
     Column("worst_condition", "in", places=BUT_NARROW),
     Column("brief_V", "brief", number=True, places=BUT_NARROW),
-    Column("ripple_rms_A", "ripple", number=True, places=BUT_NARROW),
+    Column("ripple_rms_A", "ripple", number=True, places=frozenset({WIDE, FILE})),
     Column("critical_ohm", "damage below", number=True),
     Column("victim", "to", places=BUT_NARROW),
     Column("functional_ohm", "works above", number=True, places=BUT_NARROW),
@@ -86,8 +44,8 @@ POSITIONS = (
     Column("fit_value_F", "fit value", number=True, places=frozenset({FILE})),
     Column("fit_rated_V", "fit rated", number=True, places=frozenset({FILE})),
     Column("fit_style", "fit style", places=frozenset({FILE})),
-    Column("leakage_max_A", "may leak", number=True, places=BUT_NARROW),
-    Column("leakage_test_V", "at", number=True, places=BUT_NARROW),
+    Column("leakage_max_A", "may leak", number=True, places=frozenset({WIDE, FILE})),
+    Column("leakage_test_V", "at", number=True, places=frozenset({WIDE, FILE})),
     Column("do", "do", places=frozenset({NARROW})),
     Column("severity", "do", places=BUT_NARROW),
 )
@@ -111,6 +69,16 @@ FAILURES = (
     Column("dangerous", "dangerous"),
     Column("victims", "past a limit"),
     Column("text", "what happens"),
+)
+BEARS = (
+    Column("condition", "condition"),
+    Column("dc_V", "mean", number=True),
+    Column("peak_V", "peak", number=True),
+    Column("reverse_V", "reverse", number=True),
+    Column("ripple_pp_V", "ripple, peak to peak", number=True),
+    Column("ripple_rms_A", "ripple current, rms", number=True),
+    Column("esr_loss_W", "lost in its ESR", number=True),
+    Column("error_V", "settled within", number=True),
 )
 PROOFS = (
     Column("condition", "condition"),
@@ -188,30 +156,51 @@ def _position(review: Review, of: Position) -> tuple[Cell, ...]:
         "role_text": Cell(of.role_text),
         "fitted": Cell(words.marked(of)),
         "style": Cell(of.style.name),
-        "value_F": _number(of.value_F, "F"),
-        "rated_V": _number(of.rated_V, "V"),
-        "bears_V": _number(nominal.dc_V if nominal else None, "V", missing=no_nominal),
-        "worst_V": _number(worst.worst_V if worst else None, "V", missing="unsolved"),
+        "value_F": number(of.value_F, "F"),
+        "rated_V": number(of.rated_V, "V"),
+        "bears_V": number(nominal.dc_V if nominal else None, "V", missing=no_nominal),
+        "worst_V": number(worst.worst_V if worst else None, "V", missing="unsolved"),
         "worst_condition": Cell(worst.condition if worst else "none"),
-        "brief_V": _number(worst.brief_V if worst else None, "V", missing="none"),
-        "ripple_rms_A": _number(nominal.ripple_rms_A if nominal else None, "A", missing=no_nominal),
+        "brief_V": number(worst.brief_V if worst else None, "V", missing="none"),
+        "ripple_rms_A": number(nominal.ripple_rms_A if nominal else None, "A", missing=no_nominal),
         "critical_ohm": critical,
         "victim": Cell(f"{victim.part} {words.quantity(victim.quantity)}" if victim else "nothing"),
         "functional_ohm": functional,
         "fit": Cell(words.fit(fit) if fit else words.NOT_STUDIED),
-        "fit_value_F": _number(fit.value_F if fit else None, "F"),
-        "fit_rated_V": _number(fit.rated_V if fit else None, "V"),
+        "fit_value_F": number(fit.value_F if fit else None, "F"),
+        "fit_rated_V": number(fit.rated_V if fit else None, "V"),
         "fit_style": Cell(fit.style if fit else words.NOT_STUDIED),
-        "leakage_max_A": _number(bench.leakage_max_A if bench else None, "A"),
-        "leakage_test_V": _number(bench.test_V if bench else None, "V"),
+        "leakage_max_A": number(bench.leakage_max_A if bench else None, "A"),
+        "leakage_test_V": number(bench.test_V if bench else None, "V"),
         "do": Cell(risk.severity.value.partition("-")[0] if risk else "nothing"),
         "severity": Cell(words.SEVERITIES[risk.severity] if risk else "nothing"),
     }
     return tuple(cells[column.key] for column in POSITIONS)
 
 
-def _number(value: float | None, unit: str, *, missing: str = words.NOT_KNOWN) -> Cell:
-    return Cell(amount(value, unit, missing=missing), value)
+def bears(review: Review, of: Position) -> Table:
+    """Return what one position bears in each condition."""
+    held = review.working.positions.get(of.name, {})
+    rows = []
+    for condition in review.working.conditions:
+        stress = held.get(condition.name)
+        if stress is None:
+            missing = Cell(words.missing_in(review, condition.name))
+            rows.append((Cell(condition.name), *[missing] * (len(BEARS) - 1)))
+            continue
+        rows.append(
+            (
+                Cell(condition.name),
+                number(stress.dc_V, "V"),
+                number(stress.peak_V, "V"),
+                number(stress.reverse_V, "V", missing="not polar"),
+                number(stress.ripple_pp_V, "V"),
+                number(stress.ripple_rms_A, "A"),
+                number(stress.esr_loss_W, "W"),
+                number(stress.error_V, "V"),
+            )
+        )
+    return Table("bears", BEARS, tuple(rows))
 
 
 def parts(review: Review) -> Table:
@@ -242,11 +231,11 @@ def _part(review: Review, of: Part) -> Iterator[tuple[Cell, ...]]:
             Cell(of.name),
             Cell(f"{of.kind.value} {of.type}".rstrip()),
             Cell(words.quantity(stress), stress),
-            _number(judged, unit, missing=words.missing_in(review, condition)),
+            number(judged, unit, missing=words.missing_in(review, condition)),
             Cell(condition),
-            _number(by_condition[largest] if largest else None, unit, missing="unsolved"),
+            number(by_condition[largest] if largest else None, unit, missing="unsolved"),
             Cell(largest or "none"),
-            _number(limit.value if limit else None, unit),
+            number(limit.value if limit else None, unit),
             Cell(limit.rating.value if limit else "none"),
             Cell(_source(limit)),
             Cell(verdict),
@@ -268,12 +257,17 @@ def _source(limit: Limit | None) -> str:
 
 def failures(review: Review) -> Table:
     """Return the table of what each failure of each position does."""
-    rows = (
-        _failure(each)
+    listed = [
+        each
         for position in review.circuit.positions
         for each in review.failures.get(position.name, ())
-    )
-    return Table("failures", FAILURES, tuple(rows))
+    ]
+    return Table("failures", FAILURES, failure_rows(listed))
+
+
+def failure_rows(of: Iterable[Failure]) -> tuple[tuple[Cell, ...], ...]:
+    """Return the rows of the table of failures for some of them."""
+    return tuple(_failure(each) for each in of)
 
 
 def _failure(of: Failure) -> tuple[Cell, ...]:

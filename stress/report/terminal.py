@@ -12,7 +12,7 @@ from rich.text import Text
 from stress.finding import Severity
 from stress.report import tables, words
 from stress.report.order import Step, order_of_work
-from stress.report.tables import Table
+from stress.report.table import NARROW, WIDE, Table
 from stress.report.words import plain
 from stress.study.result import Review
 from stress.text.figure import figure
@@ -72,7 +72,7 @@ class _Out:
 
     def table(self, table: Table, *, groups: Iterable[str] | None = None) -> None:
         """Print a table; `groups` names each row's group, printed above its first row."""
-        shown = table.place(tables.WIDE if self.wide else tables.NARROW)
+        shown = table.place(WIDE if self.wide else NARROW)
         grid = Grid(box=SIMPLE_HEAD, padding=(0, 1, 0, 0), pad_edge=False, show_edge=False)
         for column in shown.columns:
             grid.add_column(

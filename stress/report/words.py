@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import unicodedata
 
 from stress.circuit.circuit import Position
@@ -10,6 +11,7 @@ from stress.parts.limit import STRESSES
 from stress.study.result import LeakageIn, Replacement, Review, Victim
 from stress.text.figure import figure
 
+_BEFORE_UNIT = re.compile(r"(?<=\d) (?=[pnµmkMGT]?(?:F|Ω|A|V|W|J|H|s|Hz|h|C)\b|°C|%)")
 NOT_KNOWN = "not known"
 NOT_STUDIED = "not studied"
 NO_DAMAGE = "no damage"
@@ -42,9 +44,18 @@ QUANTITIES = {
 }
 
 
+# Less than this is noise of the simulation and is not spelt out.
+_FLOORS = {"V": 1e-6, "A": 1e-12, "W": 1e-9}
+
+
 def amount(value: float | None, unit: str, *, missing: str = NOT_KNOWN) -> str:
     """Return a number as the trade writes it, or the word that says why there is none."""
-    return missing if value is None else figure(value, unit)
+    if value is None:
+        return missing
+    floor = _FLOORS.get(unit, 0.0)
+    if 0.0 < abs(value) < floor:
+        return f"below {figure(floor, unit)}"
+    return figure(value, unit)
 
 
 def quantity(stress: str) -> str:
@@ -89,6 +100,11 @@ def fit(of: Replacement) -> str:
     if of.rated_V is not None:
         text += f", {figure(of.rated_V, 'V')}"
     return text + (f", {of.arrangement}" if of.arrangement else "")
+
+
+def tidy(text: str) -> str:
+    """Return text for the page: as `plain`, and numbers stay on the line of their unit."""
+    return _BEFORE_UNIT.sub("\u00a0", plain(text))
 
 
 def missing_in(review: Review, condition: str) -> str:

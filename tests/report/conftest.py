@@ -285,8 +285,7 @@ EXPLANATIONS = {
 }  # fmt: skip
 
 
-@pytest.fixture(scope="session")
-def specimen():
+def written_by_hand():
     return Review(
         circuit=Circuit(
             netlist=Netlist(path="lantern.cir", title="lantern", elements=()),
@@ -320,3 +319,8 @@ def specimen():
         versions=Versions(ngspice="39", pyspice="1.5"),
         policy="common practice",
     )  # fmt: skip
+
+
+@pytest.fixture(scope="session")
+def specimen():
+    return written_by_hand()
