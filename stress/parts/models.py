@@ -6,6 +6,7 @@ import tomllib
 from collections.abc import Mapping
 from functools import cache
 from pathlib import Path
+from typing import Any
 
 from stress.parts import types
 from stress.parts.model import Unit
@@ -32,7 +33,24 @@ def subcircuit(name: str) -> str | None:
 
 def units(entry: TypeEntry) -> tuple[Unit, ...]:
     """Return the units of the model of a type, () where there is none."""
-    return _table().get(entry.model or entry.name, ())
+    rows = _table().get(entry.model, {}).get("unit", ())
+    return tuple(
+        Unit(
+            row["form"],
+            tuple(row["pins"]),
+            {name: float(v) for name, v in row.items() if name not in ("form", "pins")},
+        )
+        for row in rows
+    )
+
+
+def fit_error(entry: TypeEntry) -> Mapping[str, float]:
+    """Return how far the model is off its published lines, in parts of one.
+
+    Keys "plate", "screen", "gm" for the lines of `TypeEntry.operation` and "curves" for points
+    read off published curves, the worst of each; empty for rectifiers, whose drop is exact.
+    """
+    return dict(_table().get(entry.model, {}).get("fit", {}))
 
 
 def modelled() -> tuple[TypeEntry, ...]:
@@ -55,16 +73,9 @@ def emission(entry: TypeEntry, heater_share: float) -> float:
 
 
 @cache
-def _table() -> Mapping[str, tuple[Unit, ...]]:
-    found: dict[str, tuple[Unit, ...]] = {}
+def _table() -> Mapping[str, Mapping[str, Any]]:
+    """Return the model table as it stands in its files, by type."""
+    found: dict[str, Mapping[str, Any]] = {}
     for path in sorted(TABLE.glob("*.toml")):
-        for name, rows in tomllib.loads(path.read_text(encoding="utf-8")).items():
-            found[name] = tuple(
-                Unit(
-                    row["form"],
-                    tuple(row["pins"]),
-                    {k: v for k, v in row.items() if k not in ("form", "pins")},
-                )
-                for row in rows
-            )
+        found |= tomllib.loads(path.read_text(encoding="utf-8"))
     return found

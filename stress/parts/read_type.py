@@ -205,6 +205,7 @@ class _Reader:
                 name, key, f'unknown key "{key}"', "keys: " + " ".join(sorted({*LIMITS, *NUMBERS}))
             )
         changes |= {"limits": MappingProxyType(limits), "sources": MappingProxyType(sources)}
+        changes.setdefault("note", "")
         if base is not None:
             return _finish(replace(base, **changes))
         if changes.get("family") not in FAMILIES:
