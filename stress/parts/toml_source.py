@@ -15,7 +15,8 @@ from typing import Any
 
 from stress.text.span import SourceError, SourceErrors, Span
 
-LARGEST = 500_000  # characters; a sheet of a thousand parts has a tenth of that
+LARGEST = 300_000  # characters; a sheet of a thousand parts has half of that
+LONGEST = 1000  # characters of a line; long dotted keys cost their square
 DEEPEST = 8  # levels of tables and arrays; a sheet needs four
 
 Path = tuple[str | int, ...]
@@ -98,13 +99,16 @@ def parse(text: str, *, file: str) -> Document:
         raise SourceErrors(
             [SourceError(f"the file has more than {LARGEST} characters", whole(file))]
         )
+    for row, line in enumerate(text.split("\n"), 1):
+        if len(line) > LONGEST:
+            span = Span(file, row, LONGEST - 20, 1, line[:LONGEST])
+            raise SourceErrors([SourceError(f"a line has more than {LONGEST} characters", span)])
     try:
         values = tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
         raise SourceErrors([_syntax(str(error), text, file)]) from None
-    except (ValueError, RecursionError) as error:  # endless digits, or brackets without end
-        deep = isinstance(error, RecursionError)
-        reason = "tables or arrays are nested too deep" if deep else "a number is too long"
+    except RecursionError:
+        reason = "tables or arrays are nested too deep"
         raise SourceErrors([SourceError(reason, whole(file))]) from None
     for name, value in values.items():
         if _deeper_than(value, DEEPEST):
@@ -177,13 +181,16 @@ class _Scan:
         start = self.at
         path: Path = ()
         names = self._names()
+        span = self._span(start, self.at)
         for name in names[:-1]:
-            path = self._into((*path, name))
+            path = (*path, name)
+            self.keys.setdefault(path, span)
+            path = self._into(path)
         path = (*path, names[-1])
         if several:
             self._rows[path] = self._rows.get(path, -1) + 1
             path = self._into(path)
-        self.keys.setdefault(path, self._span(start, self.at))
+        self.keys.setdefault(path, span)
         self.at = self.text.index("]", self.at) + (2 if several else 1)
         return path
 
