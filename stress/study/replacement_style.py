@@ -11,9 +11,8 @@ from stress.text.figure import figure
 
 PULSES = frozenset({Role.SNUBBER, Role.BUFFER})
 SLOPE_RESERVE = 0.5  # of a style's pulse slope is used (common practice)
-LARGEST_FILM_F = 10e-6  # more is sold as a motor capacitor (common practice)
+LARGEST_FILM_F = 10e-6  # more is sold as polypropylene for dc links (common practice)
 _FILMS = ("film", "film-pp", "snubber")  # each stands steeper pulses than the one before
-_WOUND = frozenset({"paper", "paper-oil", "polystyrene", *_FILMS})
 
 
 @dataclass(frozen=True, slots=True)
@@ -58,9 +57,9 @@ def style_for(
     if position.style.name == "aluminium-nonpolar" and (position.value_F or 0.0) > LARGEST_FILM_F:
         name = position.style.name  # film of that size finds no room
     if name == "film" and (position.value_F or 0.0) > LARGEST_FILM_F:
-        name = "film-ac"
+        name = "film-pp"
     chosen = styles.styles()[name]
-    if position.style.name in _WOUND or position.role in PULSES:
+    if chosen.name in _FILMS or position.role in PULSES:
         steep = _steep_enough(position, chosen, slope_V_per_s=slope_V_per_s)
         if steep is not None:
             return steep
