@@ -9,6 +9,7 @@ from stress.circuit.circuit import Circuit, Kind, Position, Role
 from stress.engine.case import Answer, Case, Settled
 from stress.engine.solver import Solver
 from stress.study import conditions as stock
+from stress.study.damage_time import timed
 from stress.study.fault import Fault, across_ideal_source, values
 from stress.study.leak_reading import Scene, open_scene
 from stress.study.limits import all_stresses, over
@@ -160,9 +161,10 @@ def _victims(one: Try) -> tuple[Victim, ...]:
         return ()
     scene = one.scene
     stresses = all_stresses(scene.circuit, one.answer.waves, removed=scene.removed)
-    return over(
+    victims = over(
         stresses, scene.judged, healthy=scene.stresses, but=scene.position.name, assumed=True
     )
+    return timed(victims, scene.circuit)
 
 
 def _consequences(circuit: Circuit, one: Try) -> tuple[str, ...]:

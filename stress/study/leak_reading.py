@@ -9,6 +9,7 @@ from math import log
 from stress.circuit.circuit import Circuit, Position
 from stress.engine.case import Answer, Case, Settled
 from stress.study import conditions as stock
+from stress.study.damage_time import timed
 from stress.study.fault import Fault, values
 from stress.study.function import Sign, moved, signs
 from stress.study.limits import Limits, Stresses, all_stresses, counted, excess, limits, over
@@ -110,12 +111,15 @@ def read(scene: Scene, ohm: float, answer: Answer) -> Reading:
         assumed=excess(stresses, {k: v for k, v in every.items() if v.assumed}),
         functional=functional,
         functional_text=text,
-        victims=over(
-            stresses,
-            scene.judged,
-            healthy=scene.stresses,
-            but=scene.position.name,
-            assumed=False,
+        victims=timed(
+            over(
+                stresses,
+                scene.judged,
+                healthy=scene.stresses,
+                but=scene.position.name,
+                assumed=False,
+            ),
+            scene.circuit,
         ),
         assumed_victims=over(
             stresses, scene.judged, healthy=scene.stresses, but=scene.position.name, assumed=True
