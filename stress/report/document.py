@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any
 
 from stress.circuit.circuit import Part, Position
+from stress.report import borne
 from stress.report.words import NOT_LIMITED
 from stress.study.result import (
     Condition,
@@ -18,10 +19,20 @@ from stress.study.result import (
     LeakageIn,
     PositionStress,
     Review,
+    Surge,
     Unanswered,
 )
 
 SCHEMA = "capstress-review/1"
+WORKING = (
+    "dc_V",
+    "peak_V",
+    "reverse_V",
+    "ripple_pp_V",
+    "ripple_rms_A",
+    "esr_loss_W",
+    "error_V",
+)
 FAULTS = ("short", "open", "dried", "low", "reversed")
 
 
@@ -51,7 +62,7 @@ def document(review: Review) -> dict[str, Any]:
                 "sheet": circuit.sheet.path,
             },
             "engine": {"ngspice": review.versions.ngspice, "pyspice": review.versions.pyspice},
-            "conditions": [_condition(each) for each in review.working.conditions],
+            "conditions": [_condition(each) for each in borne.conditions(review)],
             "positions": [_position(review, each) for each in circuit.positions],
             "parts": [_part(review, each) for each in circuit.parts],
             "power_up": None,
@@ -117,10 +128,7 @@ def _position(review: Review, of: Position) -> dict[str, Any]:
         "value_F": of.value_F,
         "rated_V": of.rated_V,
         "plus": _plus(of, held.get("nominal")),
-        "working": {
-            each.name: _stress(held[each.name]) if each.name in held else None
-            for each in review.working.conditions
-        },
+        "working": {name: _stress(stress) for name, stress in borne.position(review, of)},
         "worst_V": worst_V,
         "worst_condition": worst.condition if worst else None,
         "margin": margin,
@@ -148,16 +156,13 @@ def _plus(of: Position, nominal: PositionStress | None) -> str | None:
     return of.nodes[0 if nominal.dc_V >= 0 else 1]
 
 
-def _stress(of: PositionStress) -> dict[str, Any]:
-    return {
-        "dc_V": of.dc_V,
-        "peak_V": of.peak_V,
-        "reverse_V": of.reverse_V,
-        "ripple_pp_V": of.ripple_pp_V,
-        "ripple_rms_A": of.ripple_rms_A,
-        "esr_loss_W": of.esr_loss_W,
-        "error_V": of.error_V,
-    }
+def _stress(of: PositionStress | Surge | None) -> dict[str, Any] | None:
+    if of is None:
+        return None
+    if isinstance(of, Surge):
+        known = {"peak_V": of.peak_V, "reverse_V": of.reverse_V}
+        return {key: known.get(key) for key in WORKING}
+    return {key: getattr(of, key) for key in WORKING}
 
 
 def _replacement(review: Review, name: str) -> dict[str, Any] | None:
@@ -279,14 +284,14 @@ def _bench(review: Review, name: str) -> dict[str, Any] | None:
 
 
 def _part(review: Review, of: Part) -> dict[str, Any]:
-    held = review.working.parts.get(of.name, {})
+    held = borne.part(review, of.name)
     return {
         "name": of.name,
         "kind": of.kind.value,
         "type": of.type,
         "stresses": {
             each.name: dict(held[each.name]) if each.name in held else None
-            for each in review.working.conditions
+            for each in borne.conditions(review)
         },
         "limits": {
             stress: {"value": limit.value, "source": limit.source, "rating": limit.rating.value}

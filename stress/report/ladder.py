@@ -47,11 +47,12 @@ def rungs(review: Review, position: Position) -> tuple[Rung, ...]:
         if surge_V > position.rated_V:
             found.append(Rung("its surge rating", surge_V, "surge", False))
     fit = review.replacements.get(name)
-    if fit and fit.rated_V is not None:
+    ac_V = (fit.ac_V or fit.rated_V) if fit and fit.safety_class else None
+    if ac_V is not None:
+        words = f"proposed {figure(ac_V, 'V')} AC, crest"
+        found.append(Rung(words, ac_V * sqrt(2.0), "proposed", False))
+    elif fit and fit.rated_V is not None:
         found.append(Rung("proposed rating", fit.rated_V, "proposed", False))
-    elif fit and fit.ac_V is not None:
-        words = f"proposed {figure(fit.ac_V, 'V')} AC, crest"
-        found.append(Rung(words, fit.ac_V * sqrt(2.0), "proposed", False))
     return tuple(found)
 
 

@@ -13,12 +13,14 @@ from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from markupsafe import Markup
 
 from stress.finding import Severity
-from stress.report import tables, words
+from stress.report import borne, tables, words
 from stress.report.card import Card, Fact, capacitance, cards
 from stress.report.leak_curve import VERDICTS
 from stress.report.order import Step, order_of_work
+from stress.report.shopping import shopping_list
 from stress.report.table import PAGE
 from stress.report.words import amount
+from stress.study.conditions import INRUSH
 from stress.study.result import Review
 from stress.text.figure import figure
 
@@ -87,6 +89,7 @@ def page(review: Review) -> str:
         map=None,
         positions=tables.positions(review).place(PAGE),
         parts=tables.parts(review).place(PAGE),
+        shopping=shopping_list(review).place(PAGE),
         proofs=tables.proofs(review).place(PAGE),
         conditions=_conditions(review),
         severities=words.SEVERITIES,
@@ -153,9 +156,9 @@ def _glance(review: Review) -> tuple[Fact, ...]:
 
 
 def _conditions(review: Review) -> tuple[Fact, ...]:
-    answered = {name for held in review.working.positions.values() for name in held}
+    answered = {name for held in review.working.positions.values() for name in held} | {INRUSH}
     facts = []
-    for each in review.working.conditions:
+    for each in borne.conditions(review):
         line = "" if each.line_V is None else f"line {figure(each.line_V, 'V')}"
         missing = "" if each.name in answered else words.missing_in(review, each.name)
         text = "; ".join(part for part in (line, each.text, missing) if part)

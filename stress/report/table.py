@@ -34,7 +34,7 @@ class Cell:
     @property
     def written(self) -> str:
         """As it stands in a CSV file: the number unrounded, else the words."""
-        return repr(float(self.value)) if isinstance(self.value, int | float) else self.text
+        return str(self.value) if isinstance(self.value, int | float) else self.text
 
 
 @dataclass(frozen=True, slots=True)

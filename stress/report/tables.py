@@ -8,7 +8,8 @@ from pathlib import Path
 
 from stress.circuit.circuit import Part, Position
 from stress.parts.limit import Limit, Rating
-from stress.report import words
+from stress.report import borne, words
+from stress.report.shopping import shopping_list
 from stress.report.table import (
     BROAD,
     BUT_NARROW,
@@ -21,7 +22,7 @@ from stress.report.table import (
     Table,
     number,
 )
-from stress.study.result import Failure, Review
+from stress.study.result import Failure, Review, Surge
 
 POSITIONS = (
     Column("rank", "#", number=True),
@@ -94,14 +95,14 @@ WITHIN, PAST, NO_LIMIT = "within", "PAST ITS LIMIT", "no limit known"
 
 
 def write_csv(review: Review, folder: Path) -> tuple[Path, ...]:
-    """Write positions.csv, parts.csv and failures.csv; return their paths.
+    """Write positions.csv, parts.csv, failures.csv and shopping.csv; return their paths.
 
     Raises:
         OSError: Where they cannot be written.
     """
     folder.mkdir(parents=True, exist_ok=True)
     paths = []
-    for table in (positions(review), parts(review), failures(review)):
+    for table in (positions(review), parts(review), failures(review), shopping_list(review)):
         shown = table.place(FILE)
         path = folder / f"{table.name}.csv"
         with path.open("w", encoding="utf-8", newline="") as file:
@@ -180,17 +181,21 @@ def _position(review: Review, of: Position) -> tuple[Cell, ...]:
 
 def bears(review: Review, of: Position) -> Table:
     """Return what one position bears in each condition."""
-    held = review.working.positions.get(of.name, {})
     rows = []
-    for condition in review.working.conditions:
-        stress = held.get(condition.name)
+    for condition, stress in borne.position(review, of):
         if stress is None:
-            missing = Cell(words.missing_in(review, condition.name))
-            rows.append((Cell(condition.name), *[missing] * (len(BEARS) - 1)))
+            missing = Cell(words.missing_in(review, condition))
+            rows.append((Cell(condition), *[missing] * (len(BEARS) - 1)))
+            continue
+        if isinstance(stress, Surge):
+            peak = number(stress.peak_V, "V")
+            reverse = number(stress.reverse_V, "V", missing="not polar")
+            brief = Cell("brief")
+            rows.append((Cell(condition), brief, peak, reverse, *[brief] * (len(BEARS) - 4)))
             continue
         rows.append(
             (
-                Cell(condition.name),
+                Cell(condition),
                 number(stress.dc_V, "V"),
                 number(stress.peak_V, "V"),
                 number(stress.reverse_V, "V", missing="not polar"),
@@ -210,7 +215,7 @@ def parts(review: Review) -> Table:
 
 
 def _part(review: Review, of: Part) -> Iterator[tuple[Cell, ...]]:
-    held = review.working.parts.get(of.name, {})
+    held = borne.part(review, of.name)
     names = dict.fromkeys([*of.limits, *(name for each in held.values() for name in each)])
     for stress in names:
         limit = of.limits.get(stress)

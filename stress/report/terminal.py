@@ -10,10 +10,11 @@ from rich.table import Table as Grid
 from rich.text import Text
 
 from stress.finding import Severity
-from stress.report import tables, words
+from stress.report import borne, tables, words
 from stress.report.order import Step, order_of_work
 from stress.report.table import NARROW, WIDE, Table
 from stress.report.words import plain
+from stress.study.conditions import INRUSH
 from stress.study.result import Review
 from stress.text.figure import figure
 
@@ -154,9 +155,9 @@ def _parts(review: Review, out: _Out) -> None:
 
 def _conditions(review: Review, out: _Out, *, verbose: bool) -> None:
     out.heading("Conditions")
-    answered = {name for held in review.working.positions.values() for name in held}
-    hang = 3 + max((len(each.name) for each in review.working.conditions), default=0)
-    for condition in review.working.conditions:
+    answered = {name for held in review.working.positions.values() for name in held} | {INRUSH}
+    hang = 3 + max((len(each.name) for each in borne.conditions(review)), default=0)
+    for condition in borne.conditions(review):
         line = "" if condition.line_V is None else f"line {figure(condition.line_V, 'V')}"
         parts = [part for part in (line, condition.text) if part]
         if condition.name not in answered:

@@ -91,14 +91,21 @@ def marked(of: Position) -> str:
 
 def fit(of: Replacement) -> str:
     """Return what to fit: "0.022 µF film, 630 V", "2 x 47 µF aluminium, 450 V, two in series"."""
-    many = f"{of.quantity} x " if of.quantity > 1 else ""
-    text = f"{many}{figure(of.value_F, 'F')} {of.style}"
+    value_F = of.value_F
+    many = ""
+    if of.quantity > 1:
+        value_F = of.each_F if of.each_F is not None else of.value_F
+        many = f"{of.quantity} x "
+    text = f"{many}{figure(value_F, 'F')} {of.style}"
     if of.safety_class:
+        # Parts across or beside the line are rated by their alternating voltage.
+        ac_V = of.ac_V if of.ac_V is not None else of.rated_V
         text += f", class {of.safety_class}"
-    if of.ac_V is not None:
-        text += f", {figure(of.ac_V, 'V')} AC"
+        return f"{text}, {figure(ac_V, 'V')} AC" if ac_V is not None else text
     if of.rated_V is not None:
         text += f", {figure(of.rated_V, 'V')}"
+    if of.ac_V is not None:
+        text += f" ({figure(of.ac_V, 'V')} AC)"
     return text + (f", {of.arrangement}" if of.arrangement else "")
 
 

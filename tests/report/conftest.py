@@ -24,6 +24,7 @@ from stress.study.result import (
     Review,
     Risk,
     Run,
+    Surge,
     Trace,
     Unanswered,
     Versions,
@@ -170,6 +171,7 @@ WORKING = Working(
     },
     proofs={"nominal": proof(), "high": proof(cycles=4, jacobian_cycles=0),
             "cold": proof(method="plain transient", multiplier=None, cycles=900)},
+    inrush={"C1": Surge(case="inrush at 90°, 0.2 s", peak_V=431.5, reverse_V=0.0, phase_deg=90.0)},
     unanswered=(UNSETTLED,),
     notices=("node x3.m was tied to ground by 100 GΩ",),
 )  # fmt: skip

@@ -61,7 +61,7 @@ def test_every_position_has_every_key(read):
     assert len(read["positions"]) == 6
     for position in read["positions"]:
         assert missing(POSITION, position) == set()
-        assert set(position["working"]) == {"nominal", "high", "cold", "pulled XU2"}
+        assert set(position["working"]) == {"nominal", "high", "cold", "pulled XU2", "inrush"}
         for stress in position["working"].values():
             assert stress is None or missing(WORKING, stress) == set()
         if position["leakage"] is not None:
@@ -111,6 +111,15 @@ def test_what_has_no_answer_is_null_and_says_why(read):
         {"case": "pulled XU2", "kind": "does not settle", "text": "motorboats at 3 Hz"}
     ]
     assert (read["power_up"], read["discharge"]) == (None, None)
+
+
+def test_the_switch_on_has_peak_and_reverse_voltage_only(read):
+    inrush = named(read, "C1")["working"]["inrush"]
+    assert {key for key, value in inrush.items() if value is not None} == {"peak_V", "reverse_V"}
+    assert inrush["peak_V"] == 431.5
+    assert named(read, "C5")["working"]["inrush"] is None
+    condition = read["conditions"][-1]
+    assert (condition["name"], condition["line_V"], condition["cold"]) == ("inrush", 253.0, True)
 
 
 def test_plus_is_the_node_that_is_positive_of_a_polar_part_only(read):

@@ -20,9 +20,9 @@ def read(specimen, tmp_path_factory):
     return {path.stem: list(csv.DictReader(io.StringIO(path.read_text("utf-8")))) for path in paths}
 
 
-def test_three_files_are_written(read):
+def test_four_files_are_written(read):
     assert {name: len(rows) for name, rows in read.items()} == {
-        "positions": 6, "parts": 4, "failures": 3
+        "positions": 6, "parts": 4, "failures": 3, "shopping": 3
     }  # fmt: skip
 
 
@@ -91,6 +91,13 @@ def test_rows_stand_in_the_order_of_work(specimen):
     assert [row[1].text for row in positions(specimen).rows][:5] == [
         "C5", "X3.C9", "C1", "C2", "C7"
     ]  # fmt: skip
+
+
+def test_the_shopping_list(read):
+    film = next(row for row in read["shopping"] if row["style"] == "film")
+    assert (film["quantity"], film["positions"]) == ("1", "C5")
+    assert (float(film["value_F"]), float(film["rated_V"])) == (0.022e-6, 630.0)
+    assert film["ripple_rms_A"] == "no demand"
 
 
 def test_a_failure_names_victim_stress_limit_and_time(specimen):

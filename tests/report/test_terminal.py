@@ -96,6 +96,8 @@ Conditions
   high       line 253 V; as nominal, line high
   cold       line 253 V; tubes without emission
   pulled XU2 line 253 V; XU2 pulled; does not settle
+  inrush     line 253 V; switched on from rest with the tubes cold, in the worst
+             phase
   pulled XU2: does not settle; motorboats at 3 Hz
 """
         in narrow
