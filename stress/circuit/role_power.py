@@ -1,0 +1,273 @@
+"""Roles that the power tells: at the line, at rectifiers, at windings, in supplies."""
+
+from __future__ import annotations
+
+from stress.circuit.circuit import Role
+from stress.circuit.drive import HASH_F, HELD_F
+from stress.circuit.graph import GROUND, Edge
+from stress.circuit.surroundings import RADIO_F, Ends, Surroundings
+
+AFTER_RECTIFIER_OHM = 1000.0
+DECOUPLING_OHM = 10e3  # filter resistors are smaller, those of one stage larger (common practice)
+Found = tuple[Role, str] | None
+
+
+def at_line(s: Surroundings, c: Edge, e: Ends) -> Found:
+    """Across the line, or from the line to what can be touched."""
+    touch, pair = s.touch, {e.a, e.b}
+    for plus, minus in s.drive.poles:
+        across = (e.a in plus and e.b in minus) or (e.b in plus and e.a in minus)
+        if not s.drive.alternating:
+            continue
+        if across and touch.secondary:
+            return Role.BUFFER, "buffer across the winding that feeds the rectifier"
+        if across:
+            note = "" if GROUND not in pair else ", whose return is ground"
+            return Role.LINE_ACROSS, "across the line" + note
+        for pole in (plus, minus):
+            if e.a in pole and e.b in pole:
+                return Role.SNUBBER, "across the line switch or choke"
+    if touch.secondary:
+        return _to_case(s, e)
+    safe = touch.touchable | (frozenset({GROUND}) if not touch.hot_ground else frozenset())
+    for hot, cold in ((e.a, e.b), (e.b, e.a)):
+        if hot not in touch.hot or cold not in safe:
+            continue
+        if _is_antenna(cold):
+            return Role.COUPLING, f"coupling, {cold} to the set, isolates it from the line"
+        what = "line" if _in_pole(s, hot) else s.words(hot) + ", which is line-connected,"
+        if hot == GROUND:
+            what = "B- (ground), which is line-connected,"
+        return Role.LINE_CHASSIS, f"{what} to {_chassis(cold)}"
+    return _to_case(s, e)
+
+
+def _in_pole(s: Surroundings, node: str) -> bool:
+    return any(node in pole for poles in s.drive.poles for pole in poles)
+
+
+def _is_antenna(node: str) -> bool:
+    return node.startswith(("ant", "aerial"))
+
+
+def _to_case(s: Surroundings, e: Ends) -> Found:
+    """From ground or a supply to a case that is not ground."""
+    for here, case in ((e.a, e.b), (e.b, e.a)):
+        if case in s.touch.touchable and case != GROUND and here not in s.touch.touchable:
+            if _is_antenna(case):
+                return Role.COUPLING, f"coupling, {case} to {_aerial_coil(s, here)}"
+            if here == GROUND or here in s.supply.outputs:
+                return Role.LINE_CHASSIS, f"{s.words(here)} to {case}"
+    for here, case in ((e.a, e.b), (e.b, e.a)):
+        if _is_antenna(case) and case != here:
+            return Role.COUPLING, f"coupling, {case} to {_aerial_coil(s, here)}"
+    return None
+
+
+def _aerial_coil(s: Surroundings, node: str) -> str:
+    return "the input coil" if node == GROUND else s.words(node)
+
+
+def _chassis(node: str) -> str:
+    return "chassis" if node == GROUND else node
+
+
+def doubler(s: Surroundings, c: Edge, e: Ends) -> Found:
+    """From a driven node to one that only it drives and that has rectifiers."""
+    driven, pumped = s.drive.nodes, s.drive.pumped
+    for here, there in ((c.a, c.b), (c.b, c.a)):
+        if there in pumped and here in driven:
+            return Role.FLYING, f"doubler, {s.words(here)} to the rectifiers at {there}"
+        if there in s.drive.returns and here in s.supply.outputs and (c.value or 0) >= HELD_F:
+            other = [o for o in s.supply.outputs.values() if o.sign * _sign(s, here) < 0]
+            if _is_midpoint(s, there):
+                return Role.FLYING, f"doubler half, {s.words(here)} to the midpoint {there}"
+            if not other:
+                return Role.RESERVOIR, f"reservoir, {s.words(here)} to the return {there}"
+    return None
+
+
+def _sign(s: Surroundings, node: str) -> int:
+    output = s.supply.outputs.get(node)
+    return output.sign if output else 0
+
+
+def _is_midpoint(s: Surroundings, node: str) -> bool:
+    """Say whether two large capacitors meet at the return of a rectifier."""
+    large = [x for x in s.graph.around(node) if x.letter == "C" and (x.value or 0) >= HELD_F]
+    return len({x.other(node) for x in large}) > 1
+
+
+def snubber(s: Surroundings, c: Edge, e: Ends) -> Found:
+    """Across a rectifier, a switch, or a winding that a switch drives."""
+    if (c.value or 0.0) >= HELD_F:
+        return None
+    driven = s.drive.nodes | s.drive.pumped
+    for node, far in ((e.a, e.b), (e.b, e.a)):
+        for other in s.graph.around(node):
+            if other.other(node) != far:
+                continue
+            if other.name.lower() in s.gated:
+                return Role.SNUBBER, f"snubber across {other.name}"
+            if other.letter in "SW":
+                return Role.SNUBBER, f"spark quencher across the switch {other.name}"
+            if other.letter == "L" and other.name.lower() in s.drive.switched_cores:
+                return Role.SNUBBER, f"snubber across the winding {other.name}"
+    for j in s.graph.junctions:
+        if {j.anode, j.cathode} == {e.a, e.b} and {e.a, e.b} & driven:
+            return Role.SNUBBER, f"across the rectifier {j.part}"
+    for node, far in ((e.a, e.b), (e.b, e.a)):
+        if node in s.drive.switched and s.still(far) and node not in s.supply.outputs:
+            return Role.SNUBBER, f"snubber at the switched node {node}"
+        if s.supply.outputs.get(node) and _clamps(s, node, far):
+            return Role.SNUBBER, f"clamp, {node} to {s.words(far)}"
+    return None
+
+
+def _clamps(s: Surroundings, node: str, far: str) -> bool:
+    """Say whether a node only takes peaks of a switched node and bleeds into a supply."""
+    output = s.supply.outputs[node]
+    bled = any(x.letter == "R" and x.other(node) == far for x in s.graph.around(node))
+    return output.origin == "switched" and bled and far != GROUND
+
+
+def across_winding(s: Surroundings, c: Edge, e: Ends) -> Found:
+    """In parallel with one winding or two in series."""
+    edge = _winding_between(s, e.a, e.b)
+    if edge is None:
+        return None
+    name = edge.name.lower()
+    if name in s.drive.line_cores:
+        return Role.BUFFER, f"buffer across the winding {edge.name}"
+    plate = [p for node in (e.a, e.b) for p in s.direct(node, "output")]
+    small = (c.value or 0.0) <= RADIO_F and (edge.value or 0.0) < 0.1
+    if small:
+        return Role.TUNING, f"tunes the winding {edge.name}"
+    if plate and e.ohm < 1000.0 and not e.control:
+        return Role.PLATE_BYPASS, f"{plate[0].text}, across the winding {edge.name}"
+    if plate:
+        return Role.TONE, f"tone, {plate[0].text}, across the winding {edge.name}"
+    if e.a in s.supply.feeds and e.b in s.supply.feeds:
+        return Role.TUNING, f"tunes the choke {edge.name} to the ripple"
+    if len(s.graph.windings_with(edge.name)) > 1 and (edge.value or 0.0) < 0.1:
+        return Role.TUNING, f"tunes the winding {edge.name}"
+    return Role.TONE, f"tone, across the winding {edge.name}"
+
+
+def _winding_between(s: Surroundings, a: str, b: str) -> Edge | None:
+    for first in s.graph.around(a):
+        if first.letter != "L":
+            continue
+        there = first.other(a)
+        if there == b:
+            return first
+        for second in s.graph.around(there):
+            on_one_core = second.name.lower() in s.graph.windings_with(first.name)
+            if second.letter == "L" and second.other(there) == b and on_one_core:
+                return first
+    return None
+
+
+def buffer(s: Surroundings, c: Edge, e: Ends) -> Found:
+    """From a driven end of a winding to ground or to its other end."""
+    hot = [n for n in (e.a, e.b) if n in s.drive.line and n not in s.drive.returns]
+    if len(hot) == 2:
+        return Role.BUFFER, f"buffer, {s.words(e.a)} to {s.words(e.b)}"
+    if hot:
+        far = e.b if hot[0] == e.a else e.a
+        if s.still(far) or far in s.drive.returns:
+            return Role.BUFFER, f"buffer, {s.words(hot[0])} to {s.words(far)}"
+    return None
+
+
+def supply(s: Surroundings, c: Edge, e: Ends) -> Found:
+    """From a supply to its return: reservoir, smoothing, output filter, bias, decoupling."""
+    pair = _supply_and_return(s, e)
+    if pair is None:
+        return None
+    node, back = pair
+    feed = s.supply.feeds[node]
+    larger = s.larger(c)
+    if larger is not None:
+        return Role.DECOUPLING, f"radio-frequency bypass beside {larger}, {s.words(node)}"
+    loads = s.loads(node) | frozenset(p.kind for p in s.graph.pins(node))
+    where = f"{_named(node, feed.output.sign)} to {s.words(back)}"
+    if feed.output.sign < 0 and loads and loads <= {"input", "other"}:
+        return Role.BIAS_FILTER, f"filter of the bias supply, {where}"
+    small = (c.value or 0.0) <= HASH_F
+    if feed.output.origin == "switched" and feed.output.by and _is_first(s, node):
+        return Role.OUTPUT_FILTER, f"output filter, {where}, fed by {', '.join(feed.output.by)}"
+    if feed.output.origin == "source" and node == feed.output.node:
+        if any(x.name.lower() in s.gated for x in s.graph.around(node)) and not small:
+            return Role.RESERVOIR, f"input reservoir of the converter, {where}"
+        return Role.DECOUPLING, f"decoupling, {where}, across the source"
+    if _is_first(s, node) and feed.output.origin == "line":
+        if small:
+            return Role.DECOUPLING, f"quiets the rectifier, {where}"
+        by = ", ".join(feed.output.by) or "the bias resistor"
+        if feed.choke:
+            return Role.SMOOTHING, f"smoothing behind the choke of a choke-input filter, {where}"
+        if feed.output.sign < 0 and not feed.output.by:
+            return Role.BIAS_FILTER, f"filter of the back bias, {where}"
+        return Role.RESERVOIR, f"reservoir, {where}, fed by {by}"
+    return _distribution(s, c, node, where, loads)
+
+
+def _distribution(s: Surroundings, c: Edge, node: str, where: str, loads: frozenset[str]) -> Found:
+    """Behind the first capacitor: by what is fed and through how much."""
+    feed = s.supply.feeds[node]
+    if s.direct(node, "screen") and not loads & {"output", "common"}:
+        return Role.SCREEN_BYPASS, f"screen bypass, {_pin(s, node, 'screen')}"
+    screens = [n.pin for n in s.near(node, "screen", ohm=10e3)]
+    if loads and loads <= {"screen", "other"} and screens:
+        return Role.SCREEN_BYPASS, f"screen bypass, {screens[0].text}"
+    if feed.choke:
+        return Role.SMOOTHING, f"smoothing behind the choke, {where}"
+    if feed.since_ohm < DECOUPLING_OHM and (c.value or 0.0) >= HELD_F:
+        return Role.SMOOTHING, f"smoothing, {where}"
+    return Role.DECOUPLING, f"decoupling, {where}"
+
+
+def _pin(s: Surroundings, node: str, kind: str) -> str:
+    return s.direct(node, kind)[0].text
+
+
+def _named(node: str, sign: int) -> str:
+    return f"{'bias' if sign < 0 else 'supply'} {node}"
+
+
+def _is_first(s: Surroundings, node: str) -> bool:
+    """Say whether no large capacitor lies between an output and this node."""
+    feed = s.supply.feeds[node]
+    near = feed.ohm <= AFTER_RECTIFIER_OHM or feed.choke
+    return feed.stage == 0 and near and (node == feed.output.node or s.is_held(node))
+
+
+def _supply_and_return(s: Surroundings, e: Ends) -> tuple[str, str] | None:
+    """Return the fed end and the still one; None where the fed end is a stage's own."""
+    for node, back in ((e.a, e.b), (e.b, e.a)):
+        feed = s.supply.feeds.get(node)
+        if feed is None or (not s.still(back) and back not in s.drive.returns):
+            continue
+        if back != GROUND and back in s.supply.feeds:
+            # Between two supplies the one that is further from the source is decoupled
+            # against the other; between both ends of a rectifier the positive one counts.
+            if s.supply.feeds[back].ohm > feed.ohm and back not in s.supply.outputs:
+                continue
+            if feed.output.sign < 0 and s.supply.feeds[back].output.sign > 0:
+                continue
+        if node in s.supply.outputs or _is_rail(s, node):
+            return node, back
+    return None
+
+
+def _is_rail(s: Surroundings, node: str) -> bool:
+    """Say whether a fed node passes current on to more than its own stage."""
+    if s.direct(node, "output") and not s.is_held(node):
+        return False
+    if s.direct(node, "common"):
+        return s.is_held(node) and bool(s.loads(node) & {"output"})
+    if s.direct(node, "input", "diode"):
+        return False
+    feed = s.supply.feeds[node]
+    return feed.ohm <= 2.2e6 and (s.is_held(node) or bool(s.loads(node)) or feed.stage == 0)

@@ -1,0 +1,42 @@
+"""What every capacitor does in its place, by rules over the graph, the surest first."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+from stress.circuit import role_power, role_signal
+from stress.circuit.circuit import Role
+from stress.circuit.graph import Edge
+from stress.circuit.role_power import Found
+from stress.circuit.surroundings import Ends, Surroundings
+
+Rule = Callable[[Surroundings, Edge, Ends], Found]
+
+
+def _same_node(s: Surroundings, c: Edge, e: Ends) -> Found:
+    if c.a == c.b or e.a == e.b:
+        return Role.UNKNOWN, "both ends are on one node, or a part of the same resistor"
+    return None
+
+
+RULES: tuple[Rule, ...] = (
+    _same_node,
+    role_power.at_line,
+    role_power.doubler,
+    role_power.snubber,
+    role_power.across_winding,
+    role_power.buffer,
+    role_power.supply,
+    role_signal.bypass,
+    role_signal.coupling,
+)
+
+
+def role_of(s: Surroundings, capacitor: Edge) -> tuple[Role, str]:
+    """Return the role of a capacitor and the role in words with its neighbours."""
+    ends = s.ends(capacitor)
+    for rule in RULES:
+        found = rule(s, capacitor, ends)
+        if found is not None:
+            return found
+    return Role.UNKNOWN, f"{s.words(ends.a)} to {s.words(ends.b)}, role not recognised"
