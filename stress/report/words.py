@@ -91,12 +91,9 @@ def marked(of: Position) -> str:
 
 def fit(of: Replacement) -> str:
     """Return what to fit: "0.022 µF film, 630 V", "2 x 47 µF aluminium, 450 V, two in series"."""
-    value_F = of.value_F
-    many = ""
-    if of.quantity > 1:
-        value_F = of.each_F if of.each_F is not None else of.value_F
-        many = f"{of.quantity} x "
-    text = f"{many}{figure(value_F, 'F')} {of.style}"
+    values = tuple(dict.fromkeys(of.parts_F)) or (of.value_F,)
+    many = f"{of.quantity} x " if of.quantity > 1 and len(values) == 1 else ""
+    text = f"{many}{' + '.join(figure(value, 'F') for value in values)} {of.style}"
     if of.safety_class:
         # Parts across or beside the line are rated by their alternating voltage.
         ac_V = of.ac_V if of.ac_V is not None else of.rated_V
