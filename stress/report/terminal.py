@@ -58,14 +58,18 @@ class _Out:
         self.console = console
         self.wide = console.width >= WIDE_FROM
 
+    def text(self, text: str, *, style: str = "") -> Text:
+        """Return text without control characters, in letters that the channel has."""
+        return Text(words.encodable(plain(text), self.console.encoding), style=style)
+
     def line(self, text: str = "", *, first: str = "", indent: int = 0, style: str = "") -> None:
         """Print a paragraph; `first` stands in the indentation of its first line."""
         room = max(self.console.width - indent, 20)
-        lines = Text(plain(text), style=style).wrap(self.console, room)
+        lines = self.text(text, style=style).wrap(self.console, room)
         for i, line in enumerate(lines or [Text()]):
             line.rstrip()
-            before = (plain(first) if i == 0 else "").ljust(indent)
-            self.console.print(Text(before).append_text(line), highlight=False, no_wrap=True)
+            before = self.text((first if i == 0 else "").ljust(indent))
+            self.console.print(before.append_text(line), highlight=False, no_wrap=True)
 
     def heading(self, text: str) -> None:
         self.line()
@@ -88,7 +92,7 @@ class _Out:
             if group != held:
                 grid.add_section()
             held = group
-            grid.add_row(*(Text(plain(cell.text)) for cell in row))
+            grid.add_row(*(self.text(cell.text) for cell in row))
         self.console.print(grid, highlight=False)
 
 
@@ -130,7 +134,7 @@ def _explanations(review: Review, out: _Out) -> None:
         heading.add_column()
         heading.add_column(justify="right")
         name = f"{position.name:<4} {position.role_text}"
-        heading.add_row(Text(plain(name), style="bold"), Text(plain(words.marked(position))))
+        heading.add_row(out.text(name, style="bold"), out.text(words.marked(position)))
         out.console.print(heading, highlight=False)
         for paragraph in review.explanations.get(position.name, ("no explanation was written",)):
             out.line(paragraph, indent=5)

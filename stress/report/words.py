@@ -12,6 +12,9 @@ from stress.study.result import LeakageIn, Replacement, Review, Victim
 from stress.text.figure import figure
 
 _BEFORE_UNIT = re.compile(r"(?<=\d) (?=[pnµmkMGT]?(?:F|Ω|A|V|W|J|H|s|Hz|h|C)\b|°C|%)")
+_SPELT = str.maketrans(
+    {"µ": "u", "Ω": "ohm", "°": "deg", "·": "*", "×": "x", "…": "...", "→": "->"}
+)
 NOT_KNOWN = "not known"
 NOT_STUDIED = "not studied"
 NO_DAMAGE = "no damage"
@@ -104,6 +107,15 @@ def fit(of: Replacement) -> str:
     if of.ac_V is not None:
         text += f" ({figure(of.ac_V, 'V')} AC)"
     return text + (f", {of.arrangement}" if of.arrangement else "")
+
+
+def encodable(text: str, encoding: str) -> str:
+    """Return text that an old terminal can show: "0.02 uF", "3.9 Mohm" where it knows no µ or Ω."""
+    try:
+        text.encode(encoding)
+    except UnicodeEncodeError:
+        return text.translate(_SPELT).encode(encoding, "replace").decode(encoding)
+    return text
 
 
 def tidy(text: str) -> str:

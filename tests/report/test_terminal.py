@@ -146,6 +146,16 @@ def test_only_verbose_tells_the_method(specimen, narrow):
     assert re.search(r"^pulled XU2 +does not settle +none", text, re.M)
 
 
+def test_an_old_terminal_gets_letters_that_it_has(specimen):
+    raw = io.BytesIO()
+    out = io.TextIOWrapper(raw, encoding="ascii", write_through=True)
+    print_review(specimen, Console(file=out, width=80))
+    text = raw.getvalue().decode("ascii")
+    assert "Below 3.91 Mohm XU2 passes" in text
+    assert "paper 0.02 uF, 400 V" in text
+    assert "?" not in text
+
+
 def test_a_pipe_gets_no_control_codes(narrow):
     assert "\x1b" not in narrow
 
