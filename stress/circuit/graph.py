@@ -7,7 +7,7 @@ the group is ground where ground is among them, else the first in the netlist.
 from __future__ import annotations
 
 import heapq
-from collections.abc import Callable, Iterable, Mapping, Sequence
+from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
@@ -103,15 +103,24 @@ class Junction:
 class Graph:
     """Walks over the circuit; made once, never changed."""
 
-    def __init__(self, netlist: Netlist, *, parts: Sequence[Part]) -> None:
-        """Fold the elements of `parts` (tubes and other folded devices) into edges."""
+    def __init__(
+        self, netlist: Netlist, *, parts: Sequence[Part], contacts: Collection[str] = ()
+    ) -> None:
+        """Fold the elements of `parts` (tubes and other folded devices) into edges.
+
+        Args:
+            netlist: Flat.
+            parts: What is folded.
+            contacts: Resistors that stand for a switch, lower case: not joined.
+        """
+        self.contacts = frozenset(contacts)
         self.netlist = netlist
         folded = {name.lower() for part in parts if part.pins for name in part.elements}
         self._folded = frozenset(folded)
         self.parts: Mapping[str, Part] = {part.name: part for part in parts if part.pins}
         visible = [e for e in netlist.elements if e.name.lower() not in folded and e.nodes]
         self.elements: Mapping[str, Element] = {e.name.lower(): e for e in netlist.elements}
-        self._group = _groups(visible)
+        self._group = _groups(visible, contacts=self.contacts)
         edges: list[Edge] = []
         for element in visible:
             edges += self._edges_of(element)
@@ -262,7 +271,7 @@ def cathode_of(part: Part, role: str) -> str | None:
     return None
 
 
-def _groups(elements: Sequence[Element]) -> dict[str, str]:
+def _groups(elements: Sequence[Element], *, contacts: Collection[str]) -> dict[str, str]:
     """Join the nodes that next to nothing separates; see the module's docstring."""
     parent: dict[str, str] = {}
 
@@ -275,7 +284,7 @@ def _groups(elements: Sequence[Element]) -> dict[str, str]:
     for element in elements:
         for node in element.nodes:
             root(node)
-        if len(element.nodes) == 2 and _joins(element):
+        if _joins(element) and element.name.lower() not in contacts:
             a, b = root(element.nodes[0]), root(element.nodes[1])
             if a == GROUND:
                 parent[b] = a
@@ -290,6 +299,8 @@ def _groups(elements: Sequence[Element]) -> dict[str, str]:
 
 
 def _joins(element: Element) -> bool:
+    if len(element.nodes) != 2:
+        return False
     if element.letter == "R":
         return element.value is not None and abs(element.value) <= JOINED_OHM
     return element.letter == "V" and element.wave is None and not element.value

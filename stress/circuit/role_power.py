@@ -8,6 +8,9 @@ from stress.circuit.graph import GROUND, Edge
 from stress.circuit.surroundings import RADIO_F, Ends, Surroundings
 
 AFTER_RECTIFIER_OHM = 1000.0
+COPPER_OHM = 1000.0
+STARTER_OHM = 1000.0
+DAMPING_F = 5e-9
 DECOUPLING_OHM = 10e3  # filter resistors are smaller, those of one stage larger (common practice)
 Found = tuple[Role, str] | None
 
@@ -109,7 +112,7 @@ def snubber(s: Surroundings, c: Edge, e: Ends) -> Found:
                 continue
             if other.name.lower() in s.gated:
                 return Role.SNUBBER, f"snubber across {other.name}"
-            if other.letter in "SW":
+            if other.letter in "SW" or other.name.lower() in s.graph.contacts:
                 return Role.SNUBBER, f"spark quencher across the switch {other.name}"
             if other.letter == "L" and other.name.lower() in s.drive.switched_cores:
                 return Role.SNUBBER, f"snubber across the winding {other.name}"
@@ -140,9 +143,12 @@ def across_winding(s: Surroundings, c: Edge, e: Ends) -> Found:
     if name in s.drive.line_cores:
         return Role.BUFFER, f"buffer across the winding {edge.name}"
     plate = [p for node in (e.a, e.b) for p in s.direct(node, "output")]
-    small = (c.value or 0.0) <= RADIO_F and (edge.value or 0.0) < 0.1
-    if small:
+    if (c.value or 0.0) <= RADIO_F and (edge.value or 0.0) < 0.1:
         return Role.TUNING, f"tunes the winding {edge.name}"
+    if e.ohm >= 1000.0 and not e.control and (c.value or 0.0) <= DAMPING_F:
+        return Role.SNUBBER, f"damps the winding {edge.name}" + (
+            f", {plate[0].text}" if plate else ""
+        )
     if plate and e.ohm < 1000.0 and not e.control:
         return Role.PLATE_BYPASS, f"{plate[0].text}, across the winding {edge.name}"
     if plate:
@@ -155,15 +161,21 @@ def across_winding(s: Surroundings, c: Edge, e: Ends) -> Found:
 
 
 def _winding_between(s: Surroundings, a: str, b: str) -> Edge | None:
-    for first in s.graph.around(a):
-        if first.letter != "L":
-            continue
-        there = first.other(a)
-        if there == b:
-            return first
-        for second in s.graph.around(there):
-            on_one_core = second.name.lower() in s.graph.windings_with(first.name)
-            if second.letter == "L" and second.other(there) == b and on_one_core:
+    """Return the winding that leads from one node to another, its copper and a second winding
+    on its core passed."""
+    for start, end in ((a, b), (b, a)):
+        for first in s.graph.around(start):
+            if first.letter != "L":
+                continue
+            reached = {first.other(start)}
+            for node in tuple(reached):
+                for second in s.graph.around(node):
+                    same = second.name.lower() in s.graph.windings_with(first.name)
+                    alone = len(s.graph.around(node)) == 2 and not s.graph.pins(node)
+                    copper = alone and second.letter == "R" and second.ohm <= COPPER_OHM
+                    if (second.letter == "L" and same and second is not first) or copper:
+                        reached.add(second.other(node))
+            if end in reached - {start}:
                 return first
     return None
 
@@ -195,8 +207,12 @@ def supply(s: Surroundings, c: Edge, e: Ends) -> Found:
     if feed.output.sign < 0 and loads and loads <= {"input", "other"}:
         return Role.BIAS_FILTER, f"filter of the bias supply, {where}"
     small = (c.value or 0.0) <= HASH_F
-    if feed.output.origin == "switched" and feed.output.by and _is_first(s, node):
-        return Role.OUTPUT_FILTER, f"output filter, {where}, fed by {', '.join(feed.output.by)}"
+    if feed.output.origin == "switched" and not small:
+        starter = _starter(s, node)
+        if starter is not None:
+            return Role.RESERVOIR, f"start-up and supply of the controller, {where}, {starter}"
+        by = ", ".join(feed.output.by)
+        return Role.OUTPUT_FILTER, f"output filter, {where}, fed by {by}"
     if feed.output.origin == "source" and node == feed.output.node:
         if any(x.name.lower() in s.gated for x in s.graph.around(node)) and not small:
             return Role.RESERVOIR, f"input reservoir of the converter, {where}"
@@ -211,6 +227,18 @@ def supply(s: Surroundings, c: Edge, e: Ends) -> Found:
             return Role.BIAS_FILTER, f"filter of the back bias, {where}"
         return Role.RESERVOIR, f"reservoir, {where}, fed by {by}"
     return _distribution(s, c, node, where, loads)
+
+
+def _starter(s: Surroundings, node: str) -> str | None:
+    """Return the resistor that feeds a switched supply from the input before it runs."""
+    for edge in s.graph.around(node):
+        there = edge.other(node)
+        feed = s.supply.feeds.get(there)
+        if edge.letter != "R" or edge.ohm < STARTER_OHM or feed is None:
+            continue
+        if feed.output.origin in ("line", "source") and feed.output.sign > 0:
+            return f"started through {edge.name}"
+    return None
 
 
 def _distribution(s: Surroundings, c: Edge, node: str, where: str, loads: frozenset[str]) -> Found:

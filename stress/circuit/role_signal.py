@@ -21,6 +21,8 @@ def bypass(s: Surroundings, c: Edge, e: Ends) -> Found:
     quiet = GROUND if GROUND in still else still[0]
     node = e.a if quiet == e.b else e.b
     pins = {p.kind: p for p in reversed(s.graph.pins(node))}
+    if not pins and node in s.controls:
+        return Role.FEEDBACK, f"compensates the loop, {node} to {s.words(quiet)}"
     if "common" in pins and not s.direct(node, "output"):
         return _at_cathode(s, pins["common"], quiet)
     if "output" in pins:
@@ -188,6 +190,9 @@ def coupling(s: Surroundings, c: Edge, e: Ends) -> Found:
             if other.kind == "common":
                 return Role.PLATE_BYPASS, f"{one.text} to its {other.role}"
             return Role.FEEDBACK, f"feedback, {one.text} to its {other.role}"
+    biased = _across_bias(s, e, a, b)
+    if biased is not None:
+        return biased
     leak = _grid_leak(s, c, e)
     if leak is not None:
         return leak
@@ -196,6 +201,17 @@ def coupling(s: Surroundings, c: Edge, e: Ends) -> Found:
         if found is not None:
             return found
     return _to_load(s, e, a, b)
+
+
+def _across_bias(s: Surroundings, e: Ends, a: Pin | None, b: Pin | None) -> Found:
+    """Across a bias resistor that does not end at ground: the split cathode resistor."""
+    parallel = any(x.letter == "R" and x.other(e.a) == e.b for x in s.graph.around(e.a))
+    for here, there in ((e.a, e.b), (e.b, e.a)):
+        commons = s.direct(here, "common")
+        if commons and parallel and not s.direct(there, "input", "output", "screen"):
+            word = commons[0].role.rstrip("0123456789")
+            return Role.CATHODE_BYPASS, f"{word} bypass, {commons[0].text} to {there}"
+    return None
 
 
 def _best(s: Surroundings, node: str) -> Pin | None:
@@ -207,11 +223,18 @@ def _best(s: Surroundings, node: str) -> Pin | None:
     direct = sorted(s.direct(node, *order), key=lambda p: order.index(p.kind))
     if direct:
         return direct[0]
+    if s.winding_at(node) is not None or _speaker(s, node):
+        return None
     outputs = s.near(node, "output")
     if outputs:
         return outputs[0].pin
     near = s.near(node, *order, ohm=SIGNAL_OHM)
     return near[0].pin if near else None
+
+
+def _speaker(s: Surroundings, node: str) -> bool:
+    parts = (s.parts.get(edge.name.lower()) for edge in s.graph.around(node))
+    return any(part is not None and part.kind is Kind.LOUDSPEAKER for part in parts)
 
 
 def _signal_pair(
@@ -263,17 +286,20 @@ def _leak_at(s: Surroundings, node: str) -> Edge | None:
 
 def _to_load(s: Surroundings, e: Ends, a: Pin | None, b: Pin | None) -> Found:
     """To a loudspeaker, an antenna, a winding, a source or a load without pins."""
-    for here, there, near in ((e.a, e.b, a), (e.b, e.a, b)):
+    for there, near in ((e.b, a), (e.a, b)):
         load = _load(s, there)
         if near is not None and load:
             back = near.kind in ("input", "common") and _output_core(s, there, near.part)
-            role = Role.FEEDBACK if back else Role.COUPLING
-            return role, f"{role.value}, {near.text} to {load}"
-        if load and not s.still(here) and a is None and b is None:
-            other = _load(s, here) or s.words(here)
-            small = s.winding_at(there) is not None and s.winding_at(here) is not None
-            if small:
-                return Role.COUPLING, f"coupling, {other} to {load}"
+            if back:
+                return Role.FEEDBACK, f"feedback, {load} to {near.text}"
+            pair = (load, near.text) if near.kind == "input" else (near.text, load)
+            return Role.COUPLING, f"coupling, {pair[0]} to {pair[1]}"
+    if a is None and b is None:
+        loads = [load for load in (_load(s, e.a), _load(s, e.b)) if load]
+        if len(loads) == 2:
+            loads.sort(key=lambda load: load.startswith("loudspeaker"))
+            return Role.COUPLING, f"coupling, {loads[0]} to {loads[1]}"
+        return None
     live, other = (a, e.b) if a is not None else (b, e.a)
     if live is not None and not s.still(other):
         return Role.COUPLING, f"coupling, {live.text} to {s.words(other)}"
@@ -281,16 +307,19 @@ def _to_load(s: Surroundings, e: Ends, a: Pin | None, b: Pin | None) -> Found:
 
 
 def _load(s: Surroundings, node: str) -> str:
+    """Return what hangs on a node without being a pin: antenna, winding, loudspeaker, source."""
     if node in s.touch.touchable and node != GROUND:
         return node
+    winding = s.winding_at(node)
+    if winding is not None:
+        return f"winding {winding.name}"
     for edge in s.graph.around(node):
         part = s.parts.get(edge.name.lower())
         if part is not None and part.kind is Kind.LOUDSPEAKER:
             return f"loudspeaker {edge.name}"
         if edge.letter in "VI" and s.graph.elements[edge.name.lower()].wave is not None:
             return f"the signal source {edge.name}"
-    winding = s.winding_at(node)
-    return f"winding {winding.name}" if winding is not None else ""
+    return ""
 
 
 def _output_core(s: Surroundings, node: str, part: str) -> bool:

@@ -182,14 +182,33 @@ class Surroundings:
         return None
 
     @cached_property
+    def controls(self) -> frozenset[str]:
+        """Nodes that work a gated switch, or that a controlled source looks at or feeds, and
+        that are no supply."""
+        found: set[str] = set()
+        for e in self.graph.netlist.elements:
+            if self.graph.is_folded(e.name):
+                continue
+            if e.letter == "S" and e.name.lower() in self.gated:
+                found |= {self.graph.at(n) for n in e.nodes[2:4]}
+            elif e.letter in "EG" or (e.letter == "B" and e.law is not None):
+                found |= {self.graph.at(n) for n in e.nodes}
+        return frozenset(found - set(self.supply.outputs) - {GROUND})
+
+    @cached_property
     def stages(self) -> nx.DiGraph:
-        """Parts whose output is coupled to the input of another by a capacitor or a core."""
+        """Parts whose output reaches the input of another: directly, by a capacitor, a core."""
         stages = nx.DiGraph()
         for edge in self.graph.edges:
             if edge.letter == "C" and edge.a != edge.b:
                 ends = self.ends(edge)
                 for here, there in ((ends.a, ends.b), (ends.b, ends.a)):
                     self._add_stage(stages, here, there, edge.name)
+        for part in self.graph.parts.values():
+            for role, node in part.pins.items():
+                if Pin(part.name, role).kind == "output":
+                    here = self.graph.at(node)
+                    self._add_stage(stages, here, here, "")
         cores = set(self.graph.joints.values())
         for core in cores:
             nodes = {self.graph.at(n) for c in core for n in self.graph.elements[c].nodes}

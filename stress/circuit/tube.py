@@ -122,7 +122,7 @@ def _pins(
         return pins, "sheet", errors
     if instance.built_in and known is not None and known.pins:
         return dict(zip(known.pins, instance.nodes, strict=False)), "type table", []
-    roles, how = pin_roles(instance.pins, device.elements)
+    roles, how = pin_roles(instance.pins, device.elements, nodes=instance.nodes)
     return {r: at[p.lower()] for r, p in roles.items() if p.lower() in at}, how, []
 
 
