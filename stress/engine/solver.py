@@ -3,9 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
+from dataclasses import dataclass
 from typing import Protocol
 
 from stress.engine.case import Answer, Case
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Versions:
+    """What simulates: the library, its version, and that of its interface."""
+
+    ngspice: str
+    pyspice: str
+    library: str = ""
 
 
 class Solver(Protocol):

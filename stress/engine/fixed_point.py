@@ -1,0 +1,217 @@
+"""The fixed point of a map, from few evaluations of it. Numbers only; knows no circuit.
+
+The settled state of a circuit is the fixed point of its cycle map Φ (Aprille and Trick, Proc.
+IEEE 60, 1972; Skelboe, IEEE Trans. CAS 27, 1980). Newton's method needs the Jacobian J of Φ,
+one more cycle for every state. Three ways were measured on receivers, rectifiers and switched
+supplies: Anderson's mixing (J. ACM 12, 1965) is the cheapest from rest, 7 to 25 cycles without
+any Jacobian; from a neighbouring solution Newton with the neighbour's J, corrected by
+Broyden's first formula (Math. Comp. 19, 1965), takes 2 to 4 cycles; Newton with a fresh J at
+each step takes the fewest steps but ten times the cycles. So a root case mixes and then pays
+for one Jacobian, and its relatives share it. Where nothing loads the supply (multipliers near
+1) mixing overshoots, and Newton's method from rest is used, whose steps stay below the fixed
+point because the charge that a rectifier passes is convex in the voltage it meets.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from typing import TypeAlias
+
+import numpy as np
+
+from stress.engine.case import Floats
+
+Map: TypeAlias = Callable[[Floats], Floats]
+Yardstick: TypeAlias = Callable[[Floats], Floats]
+
+DEPTH = 5  # of the mixing
+STEP_LIMIT = 2.0  # of one Newton step, in yardsticks
+SHRINKS = 0.5  # what a confirmed step leaves of a residual, at most
+SILENT = 1e-3  # of the tolerance: a residual so small need not shrink further
+PERTURBATION = 1e-3  # in yardsticks
+
+
+@dataclass(frozen=True, slots=True)
+class Point:
+    """Where an iteration ended.
+
+    Attributes:
+        x, y: Shape (n,): a state and the state one period later.
+        jacobian: Shape (n, n), as known by then.
+        distance: Largest estimated distance of x to the fixed point, in yardsticks.
+        residual: Largest change over the period, in yardsticks.
+        found: Whether the distance is within the tolerance and confirmed.
+    """
+
+    x: Floats
+    y: Floats
+    jacobian: Floats
+    distance: float
+    residual: float
+    found: bool
+
+    @property
+    def best(self) -> Floats:
+        """Return the estimate of the fixed point, shape (n,)."""
+        matrix = np.eye(self.x.size) - self.jacobian
+        return np.asarray(self.x + np.linalg.solve(matrix, self.y - self.x), dtype=np.float64)
+
+
+def mix(
+    phi: Map, start: Floats, *, yardstick: Yardstick, tolerance: float, most: int
+) -> tuple[Floats, Floats, bool]:
+    """Go from afar towards the fixed point by Anderson's mixing.
+
+    Args:
+        phi: The map.
+        start: Shape (n,).
+        yardstick: Gives what a deviation of each state is measured against.
+        tolerance: Largest change over a period, in yardsticks, to stop at.
+        most: Evaluations at most.
+
+    Returns:
+        The last state, the one after it, and whether the tolerance was reached.
+    """
+    states: list[Floats] = []
+    changes: list[Floats] = []
+    x: Floats = start
+    for _ in range(most):
+        y = phi(x)
+        change, scale = y - x, yardstick(x)
+        if float(np.max(np.abs(change / scale), initial=0.0)) <= tolerance:
+            return x, y, True
+        states, changes = [*states[-DEPTH:], x], [*changes[-DEPTH:], change]
+        step: Floats = change
+        if len(states) > 1:
+            d_change = np.diff(np.array(changes), axis=0).T
+            d_state = np.diff(np.array(states), axis=0).T
+            weights = np.linalg.lstsq(d_change / scale[:, None], change / scale, rcond=1e-10)[0]
+            step = change - (d_state + d_change) @ weights
+        last = x
+        x = np.asarray(x + step, dtype=np.float64)
+    return last, y, False
+
+
+def jacobian(
+    phi: Map, x: Floats, y: Floats, *, yardstick: Yardstick, groups: Sequence[Sequence[int]]
+) -> Floats:
+    """Return the Jacobian of the map at x by finite differences, shape (n, n).
+
+    States of which nothing is left after one period are tested together: a group that leaves
+    no trace costs one evaluation, else it is halved.
+
+    Args:
+        phi: The map.
+        x, y: Shape (n,): a state and what the map makes of it.
+        yardstick: As in `mix`.
+        groups: Which states are tested together; together all of them.
+    """
+    steps = PERTURBATION * yardstick(x)
+    result: Floats = np.zeros((x.size, x.size))
+    waiting = [tuple(group) for group in groups if group]
+    while waiting:
+        group = list(waiting.pop())
+        moved = x.copy()
+        moved[group] += steps[group]
+        change = phi(moved) - y
+        if len(group) == 1:
+            result[:, group[0]] = change / steps[group[0]]
+        elif np.max(np.abs(change) / steps) > 1e-3:
+            half = len(group) // 2
+            waiting += [tuple(group[:half]), tuple(group[half:])]
+    return result
+
+
+def approach(
+    phi: Map,
+    start: Floats,
+    known: Floats,
+    *,
+    yardstick: Yardstick,
+    tolerance: float,
+    most: int,
+    limit: float = STEP_LIMIT,
+) -> Point:
+    """Find the fixed point from a neighbourhood in which a Jacobian is roughly known.
+
+    A point is accepted where the estimated distance |(I-J)⁻¹(Φ(x)-x)| is within the tolerance
+    and the step before it shrank every residual that matters: with multipliers near 1 a wrong
+    Jacobian makes any small residual look like arrival, and only the next cycle tells.
+
+    Args:
+        phi: The map.
+        start: Shape (n,).
+        known: Shape (n, n): a Jacobian, which is corrected on the way.
+        yardstick: As in `mix`.
+        tolerance: Largest estimated distance, in yardsticks.
+        most: Evaluations at most.
+        limit: Longest step, in yardsticks.
+    """
+    matrix = np.eye(start.size) - known
+    x, point = start, None
+    before: tuple[Floats, Floats] | None = None
+    for _ in range(most):
+        y = phi(x)
+        residual, scale = y - x, yardstick(x)
+        if before is not None:
+            matrix = _corrected(matrix, x - before[0], before[1] - residual, scale)
+        try:
+            step = np.linalg.solve(matrix, residual)
+        except np.linalg.LinAlgError:
+            step = residual
+        distance = float(np.max(np.abs(step) / scale, initial=0.0))
+        change = np.abs(residual) / scale
+        previous = None if before is None else np.abs(before[1]) / scale
+        found = distance <= tolerance and _confirmed(change, previous, tolerance)
+        point = Point(
+            x,
+            y,
+            np.eye(start.size) - matrix,
+            distance,
+            float(np.max(change, initial=0.0)),
+            found,
+        )
+        if found or not np.isfinite(distance):
+            break
+        before = (x, residual)
+        x = x + step * min(1.0, limit / max(distance, 1e-300))
+    assert point is not None
+    return point
+
+
+def _confirmed(change: Floats, previous: Floats | None, tolerance: float) -> bool:
+    """Whether no residual that matters has kept its size over the last step."""
+    matters = change > SILENT * tolerance
+    if previous is None:
+        return not bool(matters.any())
+    return bool((change[matters] <= SHRINKS * previous[matters]).all())
+
+
+def _corrected(matrix: Floats, moved: Floats, answered: Floats, scale: Floats) -> Floats:
+    """Return the matrix that Broyden's first formula makes of a step and what it changed.
+
+    The inner product counts every state in its yardstick.
+    """
+    weight = moved / (scale * scale)
+    size = float(moved @ weight)
+    if size <= 0.0 or not np.isfinite(size):
+        return matrix
+    result: Floats = matrix + np.outer(answered - matrix @ moved, weight) / size
+    return result
+
+
+def spectral_radius(matrix: Floats) -> float:
+    """Return the largest absolute eigenvalue of a Jacobian."""
+    if not matrix.size:
+        return 0.0
+    power: Floats = matrix
+    for _ in range(3):
+        power = power @ power
+    # The eighth power tells cheaply that nothing is near 1; only then the number is exact.
+    rough = float(np.sqrt(np.sum(power * power)))
+    if rough < 0.5**8:
+        return math.pow(rough, 0.125)
+    values: Floats = np.abs(np.linalg.eigvals(matrix))
+    return float(np.max(values))

@@ -1,0 +1,136 @@
+"""Sources as a settled state sees them: delays folded in, what does not repeat held at its end."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import replace
+
+from stress.netlist.flat import Wave
+
+
+def has_amplitude(wave: Wave) -> bool:
+    """Whether a wave moves at all."""
+    values = wave.values
+    if wave.kind in ("sin", "sffm"):
+        return len(values) > 1 and values[1] != 0.0
+    if wave.kind == "am":
+        return len(values) > 0 and values[0] != 0.0
+    if wave.kind == "pwl":
+        return len(set(values[1::2])) > 1
+    return len(values) > 1 and values[0] != values[1]
+
+
+def scaled(wave: Wave, factor: float) -> Wave:
+    """Return the wave with its amplitudes times a factor; the offset of a sine stays."""
+    values = list(wave.values)
+    if wave.kind in ("sin", "sffm"):
+        values[1:2] = [value * factor for value in values[1:2]]
+    elif wave.kind == "am":
+        values[:1] = [value * factor for value in values[:1]]
+    elif wave.kind == "pwl":
+        values[1::2] = [value * factor for value in values[1::2]]
+    elif wave.kind == "pulse":
+        values[:2] = [value * factor for value in values[:2]]
+    else:  # exp
+        values[:2] = [value * factor for value in values[:2]]
+    return replace(wave, values=tuple(values))
+
+
+def shifted(wave: Wave, phase_deg: float) -> Wave:
+    """Return a sine that starts at another phase; other kinds are returned as they are."""
+    if wave.kind != "sin" or not phase_deg:
+        return wave
+    values = [*wave.values, *(0.0,) * (6 - len(wave.values))]
+    values[5] += phase_deg
+    return replace(wave, values=tuple(values))
+
+
+def settled(wave: Wave) -> tuple[Wave | float, str]:
+    """Return what is left of a wave for good, and what was changed ("" if nothing).
+
+    A plain number is the value that it holds once everything has passed.
+    """
+    change = {
+        "sin": _sine,
+        "pulse": _pulse,
+        "pwl": _points,
+        "exp": _exponential,
+        "sffm": _modulated,
+        "am": _modulated,
+    }
+    return change[wave.kind](wave)
+
+
+def _sine(wave: Wave) -> tuple[Wave | float, str]:
+    offset, amplitude, frequency, delay, damping, phase = _filled(wave.values, 6)
+    if damping > 0.0:
+        return offset, "its oscillation dies out, so it is held at its offset"
+    if len(wave.values) < 3 or frequency == 0.0:
+        return wave, ""
+    if delay == 0.0:
+        return wave, ""
+    turned = math.fmod(phase - 360.0 * frequency * delay, 360.0)
+    values = (offset, amplitude, frequency, 0.0, 0.0, turned)
+    return replace(wave, values=values), "its delay is taken as a shift of phase"
+
+
+def _pulse(wave: Wave) -> tuple[Wave | float, str]:
+    low, high, delay, rise, fall, width, period = _filled(wave.values, 7)
+    if period <= 0.0:
+        final = low if width > 0.0 else high
+        return final, f"its single pulse has passed, so it is held at {final:g}"
+    counted = len(wave.values) > 7 and wave.values[7] > 0
+    if counted:
+        return low, f"its pulses are counted, so it is held at {low:g}"
+    if delay == 0.0:
+        return wave, ""
+    # A start before time 0 lets a pulse that is under way at time 0 be what it is.
+    start = math.fmod(delay, period)
+    start = start - period if start > 0.0 else start
+    values = (low, high, start, rise, fall, width, period)
+    return replace(wave, values=values), "its delay is folded into the period"
+
+
+def _points(wave: Wave) -> tuple[Wave | float, str]:
+    times, levels = wave.values[0::2], wave.values[1::2]
+    start = wave.repeat_from_s
+    if start is None or times[-1] <= start:
+        return levels[-1], f"its points do not repeat, so it is held at {levels[-1]:g}"
+    if start == 0.0 and times[0] == 0.0:
+        return wave, ""
+    period = times[-1] - start
+    offset = math.fmod(start, period)
+    inner = [(t, v) for t, v in zip(times, levels, strict=True) if start < t < times[-1]]
+    moved = sorted((math.fmod(t, period), v) for t, v in inner)
+    at_start = _level(times, levels, start + (period - offset if offset else 0.0))
+    edge = [] if not offset else [(offset, _level(times, levels, times[-1]))]
+    points = sorted(dict([(0.0, at_start), *moved, *edge]).items())
+    points.append((period, at_start))
+    values = tuple(number for point in points for number in point)
+    return Wave("pwl", values, 0.0), "only the part that repeats is taken"
+
+
+def _level(times: Sequence[float], levels: Sequence[float], at: float) -> float:
+    """Return the level of straight lines between points."""
+    for (t0, v0), (t1, v1) in zip(
+        zip(times, levels, strict=True),
+        zip(times[1:], levels[1:], strict=True),
+        strict=False,
+    ):
+        if t0 <= at <= t1:
+            return v0 if t1 == t0 else v0 + (v1 - v0) * (at - t0) / (t1 - t0)
+    return levels[0] if at < times[0] else levels[-1]
+
+
+def _exponential(wave: Wave) -> tuple[Wave | float, str]:
+    final = wave.values[0]  # it decays to where it began
+    return final, f"its rise and fall have passed, so it is held at {final:g}"
+
+
+def _modulated(wave: Wave) -> tuple[Wave | float, str]:
+    return wave, ""
+
+
+def _filled(values: Sequence[float], size: int) -> tuple[float, ...]:
+    return (*values[:size], *(0.0,) * (size - len(values)))

@@ -1,0 +1,311 @@
+"""A case to its settled state: the cycle map first, the plain transient where it does not hold."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import replace
+
+import numpy as np
+
+from stress.engine.case import Answer, Floats, Proof, Settled, Wandering, Waves
+from stress.engine.cycle import CycleMap, Grid, end_state
+from stress.engine.deck import Deck
+from stress.engine.fixed_point import Point, approach, jacobian, mix, spectral_radius
+from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
+from stress.engine.ngspice import Ngspice, RunFailed
+from stress.engine.plain import CHUNK, MOST_PERIODS, Course, departs, follow, follow_from_rest, told
+from stress.engine.refine import alike
+
+DISTANCE = 3e-5  # accepted distance to the fixed point, in yardsticks
+NEAR = 1e-2  # where mixing hands over to Newton's method
+MIXED_CYCLES = 40
+WARM_CYCLES = 14
+NEUTRAL = 0.99  # a multiplier above this: nothing loads the supply
+UNSTABLE = 1.01
+FAST_F = 2e-7  # farad per second of period: smaller capacitors are tested in groups
+FAST_H = 0.1  # henry per second of period, likewise
+BELOW_ROUNDS, BELOW_CYCLES = 8, 6
+AFAR = 1e-3  # the same for what can only be run from rest
+FINEST = 2720  # points a period
+
+
+class Search:
+    """The search for the settled state of one deck.
+
+    Attributes:
+        cycles, jacobian_cycles: Periods simulated so far.
+    """
+
+    def __init__(self, ngspice: Ngspice, deck: Deck, *, case: str) -> None:
+        self.ngspice, self.deck, self.case = ngspice, deck, case
+        self.cycles = self.jacobian_cycles = 0
+        self.groups = groups(deck)
+
+    @property
+    def spent(self) -> int:
+        """Periods simulated, with those for Jacobians."""
+        return self.cycles + self.jacobian_cycles
+
+    def run(self, memory: Memory | None, *, grid: Grid | None = None) -> Outcome:
+        """Return the settled state, starting from a relative's where there is one.
+
+        Raises:
+            RunFailed: Where ngspice finds no solution.
+        """
+        if self.deck.period_s is None:
+            return self.standing(grid or Grid())
+        if self.deck.plain:
+            return self.from_afar(grid or Grid())
+        if grid is None:
+            grid = Grid() if memory is None else memory.grid
+        phi, point = self.search(grid, memory)
+        if memory is None and point.found:
+            phi, point = self.refined(phi, point)
+        if not point.found:
+            return self.plainly(phi, point.x)
+        return self.stable(phi, point)
+
+    def search(self, grid: Grid, memory: Memory | None) -> tuple[CycleMap, Point]:
+        """Search near a relative's state where that leads anywhere, else from rest."""
+        if memory is None:
+            return self.from_rest(grid)
+        node_V = translated(self.deck, memory)
+        phi = self.map(grid, node_V)
+        x, matrix = inherited(self.deck, memory, start_from(self.deck, node_V))
+        try:
+            if matrix is not None:
+                point = self.near(phi, x, matrix, most=WARM_CYCLES)
+                if point.found:
+                    return phi, point
+                x, y = point.x, point.y
+            else:
+                y = self.counted(phi, x)
+            matrix = self.jacobian(phi, x, y)
+            if spectral_radius(matrix) <= NEUTRAL:
+                point = self.near(phi, x, matrix, most=WARM_CYCLES)
+                if point.found:
+                    return phi, point
+        except RunFailed:
+            pass  # from rest it may still be reached
+        return self.from_rest(grid)
+
+    def from_rest(self, grid: Grid) -> tuple[CycleMap, Point]:
+        """Search from rest, or from `.ic`."""
+        phi = self.map(grid, self.deck.initial_V)
+        start = start_from(self.deck, self.deck.initial_V)
+        x, y = self.mixed(phi, start)
+        matrix = self.jacobian(phi, x, y)
+        if spectral_radius(matrix) <= NEUTRAL:
+            point = self.near(phi, y, matrix, most=WARM_CYCLES)
+            if point.found:
+                return phi, point
+        phi = self.map(grid, self.deck.initial_V)
+        return phi, self.from_below(phi, start)
+
+    def from_below(self, phi: CycleMap, start: Floats) -> Point:
+        """Search from rest with a fresh Jacobian every few steps."""
+        x = start
+        for _ in range(BELOW_ROUNDS):
+            y = self.counted(phi, x)
+            matrix = self.jacobian(phi, x, y)
+            point = self.near(phi, x, matrix, most=BELOW_CYCLES)
+            if point.found:
+                break
+            x = point.x
+        return point
+
+    def refined(self, phi: CycleMap, point: Point) -> tuple[CycleMap, Point]:
+        """Halve the steps until the stresses hold still; keep the coarser of the last two."""
+        while phi.grid.points < FINEST:
+            waves = phi.waves()
+            finer = self.map(replace(phi.grid, points=2 * phi.grid.points), phi.node_V)
+            better = self.near(finer, point.x, point.jacobian, most=WARM_CYCLES)
+            if not better.found:
+                break
+            if alike(waves, finer.waves()):
+                break
+            phi, point = finer, better
+        self.counted(phi, point.x)
+        return phi, point
+
+    def stable(self, phi: CycleMap, point: Point) -> Outcome:
+        """Return a point that was found, unless the circuit leaves it by itself."""
+        growth = spectral_radius(point.jacobian)
+        if growth <= UNSTABLE:
+            return self.settled(phi, point, growth)
+        matrix = self.jacobian(phi, point.x, point.y)
+        values, vectors = np.linalg.eig(matrix)
+        fastest = int(np.argmax(np.abs(values)))
+        growth = float(np.abs(values[fastest]))
+        if growth > UNSTABLE:
+            along = np.real(vectors[:, fastest])
+            periods = int(np.clip(math.log(1e4) / math.log(growth), CHUNK, MOST_PERIODS))
+            trial = self.map(phi.grid, phi.node_V)
+            course = departs(trial, point.x, along=along, periods=periods)
+            self.cycles += trial.cycles
+            if course is not None:
+                return self.wandering(course, unstable=True)
+        self.counted(phi, point.x)
+        return self.settled(phi, replace(point, jacobian=matrix), growth)
+
+    def settled(self, phi: CycleMap, point: Point, growth: float) -> Outcome:
+        """Return the answer of a point that was found."""
+        proof = Proof(
+            distance=point.distance,
+            residual=point.residual,
+            cycles=self.cycles,
+            jacobian_cycles=self.jacobian_cycles,
+            multiplier=growth,
+            points=phi.points,
+            method="cycle map",
+        )
+        answer = Settled(case=self.case, waves=phi.waves(), proof=proof, notices=self.deck.notices)
+        return self.outcome(answer, self.memory(phi, point.best, point.jacobian))
+
+    def standing(self, grid: Grid) -> Outcome:
+        """Return the operating point of a circuit in which nothing moves."""
+        self.ngspice.load(self.deck.text(self.deck.initial_V, options=grid.options))
+        self.ngspice.operating_point()
+        self.cycles += 1
+        rows = np.array([self.ngspice.vector(probe.vector)[-1] for probe in self.deck.probes])
+        waves = Waves(
+            np.array([0.0, 1.0]),
+            tuple(probe.name for probe in self.deck.probes),
+            np.repeat(rows[:, None], 2, axis=1),
+        )
+        proof = Proof(
+            distance=0.0,
+            residual=0.0,
+            cycles=1,
+            jacobian_cycles=0,
+            multiplier=None,
+            points=1,
+            method="operating point",
+        )
+        node_V = {node: self.ngspice.last(deck) for deck, node in self.deck.nodes.items()}
+        memory = Memory(
+            states=tuple(state.element for state in self.deck.states),
+            x=end_state(self.ngspice, self.deck),
+            jacobian=None,
+            node_V=node_V,
+        )
+        answer = Settled(case=self.case, waves=waves, proof=proof, notices=self.deck.notices)
+        return self.outcome(answer, memory)
+
+    def plainly(self, phi: CycleMap, start: Floats) -> Outcome:
+        """Follow the plain transient where the search found nothing."""
+        trial = self.map(phi.grid, phi.node_V)
+        course = follow(trial, start, tolerance=DISTANCE)
+        self.cycles += trial.cycles
+        if not course.settled:
+            return self.wandering(course, unstable=False)
+        return self.followed(trial, course, ())
+
+    def from_afar(self, grid: Grid) -> Outcome:
+        """Follow the plain transient from rest where the map does not hold."""
+        phi = self.map(grid, self.deck.initial_V)
+        start = start_from(self.deck, self.deck.initial_V)
+        course = follow_from_rest(phi, start, tolerance=AFAR)
+        self.cycles += phi.cycles
+        if not course.settled:
+            return self.wandering(course, unstable=False)
+        return self.followed(phi, course, (f"{self.deck.plain}: settled by a plain transient",))
+
+    def followed(self, phi: CycleMap, course: Course, notices: tuple[str, ...]) -> Outcome:
+        """Return the answer of a plain transient that became periodic."""
+        proof = Proof(
+            distance=course.distance,
+            residual=course.residual,
+            cycles=self.cycles,
+            jacobian_cycles=self.jacobian_cycles,
+            multiplier=None,
+            points=phi.points,
+            method="plain transient",
+        )
+        answer = Settled(
+            case=self.case,
+            waves=course.waves,
+            proof=proof,
+            notices=(*self.deck.notices, *notices),
+        )
+        return self.outcome(answer, self.memory(phi, course.x, None))
+
+    def wandering(self, course: Course, *, unstable: bool) -> Outcome:
+        """Return what was seen of a circuit that does not become periodic."""
+        answer = Wandering(
+            case=self.case,
+            unstable=unstable,
+            waves=course.waves,
+            cycles=self.cycles,
+            text=told(self.deck, course, unstable=unstable, cycles=self.cycles),
+            notices=self.deck.notices,
+        )
+        return self.outcome(answer, None)
+
+    def outcome(self, answer: Answer, memory: Memory | None) -> Outcome:
+        """Return an answer with what it cost."""
+        return Outcome(answer=answer, memory=memory, cycles=self.spent)
+
+    def memory(self, phi: CycleMap, x: Floats, matrix: Floats | None) -> Memory:
+        """Return what a state leaves for relatives."""
+        return Memory(
+            states=tuple(state.element for state in self.deck.states),
+            x=x,
+            jacobian=matrix,
+            node_V={self.deck.nodes[deck]: value for deck, value in phi.node_V.items()},
+            grid=phi.grid,
+        )
+
+    def map(self, grid: Grid, node_V: Mapping[str, float]) -> CycleMap:
+        """Return the cycle map on a grid."""
+        return CycleMap(self.ngspice, self.deck, grid=grid, node_V=node_V)
+
+    def counted(self, phi: CycleMap, x: Floats) -> Floats:
+        """Return the state after one period."""
+        self.cycles += 1
+        return phi(x)
+
+    def mixed(self, phi: CycleMap, start: Floats) -> tuple[Floats, Floats]:
+        """Return a state somewhere near the fixed point, and the one after it."""
+        x, y, _ = mix(
+            lambda x: self.counted(phi, x),
+            start,
+            yardstick=phi.scale,
+            tolerance=NEAR,
+            most=MIXED_CYCLES,
+        )
+        return x, y
+
+    def jacobian(self, phi: CycleMap, x: Floats, y: Floats) -> Floats:
+        """Return the Jacobian at x, its cycles counted apart."""
+        before, node_V = phi.cycles, phi.node_V
+
+        def step(x: Floats) -> Floats:
+            phi.put_nodes(node_V)
+            return phi(x)
+
+        matrix = jacobian(step, x, y, yardstick=phi.scale, groups=self.groups)
+        phi.put_nodes(node_V)
+        self.jacobian_cycles += phi.cycles - before
+        return matrix
+
+    def near(self, phi: CycleMap, x: Floats, matrix: Floats, *, most: int) -> Point:
+        """Search from a state near the fixed point."""
+        return approach(
+            lambda x: self.counted(phi, x),
+            x,
+            matrix,
+            yardstick=phi.scale,
+            tolerance=DISTANCE,
+            most=most,
+        )
+
+
+def groups(deck: Deck) -> tuple[tuple[int, ...], ...]:
+    """Return which states are tested together for a Jacobian: the quick ones, by their size."""
+    period_s = deck.period_s or 1.0
+    least = {"C": FAST_F * period_s, "L": FAST_H * period_s}
+    quick = [at for at, state in enumerate(deck.states) if state.size < least[state.kind]]
+    slow = [at for at in range(len(deck.states)) if at not in set(quick)]
+    return (tuple(quick), *((at,) for at in slow))

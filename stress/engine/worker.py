@@ -1,0 +1,253 @@
+"""What runs in a worker process: jobs in, results out, one ngspice inside.
+
+The process stands in an empty folder that is also its home, so that no start-up file of the
+user is ever executed. Whatever ends or poisons it costs the job it was at, nothing else.
+"""
+
+from __future__ import annotations
+
+import os
+import pickle
+import signal
+from collections import OrderedDict
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from importlib.metadata import version
+from pathlib import Path
+
+import numpy as np
+
+from stress.engine.case import (
+    Analysis,
+    Answer,
+    Ran,
+    Response,
+    SmallSignal,
+    Steady,
+    Transient,
+    Twin,
+    Unsolved,
+    Waves,
+)
+from stress.engine.cycle import CAREFUL, Grid
+from stress.engine.deck import Deck, Draft
+from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
+from stress.engine.ngspice import Broken, DeckRefused, Ngspice, RunFailed
+from stress.engine.solver import Versions
+from stress.engine.steady import Search
+from stress.engine.topology import LoopOfSources
+
+KEPT_TWINS, KEPT_DRAFTS = 8, 64
+STEPS = 1000  # of a transient without a period
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Job:
+    """A case on its way to a worker.
+
+    Attributes:
+        case: Its name.
+        twin: File with the pickled twin.
+        memory: What its parent left, or None.
+    """
+
+    case: str
+    twin: str
+    values: Mapping[str, float]
+    removed: frozenset[str]
+    analysis: Analysis
+    memory: Memory | None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Result:
+    """What a worker says of a job.
+
+    Attributes:
+        poisoned: Why the process must not be used again, or "".
+        cycles: Periods simulated, with those for Jacobians.
+        inside_s: Time spent in ngspice.
+    """
+
+    answer: Answer
+    memory: Memory | None
+    cycles: int
+    inside_s: float
+    poisoned: str = ""
+
+
+class _Process:
+    """What a worker process keeps from job to job."""
+
+    def __init__(self) -> None:
+        self._ngspice: Ngspice | None = None
+        self._twins: OrderedDict[str, Twin] = OrderedDict()
+        self._drafts: OrderedDict[tuple[str, frozenset[str], bool], Draft] = OrderedDict()
+
+    @property
+    def ngspice(self) -> Ngspice:
+        if self._ngspice is None:
+            self._ngspice = Ngspice()
+        return self._ngspice
+
+    def draft(self, job: Job, *, forever: bool) -> Draft:
+        key = (job.twin, job.removed, forever)
+        draft = self._drafts.get(key)
+        if draft is None:
+            draft = Draft(self._twin(job.twin), job.removed, forever=forever)
+            self._drafts[key] = draft
+            if len(self._drafts) > KEPT_DRAFTS:
+                self._drafts.popitem(last=False)
+        self._drafts.move_to_end(key)
+        return draft
+
+    def _twin(self, path: str) -> Twin:
+        twin = self._twins.get(path)
+        if twin is None:
+            twin = pickle.loads(Path(path).read_bytes())
+            assert isinstance(twin, Twin)
+            self._twins[path] = twin
+            if len(self._twins) > KEPT_TWINS:
+                self._twins.popitem(last=False)
+        return twin
+
+
+_PROCESS = _Process()
+
+
+def enter(folder: str, memory_bytes: int | None) -> None:
+    """Make the process ready: an empty folder as working folder and home, and its limits."""
+    # A worker deep inside the library must still go at once when it is told to.
+    signal.signal(signal.SIGTERM, signal.SIG_DFL)
+    os.chdir(folder)
+    for name in ("HOME", "USERPROFILE"):
+        os.environ[name] = folder
+    if memory_bytes is not None:
+        import resource
+
+        resource.setrlimit(resource.RLIMIT_AS, (memory_bytes, memory_bytes))
+
+
+def versions() -> Versions:
+    """Return what this process simulates with."""
+    ngspice = _PROCESS.ngspice
+    return Versions(ngspice=ngspice.version, pyspice=version("PySpice"), library=ngspice.path)
+
+
+def work(job: Job) -> Result:
+    """Solve one job; whatever goes wrong becomes part of the result."""
+    started = _PROCESS.ngspice.seconds
+    poisoned = ""
+    try:
+        outcome = _solved(job)
+    except LoopOfSources as error:
+        outcome = _unsolved(job, str(error))
+    except RunFailed as error:
+        outcome = _unsolved(job, str(error))
+    except (DeckRefused, Broken) as error:
+        poisoned = f"ngspice: {error}"
+        outcome = _unsolved(job, poisoned)
+    return Result(
+        answer=outcome.answer,
+        memory=outcome.memory,
+        cycles=outcome.cycles,
+        inside_s=_PROCESS.ngspice.seconds - started,
+        poisoned=poisoned,
+    )
+
+
+def _unsolved(job: Job, reason: str) -> Outcome:
+    return Outcome(answer=Unsolved(case=job.case, reason=reason), memory=None, cycles=0)
+
+
+def _solved(job: Job) -> Outcome:
+    match job.analysis:
+        case Steady():
+            return _steady(job)
+        case Transient():
+            return _transient(job, job.analysis)
+        case SmallSignal():
+            return _small_signal(job, job.analysis)
+
+
+def _steady(job: Job) -> Outcome:
+    """Settle; after a numerical failure once more from rest with more careful settings."""
+    deck = _PROCESS.draft(job, forever=True).deck(job.values)
+    search = Search(_PROCESS.ngspice, deck, case=job.case)
+    try:
+        return search.run(job.memory)
+    except RunFailed as error:
+        again = Search(_PROCESS.ngspice, deck, case=job.case)
+        try:
+            outcome = again.run(None, grid=CAREFUL)
+        except RunFailed:
+            spent = search.spent + again.spent
+            answer = Unsolved(case=job.case, reason=str(error), cycles=spent)
+            return Outcome(answer=answer, memory=None, cycles=spent)
+        return replace(outcome, cycles=outcome.cycles + search.spent)
+
+
+def _transient(job: Job, asked: Transient) -> Outcome:
+    draft = _PROCESS.draft(job, forever=job.memory is not None)
+    deck = draft.deck(job.values, phase_deg=asked.phase_deg, keep=asked.keep)
+    grid = Grid() if job.memory is None else job.memory.grid
+    period_s = deck.period_s or asked.stop_s * grid.points / STEPS
+    step_s = asked.step_s or period_s / grid.points
+    ngspice = _PROCESS.ngspice
+    node_V = deck.initial_V if job.memory is None else translated(deck, job.memory)
+    ngspice.load(deck.text(node_V, options=grid.options))
+    if job.memory is not None:
+        x, _ = inherited(deck, job.memory, start_from(deck, node_V))
+        for state, value in zip(deck.states, x, strict=True):
+            ngspice.alter_start(state.device, float(value))
+    ngspice.transient(stop_s=asked.stop_s, step_s=step_s)
+    time_s = ngspice.vector("time")
+    rows = np.array([ngspice.vector(probe.vector) for probe in deck.probes])
+    rows = rows.reshape(len(deck.probes), time_s.size)
+    if time_s[0] > 0.0:
+        time_s, rows = np.append(0.0, time_s), np.concatenate((rows[:, :1], rows), axis=1)
+    rising = np.append(True, np.diff(time_s) > 0.0)
+    names = tuple(probe.name for probe in deck.probes)
+    waves = Waves(time_s[rising], names, rows[:, rising])
+    cycles = int(np.ceil(asked.stop_s / deck.period_s)) if deck.period_s else 1
+    answer = Ran(case=job.case, waves=waves, notices=deck.notices)
+    return Outcome(answer=answer, memory=None, cycles=cycles)
+
+
+def _small_signal(job: Job, asked: SmallSignal) -> Outcome:
+    deck = _PROCESS.draft(job, forever=True).deck(job.values, driven=asked.source)
+    ngspice = _PROCESS.ngspice
+    ngspice.load(deck.text(deck.initial_V, options=Grid().options))
+    names = tuple(probe.name for probe in deck.probes)
+    values = np.empty((len(names), len(asked.frequencies_Hz)), dtype=np.complex128)
+    for column, frequency_Hz in enumerate(asked.frequencies_Hz):
+        ngspice.small_signal(frequency_Hz)
+        values[:, column] = _response(ngspice, deck, frequency_Hz)
+    answer = Response(
+        case=job.case,
+        frequencies_Hz=np.array(asked.frequencies_Hz),
+        names=names,
+        values=values,
+        notices=deck.notices,
+    )
+    return Outcome(answer=answer, memory=None, cycles=len(asked.frequencies_Hz))
+
+
+def _response(ngspice: Ngspice, deck: Deck, frequency_Hz: float) -> list[complex]:
+    """Return the row values of one frequency; capacitors' currents follow from their voltages."""
+    states = {f"i({state.element.lower()})": state for state in deck.states if state.kind == "C"}
+
+    def at(node: str) -> complex:
+        return 0j if node in ("0", "") else complex(ngspice.complex_vector(node)[-1])
+
+    found: list[complex] = []
+    for probe in deck.probes:
+        state = states.get(probe.name)
+        if state is not None:
+            voltage = at(state.plus) - at(state.minus)
+            found.append(2j * np.pi * frequency_Hz * state.size * voltage)
+        elif probe.vector.startswith("@"):
+            found.append(complex("nan"))
+        else:
+            found.append(at(probe.vector))
+    return found
