@@ -56,15 +56,15 @@ PARTS = (
     Column("stress", "stress"),
     Column("judged", "bears", number=True),
     Column("condition", "in"),
+    Column("limit", "limit", number=True),
+    Column("verdict", "verdict"),
     Column("largest", "largest", number=True, places=BUT_NARROW),
     Column("largest_condition", "in", places=BUT_NARROW),
-    Column("limit", "limit", number=True),
     Column("rating", "rating system", places=BUT_NARROW),
     Column("source", "limit from", places=BUT_NARROW),
-    Column("verdict", "verdict"),
 )
 FAILURES = (
-    Column("position", "part"),
+    Column("position", "part", places=frozenset({NARROW, WIDE, FILE})),
     Column("fault", "fault"),
     Column("condition", "in", places=BUT_NARROW),
     Column("dangerous", "dangerous"),
@@ -91,6 +91,7 @@ PROOFS = (
     Column("residual", "residual", number=True),
     Column("multiplier", "multiplier", number=True),
 )
+VERDICT = next(i for i, column in enumerate(PARTS) if column.key == "verdict")
 WITHIN, PAST, NO_LIMIT = "within", "PAST ITS LIMIT", "no limit known"
 
 
@@ -238,12 +239,12 @@ def _part(review: Review, of: Part) -> Iterator[tuple[Cell, ...]]:
             Cell(words.quantity(stress), stress),
             number(judged, unit, missing=words.missing_in(review, condition)),
             Cell(condition),
+            number(limit.value if limit else None, unit),
+            Cell(verdict),
             number(by_condition[largest] if largest else None, unit, missing="unsolved"),
             Cell(largest or "none"),
-            number(limit.value if limit else None, unit),
             Cell(limit.rating.value if limit else "none"),
             Cell(_source(limit)),
-            Cell(verdict),
         )
 
 

@@ -143,7 +143,7 @@ def _explanations(review: Review, out: _Out) -> None:
 def _parts(review: Review, out: _Out) -> None:
     out.heading("Other parts with every capacitor healthy")
     table = tables.parts(review)
-    past = tuple(row for row in table.rows if row[-1].text == tables.PAST)
+    past = tuple(row for row in table.rows if row[tables.VERDICT].text == tables.PAST)
     if past:
         out.table(Table(table.name, table.columns, past))
     else:
