@@ -8,7 +8,7 @@ from functools import cache
 from pathlib import Path
 from typing import Any
 
-from stress.parts import types
+from stress.parts import types, wound
 from stress.parts.model import Unit
 from stress.parts.model_text import subcircuit_text
 from stress.parts.type import TypeEntry
@@ -22,8 +22,12 @@ def subcircuit(name: str) -> str | None:
     The name is matched as by `stress.parts.types.find`; the subcircuit carries the name that
     was asked for. Pins: plate grid cathode; plate screen grid cathode; rectifiers plate
     [plate2] cathode; then diode, diode2, oscillator, plate2, grid2, cathode2 as far as the
-    type has them (`TypeEntry.pins`). One unit of a double triode is one subcircuit.
+    type has them (`TypeEntry.pins`). One unit of a double triode is one subcircuit. The wound
+    parts of `stress.parts.wound` are found by their own names.
     """
+    wound_part = wound.subcircuit(name)
+    if wound_part is not None:
+        return wound_part
     entry = types.find(name)
     if entry is None:
         return None
