@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
+from stress.parts.series import next_down
 from stress.text.unit import unit
 
 SPREAD_UA_PER_UF_V = 0.0015
@@ -17,7 +18,6 @@ CAPACITANCE_TOLERANCE = 0.20  # of an ordinary electrolytic, code M
 RESISTOR_TOLERANCE = 0.05
 POWER_RESERVE = 0.5  # of a resistor's wattage is used (common practice)
 WATTAGES = (0.25, 0.5, 1.0, 2.0, 3.0, 5.0, 10.0)
-_E12 = (1.0, 1.2, 1.5, 1.8, 2.2, 2.7, 3.3, 3.9, 4.7, 5.6, 6.8, 8.2)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -107,10 +107,10 @@ def series(
         ValueError: Where the parts cannot share the voltage within their rating.
     """
     most = largest_resistor_ohm(each_F, count=count, each_V=each_V, total_V=steady_V)
-    ohm = standard_below_ohm(most)
+    ohm = next_down(most)
     while shared_V(each_F, count=count, resistor_ohm=ohm, total_V=steady_V) > each_V:
         # The tolerance of the resistors takes from the reserve that the leakage had.
-        ohm = standard_below_ohm(ohm * 0.99)
+        ohm = next_down(ohm * 0.99)
         if ohm < 1000.0:
             raise ValueError(f"{count} parts of {each_V} V do not share {steady_V} V")
     share = shared_V(each_F, count=count, resistor_ohm=ohm, total_V=steady_V)
@@ -126,13 +126,3 @@ def series(
         share_V=share,
         brief_V=charging_V(max(brief_V, steady_V), count=count),
     )
-
-
-def standard_below_ohm(ohm: float) -> float:
-    """Return the next E12 value (IEC 60063) that is not larger, in ohm."""
-    decade = 1.0
-    while decade * 10.0 <= ohm * (1 + 1e-9):
-        decade *= 10.0
-    while decade > ohm * (1 + 1e-9):
-        decade /= 10.0
-    return decade * max(step for step in _E12 if decade * step <= ohm * (1 + 1e-9))

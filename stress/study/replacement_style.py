@@ -31,6 +31,7 @@ def style_for(
     safety_class: str | None,
     reverse_V: float | None,
     slope_V_per_s: float,
+    reverse_share: float | None = None,
 ) -> StyleChoice:
     """Return the style of part that belongs in a position.
 
@@ -39,6 +40,7 @@ def style_for(
         safety_class: "X", "Y" or None, from `stress.study.touch`.
         reverse_V: Largest reverse voltage that lasts; None for non-polar styles.
         slope_V_per_s: Steepest change of its voltage.
+        reverse_share: Of the rating that the policy lets be used the wrong way round.
     """
     if safety_class is not None:
         return StyleChoice(
@@ -51,6 +53,8 @@ def style_for(
         )
     if position.style.polar and reverse_V is not None:
         allowed = position.style.reverse_V(position.rated_V) or 0.0
+        if reverse_share is not None and position.rated_V is not None:
+            allowed = min(allowed, reverse_share * position.rated_V)
         if reverse_V > allowed:
             return _non_polar(position, reverse_V=reverse_V, allowed_V=allowed)
     name = position.style.replacement or position.style.name

@@ -6,6 +6,7 @@ from dataclasses import dataclass, field
 from math import sqrt
 
 from stress.circuit.circuit import Position
+from stress.parts.series import next_voltage
 from stress.parts.style import Style
 from stress.study.result import PositionStress, Worst
 from stress.text.figure import figure
@@ -51,33 +52,21 @@ def needs(
     *,
     style: Style,
     worst: Worst,
-    share: float,
-    share_rule: str,
+    lasting: Need,
     surge_share: float = 1.0,
     ac_V: float = 0.0,
-    floor_V: float = 0.0,
-    floor_rule: str = "",
 ) -> tuple[Need, ...]:
     """Return what every requirement asks of the rating, the largest first.
 
     Args:
         position: With the rating of the part that is there.
         style: Of the new part.
-        worst: What lasts, ripple peak and high line counted, and what is brief.
-        share: Of the rating that the policy lets be used.
-        share_rule: Its line and document.
+        worst: What is brief.
+        lasting: What the policy asks for what lasts, ripple peak and high line counted.
         surge_share: Of the surge voltage that the policy lets be used.
         ac_V: The alternating voltage as an equivalent sine, rms.
-        floor_V, floor_rule: A least rating the policy asks for, and its line.
     """
-    asked = [
-        Need(
-            worst.worst_V / share,
-            f"{figure(worst.worst_V, 'V')} lasts ({worst.condition}), at most "
-            f"{share:.0%} of the rating is used",
-            share_rule,
-        )
-    ]
+    asked = [lasting]
     if worst.brief_V:
         asked.append(
             Need(
@@ -97,8 +86,6 @@ def needs(
                 str(stated.source) if stated is not None else AC_SOURCE,
             )
         )
-    if floor_V > 0.0:
-        asked.append(Need(floor_V, "the least rating the policy allows", floor_rule))
     if position.rated_V is not None:
         asked.append(
             Need(
@@ -128,11 +115,11 @@ def choose(asked: tuple[Need, ...], *, position: Position, style: Style) -> Volt
     """
     steps = style.steps.rated_V
     governing = asked[0]
-    single = _next(steps, governing.volts)
+    single = next_voltage(governing.volts, style)
     if single is not None:
         return VoltageChoice(rated_V=single, governing=governing)
     stressed = [need for need in asked if not need.rule.startswith("never below")]
-    single = _next(steps, stressed[0].volts)
+    single = next_voltage(stressed[0].volts, style)
     if single is not None:
         return VoltageChoice(
             rated_V=steps[-1],
@@ -145,7 +132,7 @@ def choose(asked: tuple[Need, ...], *, position: Position, style: Style) -> Volt
         )
     for count in range(2, MOST_IN_SERIES + 1):
         # The one that gets most of the charge bears up to 60 % of a pair (±20 %).
-        each = _next(steps, stressed[0].volts * 1.2 / count)
+        each = next_voltage(stressed[0].volts * 1.2 / count, style)
         if each is not None:
             return VoltageChoice(rated_V=each, count=count, governing=stressed[0])
     return VoltageChoice(
@@ -167,7 +154,3 @@ def _for_surge(brief_V: float, style: Style) -> float:
             return brief_V * rated_V / style.surge_V(rated_V)
     top = style.steps.rated_V[-1]
     return brief_V * top / style.surge_V(top)
-
-
-def _next(steps: tuple[float, ...], volts: float) -> float | None:
-    return next((step for step in steps if step >= volts * (1 - 1e-9)), None)

@@ -219,7 +219,7 @@ class Replacement:
     safety_class: str | None = None
     balance_ohm: float | None = None  # of all balancing resistors of a series arrangement
     ripple_Hz: float | None = None  # what `ripple_rms_A` belongs to
-    each_F: float | None = None  # of each part of an arrangement; `value_F` is the whole
+    parts_F: tuple[float, ...] = ()  # of an arrangement; `value_F` is the whole
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

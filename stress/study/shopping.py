@@ -20,7 +20,7 @@ class Row:
     Attributes:
         designators: Positions, in netlist order.
         quantity: How many parts to buy.
-        value_F: Of each part; of a can the value of each section.
+        value_F: Of each part where they are equal, else of all; of a can of each section.
         rated_V: Highest that any of the positions asks for.
         style: Name of the style.
         safety_class: "X", "Y" or None.
@@ -86,7 +86,7 @@ def _plain(parts: list[Replacement]) -> Row:
     return Row(
         designators=tuple(part.position for part in parts),
         quantity=sum(part.quantity for part in parts),
-        value_F=(first.each_F if first.each_F is not None else first.value_F,),
+        value_F=tuple(dict.fromkeys(first.parts_F)) or (first.value_F,),
         rated_V=first.rated_V,
         style=first.style,
         safety_class=first.safety_class,

@@ -53,11 +53,3 @@ def test_a_string_keeps_every_part_within_its_rating():
 def test_no_resistor_can_share_what_is_too_much():
     with pytest.raises(ValueError, match="350"):
         balancing.series(47e-6, count=2, each_F=100e-6, each_V=350.0, steady_V=699.0, brief_V=0.0)
-
-
-@pytest.mark.parametrize(
-    ("ohm", "standard"),
-    [(1.0e6, 1.0e6), (1.111e6, 1.0e6), (999e3, 820e3), (0.9, 0.82), (33.0, 33.0)],
-)
-def test_next_standard_resistor_below(ohm, standard):
-    assert balancing.standard_below_ohm(ohm) == pytest.approx(standard)  # E12, IEC 60063

@@ -110,7 +110,7 @@ def test_shopping_list(three):
             "C3",
             value_F=22e-6,
             rated_V=350.0,
-            each_F=47e-6,
+            parts_F=(47e-6, 47e-6),
             quantity=2,
             arrangement="two in series with 220 kΩ 1 W across each",
         ),

@@ -55,19 +55,12 @@ def test_large_polar_parts_go_back_to_back(circuit_of):
     assert "40 V the wrong way round" in found.why
 
 
-def asked(position, *, style, worst_V, share=0.8, brief_V=None, ac_V=0.0, **keys):
+def asked(position, *, style, worst_V, share=0.8, brief_V=None, ac_V=0.0):
     worst = Worst(
         position="C1", worst_V=worst_V, condition="high", brief_V=brief_V, brief_condition="inrush"
     )
-    return needs(
-        position,
-        style=styles.find(style),
-        worst=worst,
-        share=share,
-        share_rule="the policy's line",
-        ac_V=ac_V,
-        **keys,
-    )
+    lasting = Need(worst_V / share, f"{worst_V} V lasts", "the policy's line")
+    return needs(position, style=styles.find(style), worst=worst, lasting=lasting, ac_V=ac_V)
 
 
 @pytest.mark.parametrize(
@@ -135,6 +128,5 @@ def test_what_no_string_covers_is_said(circuit_of):
 
 def test_the_largest_need_comes_first(circuit_of):
     position = position_of(circuit_of, rated_V=400.0)
-    wanted = asked(position, style="film", worst_V=100.0, floor_V=1000.0, floor_rule="least rating")
-    assert [need.volts for need in wanted] == sorted((n.volts for n in wanted), reverse=True)
-    assert wanted[0].rule == "least rating"
+    wanted = asked(position, style="film", worst_V=100.0, brief_V=300.0)
+    assert [need.volts for need in wanted] == [400.0, 300.0, 125.0]
