@@ -7,7 +7,7 @@ import pytest
 from stress.circuit.circuit import Role
 from stress.parts import styles
 from stress.study.replacement_style import style_for
-from stress.study.replacement_voltage import AC_SHARE, Need, choose, needs
+from stress.study.replacement_voltage import Need, choose, needs
 from stress.study.result import Worst
 
 
@@ -91,11 +91,11 @@ def test_rating(circuit_of, style, rated_V, worst_V, share, brief_V, expected_V,
 
 
 def test_alternating_voltage_asks_for_more(circuit_of):
-    # 250 V rms of alternating voltage on film: 250/0.35 = 714 V dc (Vishay MMKP 386)
+    # 250 V rms of alternating voltage on polypropylene: 250/0.35 = 714 V dc (Vishay MMKP 386)
     position = position_of(circuit_of, rated_V=400.0)
-    wanted = asked(position, style="film", worst_V=354.0, ac_V=250.0)
-    found = choose(wanted, position=position, style=styles.find("film"))
-    assert found.governing.volts == pytest.approx(250.0 / AC_SHARE)
+    wanted = asked(position, style="film-pp", worst_V=354.0, ac_V=250.0)
+    found = choose(wanted, position=position, style=styles.find("film-pp"))
+    assert found.governing.volts == pytest.approx(250.0 / 0.35)
     assert found.rated_V == 1000.0
 
 
