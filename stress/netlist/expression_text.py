@@ -1,0 +1,151 @@
+"""An expression as text for ngspice 39 without any compatibility mode.
+
+What ngspice refuses or gets wrong there is written around: it takes the size of a negative base
+by itself but not the sign of its slope, stops at a root or a logarithm out of range and at a
+power of 0 below 1 (its slope is infinite), has no atan2 and no `%`, and calls a table pwl.
+"""
+
+from __future__ import annotations
+
+from stress.netlist.expression import (
+    Binary,
+    Call,
+    Conditional,
+    Current,
+    Expression,
+    Name,
+    Number,
+    Unary,
+    Voltage,
+)
+
+_SAME = frozenset(
+    {"abs", "sgn", "exp", "sin", "cos", "tan", "atan", "sinh", "cosh", "tanh", "floor", "ceil"}
+    | {"min", "max", "ddt"}
+)
+_NAMED = {"round": "nint", "step": "u", "ramp": "uramp"}
+_SMALL = "1e-30"  # stands for a base of 0 where the slope of the power is infinite
+
+
+def expression_text(expression: Expression) -> str:
+    """Return text that ngspice reads as exactly this expression; names stand as they are."""
+    return _text(expression)
+
+
+def _text(part: Expression) -> str:
+    if isinstance(part, Number):
+        text = repr(float(part.value))
+        return f"({text})" if text.startswith("-") else text
+    if isinstance(part, Binary):
+        return _operation(part)
+    if isinstance(part, Call):
+        return _call(part)
+    if isinstance(part, Voltage):
+        if part.minus == "0":
+            return f"v({part.plus})"
+        return f"(-v({part.minus}))" if part.plus == "0" else f"v({part.plus},{part.minus})"
+    if isinstance(part, Current):
+        return f"i({part.element})"
+    if isinstance(part, Unary):
+        if part.operator == "!":
+            return f"({_text(part.operand)} != 0 ? 0 : 1)"
+        return f"(-{_text(part.operand)})"
+    if isinstance(part, Conditional):
+        return f"({_truth(part.test)} ? {_text(part.yes)} : {_text(part.no)})"
+    assert isinstance(part, Name)
+    return part.name
+
+
+def _truth(part: Expression) -> str:
+    """Return a test; ngspice counts whatever is not 0 as true."""
+    return _text(part)
+
+
+def _operation(part: Binary) -> str:
+    left, right = _text(part.left), _text(part.right)
+    if part.operator == "%":
+        ratio = f"({left}/{right})"
+        return f"({left} - {right}*sgn{ratio}*floor(abs{ratio}))"
+    return f"({left} {part.operator} {right})"
+
+
+def _call(part: Call) -> str:
+    name, arguments = part.function, part.arguments
+    texts = [_text(argument) for argument in arguments]
+    if name in _SAME or name in _NAMED:
+        return f"{_NAMED.get(name, name)}({','.join(texts)})"
+    if name in ("pow", "pows", "power"):
+        return _raised(name, arguments[0], arguments[1])
+    x = texts[0]
+    if name == "sqrt":
+        return f"sqrt(max({x},0.0))" if _steady(arguments[0]) else f"sqrt(max({x},{_SMALL}))"
+    if name in ("ln", "log10"):
+        return f"{'log' if name == 'log10' else 'ln'}{'10' if name == 'log10' else ''}(max({x},1e-300))"
+    if name in ("asin", "acos"):
+        return f"{name}(min(max({x},-1.0),1.0))"
+    if name == "limit":
+        return f"min(max({x},{texts[1]}),{texts[2]})"
+    if name == "table":
+        return _table(x, arguments[1:])
+    assert name == "atan2"
+    return _angle(texts[0], texts[1])
+
+
+def _steady(part: Expression) -> bool:
+    return isinstance(part, Number)
+
+
+def _raised(name: str, base: Expression, power: Expression) -> str:
+    x, y = _text(base), _text(power)
+    number = power.value if isinstance(power, Number) else None
+    size = f"abs({x})" if number is not None and number >= 1 else f"max(abs({x}),{_SMALL})"
+    raised = f"pow({size},{y})"
+    if name == "pow":
+        return raised
+    if name == "pows":
+        return f"(sgn({x})*{raised})"
+    if isinstance(base, Number) and base.value > 0:
+        return f"pow({x},{y})"
+    if number is not None and number == int(number):
+        return raised if number % 2 == 0 else f"(sgn({x})*{raised})"
+    if number is not None:
+        return f"({x} > 0 ? {raised} : 0)"
+    odd = f"(floor({y}/2)*2 == {y} ? {raised} : (-{raised}))"
+    return f"({x} >= 0 ? {raised} : (floor({y}) == {y} ? {odd} : 0))"
+
+
+def _table(x: str, points: tuple[Expression, ...]) -> str:
+    """ngspice wants plain numbers with rising x; one point, or two at one x, it refuses."""
+    numbers = [point.value if isinstance(point, Number) else None for point in points]
+    if any(number is None for number in numbers):
+        return _written_out(x, points)
+    pairs: list[tuple[float, float]] = []
+    for at in range(0, len(numbers), 2):
+        first, second = numbers[at], numbers[at + 1]
+        assert first is not None
+        assert second is not None
+        if pairs and first <= pairs[-1][0]:
+            step = max(abs(first), 1e-6) * 1e-9
+            first = pairs[-1][0] + step
+        pairs.append((first, second))
+    if len(pairs) == 1:
+        return repr(float(pairs[0][1]))
+    told = ",".join(f"{a!r},{b!r}" for a, b in pairs)
+    return f"pwl({x},{told})"
+
+
+def _written_out(x: str, points: tuple[Expression, ...]) -> str:
+    """A table whose points are no plain numbers, as a chain of choices."""
+    xs, ys = [_text(point) for point in points[0::2]], [_text(point) for point in points[1::2]]
+    found = ys[-1]
+    for k in range(len(xs) - 1, 0, -1):
+        slope = f"({ys[k]} - {ys[k - 1]})*({x} - {xs[k - 1]})/({xs[k]} - {xs[k - 1]})"
+        found = f"({x} <= {xs[k]} ? ({ys[k - 1]} + {slope}) : {found})"
+    return f"({x} <= {xs[0]} ? {ys[0]} : {found})"
+
+
+def _angle(y: str, x: str) -> str:
+    """The angle of a point by its half: 2 atan(y / (r + x)), and pi on the negative x axis."""
+    radius = f"sqrt(max({x}*{x} + {y}*{y},{_SMALL}))"
+    half = f"2*atan({y}/max({radius} + {x},{_SMALL}))"
+    return f"(({y} == 0 && {x} < 0) ? 3.141592653589793 : {half})"

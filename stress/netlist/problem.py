@@ -1,0 +1,92 @@
+"""What goes wrong or is worth telling while a netlist is read, each thing once."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+from stress.finding import Finding, Severity
+from stress.netlist.flat import Ignored
+from stress.text.span import SourceError, SourceErrors, Span
+
+MOST_ERRORS = 100
+
+
+class Obstacle(SourceError):
+    """The text is right, but what it describes cannot be simulated as it stands."""
+
+
+class Limit(SourceErrors):
+    """A bound was passed: reading stops here."""
+
+
+@dataclass(slots=True)
+class Problems:
+    """Collects; nothing is told twice for one place."""
+
+    errors: list[SourceError] = field(default_factory=list)
+    obstacles: list[SourceError] = field(default_factory=list)
+    notices: list[Finding] = field(default_factory=list)
+    ignored: list[Ignored] = field(default_factory=list)
+    _told: set[tuple[object, ...]] = field(default_factory=set)
+
+    def error(self, error: SourceError) -> None:
+        """Keep an error; an `Obstacle` only prevents the simulation.
+
+        Raises:
+            Limit: There are too many to go on.
+        """
+        if not self._new(error.message, error.span):
+            return
+        if isinstance(error, Obstacle):
+            self.obstacles.append(error)
+            return
+        self.errors.append(error)
+        if len(self.errors) >= MOST_ERRORS:
+            self.stop(f"more than {MOST_ERRORS} errors; the rest is not listed", error.span)
+
+    def sorted_errors(self) -> list[SourceError]:
+        """Return the errors in the order of the text, file by file."""
+        files = list(dict.fromkeys(error.span.file for error in self.errors))
+        return sorted(
+            self.errors,
+            key=lambda error: (files.index(error.span.file), error.span.line, error.span.column),
+        )
+
+    def stop(self, message: str, span: Span, hint: str = "") -> None:
+        """Give up on the whole netlist.
+
+        Raises:
+            Limit: Always.
+        """
+        raise Limit([*self.sorted_errors(), SourceError(message, span, hint)])
+
+    def obstacle(self, message: str, span: Span, hint: str) -> None:
+        """Keep what prevents a simulation."""
+        if self._new(message, span):
+            self.obstacles.append(Obstacle(message, span, hint))
+
+    def notice(self, rule: str, where: str, text: str, span: Span, action: str = "") -> None:
+        """Keep how something unusual was read."""
+        if self._new(rule, span, text if rule == "trap" else ""):
+            self.notices.append(
+                Finding(
+                    severity=Severity.NOTE,
+                    where=where,
+                    text=text,
+                    action=action,
+                    rule=rule,
+                    span=span,
+                )
+            )
+
+    def ignore(self, what: str, span: Span) -> None:
+        """Keep that a card was set aside."""
+        if self._new("ignored", span):
+            self.ignored.append(Ignored(what, span))
+
+    def _new(self, what: str, span: Span, more: str = "") -> bool:
+        key = (what, more, span.file, span.line, span.column)
+        if key in self._told:
+            return False
+        self._told.add(key)
+        return True

@@ -1,0 +1,153 @@
+"""Which card stands where: one quick pass over the lines that parses nothing but the first word.
+
+A large library costs no more than this pass: the body of a subcircuit is scanned when the
+subcircuit is used, a model is read when an element asks for it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+
+from stress.netlist.card import Card, gather
+from stress.netlist.source import Source
+
+_DEFINES = (".subckt", ".macro", ".model", ".func", ".param", ".params", ".parameter")
+
+
+@dataclass(frozen=True, slots=True)
+class Lines:
+    """A stretch of a file: lines `first` up to, not including, `after`."""
+
+    source: Source
+    first: int
+    after: int
+
+
+@dataclass(frozen=True, slots=True)
+class Definition:
+    """Where a subcircuit is written: its header line and the stretch of its body."""
+
+    source: Source
+    header: int
+    body: Lines
+
+
+@dataclass(frozen=True, slots=True)
+class Entry:
+    """One card of a stretch, told by its first word; `definition` for a subcircuit."""
+
+    source: Source
+    index: int
+    word: str  # lower case with its dot for a control card, else ""
+    definition: Definition | None = None
+
+    def card(self, *, dollar: bool) -> Card:
+        """Return the card; SourceError where it is too long."""
+        return gather(self.source, self.index, dollar=dollar)
+
+
+@dataclass(slots=True)
+class Skipped:
+    """A stretch that was set aside, such as a `.control` block."""
+
+    what: str
+    source: Source
+    index: int
+
+
+@dataclass(slots=True)
+class Scan:
+    """What a stretch holds, in its order."""
+
+    entries: list[Entry] = field(default_factory=list)
+    skipped: list[Skipped] = field(default_factory=list)
+    unclosed: list[tuple[str, Source, int]] = field(default_factory=list)
+
+
+def scan(lines: Lines) -> Scan:
+    """Return the cards of a stretch; linear, about one look at each line."""
+    found = Scan()
+    source, text = lines.source, lines.source.lines
+    append = found.entries.append
+    index, after = lines.first, lines.after
+    joined = False
+    while index < after:
+        line = text[index]
+        mark = line[:1]
+        if mark in " \t\x1a\x0c\xa0":
+            line = line.strip("\x1a\x0c\xa0 \t")
+            mark = line[:1]
+        if joined or not mark or mark in "*+;#" or (mark == "/" and line[:2] == "//"):
+            joined = (joined or mark == "+") and line.rstrip()[-1:] == "\\"
+            index += 1
+            continue
+        joined = line[-1:] == "\\" or line.rstrip()[-1:] == "\\"
+        if mark == ".":
+            word = line.split(None, 1)[0].lower()
+            if word == ".subckt" or word == ".macro":
+                end = _end(text, index, after)
+                if end is None:
+                    found.unclosed.append((word, source, index))
+                    end = after
+                body = Lines(source, index + 1, end)
+                append(Entry(source, index, word, Definition(source, index, body)))
+                index, joined = end + 1, False
+                continue
+            if word == ".control":
+                end = index + 1
+                while end < after and text[end].lstrip()[:5].lower() != ".endc":
+                    end += 1
+                found.skipped.append(Skipped(".control block", source, index))
+                index, joined = end + 1, False
+                continue
+            append(Entry(source, index, word))
+        else:
+            append(Entry(source, index, ""))
+        index += 1
+    return found
+
+
+def _end(text: list[str], index: int, after: int) -> int | None:
+    """Return the line of the `.ends` that closes the subcircuit opened at `index`."""
+    depth = 1
+    for at in range(index + 1, after):
+        line = text[at]
+        if "." not in line[:1]:
+            if line[:1] not in (" ", "\t"):
+                continue
+            line = line.lstrip()
+            if line[:1] != ".":
+                continue
+        low = line[:7].lower()
+        if low.startswith((".subckt", ".macro")):
+            depth += 1
+        elif low.startswith(".ends") or low.startswith(".eom"):
+            depth -= 1
+            if depth == 0:
+                return at
+    return None
+
+
+def section(source: Source, name: str) -> Lines | None:
+    """Return the stretch of `.lib NAME` up to its `.endl`, or None."""
+    begin = None
+    for index, line in enumerate(source.lines):
+        low = line.lstrip()[:5].lower()
+        if begin is None:
+            if low.startswith(".lib"):
+                words = line.split()
+                if len(words) == 2 and words[1].strip("'\"").lower() == name.lower():
+                    begin = index + 1
+        elif low == ".endl":
+            return Lines(source, begin, index)
+    return None
+
+
+def sections(source: Source) -> Iterator[str]:
+    """Yield the names of the sections that a library file has."""
+    for line in source.lines:
+        if line.lstrip()[:4].lower() == ".lib":
+            words = line.split()
+            if len(words) == 2:
+                yield words[1]
