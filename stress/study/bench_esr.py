@@ -1,11 +1,12 @@
 """The largest ESR a position bears: by heat, by age and by what it is there for.
 
-Three limits, the smallest governs:
+The smallest of these governs:
 
 - heat: loss at the real ripple no more than that of the rated ripple in a new part;
 - age: three times the ESR of a new part counts as worn out where ripple flows (Wikipedia,
   "Aluminum electrolytic capacitor", and Vishay 056/057, doc 28340 table 5 [read]); a part
   that carries next to no ripple may be far worse;
+- loss: five times that of a new part where it is no electrolytic (common practice);
 - purpose: what is left of a bypass, at most a tenth of the resistance it bypasses
   (common practice).
 """
@@ -22,6 +23,8 @@ from stress.text.figure import figure
 from stress.text.unit import unit
 
 WORN_TIMES = 3.0
+LOSSY_TIMES = 5.0  # for parts that are no electrolytics
+LOSS_HZ = 1000.0  # where their loss factor is stated and measured
 SHARE_OF_BYPASSED = 0.1
 TESTER_HZ = 100e3
 COOL_K = 0.1  # less self-heating than this and ripple is no reason
@@ -54,34 +57,21 @@ class EsrLimit:
 def largest(position: Position, *, working: Working, circuit: Circuit) -> EsrLimit | None:
     """Return the largest ESR of a position, or None where its capacitance is not known.
 
-    It belongs to the strongest ripple frequency under the conditions that last, or to 120 Hz
-    (1 kHz for parts that are no electrolytics) where no ripple flows.
+    It belongs to the strongest ripple frequency under the conditions that last; to 120 Hz for
+    an electrolytic without ripple, and to 1 kHz for parts that are none.
     """
     if not position.value_F:
         return None
     worst = _most_ripple(position, working)
-    usual = 120.0 if position.style.electrolytic else 1000.0
-    hertz = worst.ripple_Hz if worst and worst.ripple_Hz else usual
+    if position.style.electrolytic:
+        hertz = worst.ripple_Hz if worst and worst.ripple_Hz else 120.0
+    else:
+        hertz = LOSS_HZ
     new = position.style.esr_ohm(position.value_F, rated_V=position.rated_V, frequency_Hz=hertz)
-    limits: list[tuple[float, str]] = []
-    if worst is not None and worst.ripple_rms_A > LEAST_RIPPLE_A:
-        limits.append(_by_heat(position, worst, new_ohm=new))
-    warm = worst is not None and _rise_K(position, worst, times=WORN_TIMES) > COOL_K
-    if position.style.electrolytic and (warm or (position.role in FILTERS and _ripples(worst))):
-        limits.append(
-            (WORN_TIMES * new, f"three times a new part's {figure(new, 'ohm')} counts as worn out")
-        )
-    bypassed = bypassed_ohm(position, circuit=circuit)
-    if bypassed is not None and position.role not in FILTERS:
-        limits.append(
-            (
-                max(SHARE_OF_BYPASSED * bypassed, WORN_TIMES * new),
-                f"a tenth of the {figure(bypassed, 'ohm')} that it bypasses",
-            )
-        )
+    limits = _limits(position, worst, new_ohm=new, circuit=circuit)
     if not limits:
         reactance = 1.0 / (2.0 * pi * hertz * position.value_F)
-        limits.append((reactance, "its reactance: with more than that it is no capacitor there"))
+        limits = [(reactance, "its reactance: with more than that it is no capacitor there")]
     ohm, reason = min(limits)
     return EsrLimit(
         ohm=ohm,
@@ -90,6 +80,27 @@ def largest(position: Position, *, working: Working, circuit: Circuit) -> EsrLim
         new_ohm=new,
         reason=f"{reason}, at {figure(hertz, 'Hz')}",
     )
+
+
+def _limits(
+    position: Position, worst: PositionStress | None, *, new_ohm: float, circuit: Circuit
+) -> list[tuple[float, str]]:
+    limits: list[tuple[float, str]] = []
+    rippled = worst is not None and worst.ripple_rms_A > LEAST_RIPPLE_A
+    if worst is not None and rippled:
+        limits.append(_by_heat(position, worst, new_ohm=new_ohm))
+    if not position.style.electrolytic:
+        why = f"{LOSSY_TIMES:g} times a new part's {figure(new_ohm, 'ohm')} means moisture or a bad end"
+        return [*limits, (LOSSY_TIMES * new_ohm, why)]
+    warm = worst is not None and _rise_K(position, worst, times=WORN_TIMES) > COOL_K
+    if warm or (position.role in FILTERS and rippled):
+        why = f"three times a new part's {figure(new_ohm, 'ohm')} counts as worn out"
+        limits.append((WORN_TIMES * new_ohm, why))
+    bypassed = bypassed_ohm(position, circuit=circuit)
+    if bypassed is not None and position.role not in FILTERS:
+        why = f"a tenth of the {figure(bypassed, 'ohm')} that it bypasses"
+        limits.append((max(SHARE_OF_BYPASSED * bypassed, WORN_TIMES * new_ohm), why))
+    return limits
 
 
 def moved(ohm: float, *, position: Position, from_Hz: float, to_Hz: float) -> float:
@@ -132,10 +143,6 @@ def _most_ripple(position: Position, working: Working) -> PositionStress | None:
         if name in lasting
     ]
     return max(stresses, key=lambda stress: stress.ripple_rms_A, default=None)
-
-
-def _ripples(stress: PositionStress | None) -> bool:
-    return stress is not None and stress.ripple_rms_A > LEAST_RIPPLE_A
 
 
 def _rated_ripple_A(position: Position) -> float:

@@ -95,9 +95,12 @@ def loss_note(position: Position, *, fitted_F: float) -> str:
 
 
 def _as_it_is(found: Touch) -> str:
-    return (
+    told = (
         f"touch current at {figure(found.line_V, 'V')} and {figure(found.frequency_Hz, 'Hz')}: "
         f"{figure(found.reading_A, 'A')} through the body network ({found.body}) with what is "
         f"drawn there, {figure(found.others_A, 'A')} of it by other parts; 2πfCV of this one is "
         f"{figure(found.plain_A, 'A')}"
     )
+    if found.earths:
+        told += f"; {', '.join(found.earths)} taken for the earth of the service, not counted"
+    return told

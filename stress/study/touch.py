@@ -30,6 +30,9 @@ from stress.text.unit import unit
 LIMIT_A = 0.5e-3
 LIMIT_SOURCE = "0.5 mA: ANSI C101.1 portable, IEC 62368-1 table 4 ES1 [memory H]"
 VALUE_TOLERANCE = 0.20  # code M, the usual one of class Y parts
+# A resistor below this from a pole of the line to ground is the earth of the service, which the
+# equipment does not hold: nobody builds in what would pass a tenth of an ampere to a person.
+EARTH_OHM = 1000.0
 _LEAST_SIEMENS = 1e-12  # ties down what nothing else does
 
 
@@ -81,6 +84,7 @@ class Touch:
         body: The network that read more.
         value_max_F: The largest capacitance here that keeps the reading under the limit, or
             0 where the others alone pass it.
+        earths: Resistors that were taken for the earth of the service and not counted.
     """
 
     line_V: float = field(metadata=unit("V"))
@@ -90,6 +94,7 @@ class Touch:
     others_A: float = field(metadata=unit("A"))
     body: str
     value_max_F: float = field(metadata=unit("F"))
+    earths: tuple[str, ...] = ()
 
 
 def safety_class(
@@ -167,10 +172,12 @@ def touch(position: Position, *, circuit: Circuit, limit_A: float = LIMIT_A) -> 
     if position.role is Role.LINE_CHASSIS:
         reach |= {node for node in position.nodes if node not in live}
     live -= reach
+    earths = service_earths(circuit)
+    counted = [element for element in circuit.netlist.elements if element.name not in earths]
 
     def reading(value_F: float) -> tuple[float, str]:
         admittance = _between(
-            circuit.netlist.elements,
+            counted,
             live=live,
             reach=reach,
             frequency_Hz=hertz,
@@ -189,6 +196,27 @@ def touch(position: Position, *, circuit: Circuit, limit_A: float = LIMIT_A) -> 
         others_A=others,
         body=body,
         value_max_F=_largest(lambda value_F: reading(value_F)[0], limit_A),
+        earths=earths,
+    )
+
+
+def service_earths(circuit: Circuit) -> tuple[str, ...]:
+    """Return the small resistors from a pole of the line to ground, by name."""
+    sources = {name.lower() for name in circuit.line.sources}
+    poles = {
+        node
+        for element in circuit.netlist.elements
+        if element.name.lower() in sources
+        for node in element.nodes[:2]
+    }
+    return tuple(
+        element.name
+        for element in circuit.netlist.elements
+        if element.letter == "R"
+        and "0" in element.nodes
+        and set(element.nodes) & (poles - {"0"})
+        and element.value is not None
+        and element.value < EARTH_OHM
     )
 
 

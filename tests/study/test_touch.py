@@ -101,6 +101,16 @@ def test_resistors_alone_may_pass_the_limit(circuit_of):
     assert found.value_max_F == 0.0
 
 
+def test_the_earth_of_the_service_is_no_path_to_a_person(circuit_of):
+    lines = (LINE, "C1 l1 0 1e-8", "Rearth l2 0 10")
+    circuit = circuit_of(*lines, live=("l1", "l2"), touch=("0",))
+    found = touch.touch(circuit.position("C1"), circuit=circuit)
+    assert found.earths == ("Rearth",)
+    assert found.reading_A == pytest.approx(
+        closed_form(1e-8, ohm=None, line_V=126.0, hertz=60.0), rel=1e-6
+    )
+
+
 def working(position, *, dc_V, peak_V):
     stress = PositionStress(
         case="nominal",
