@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from math import inf
+from math import inf, sqrt
 
 from stress.parts.citation import Citation
 from stress.text.unit import unit
@@ -187,6 +187,32 @@ class Fate:
     share: Mapping[str, float]
     years: float = 50.0
     source: Citation
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LineClass:
+    """A class of line capacitor (IEC 60384-14).
+
+    Attributes:
+        name: "X1", "X2", "Y1" …
+        rated_V: Largest rms rating of the class, and `peak_V` the peak in service.
+        impulse_V: Impulse before endurance, up to `impulse_F`; above, divided by the root of
+            the capacitance over it.
+    """
+
+    name: str
+    rated_V: float | None = field(default=None, metadata=unit("V"))
+    peak_V: float | None = field(default=None, metadata=unit("V"))
+    impulse_V: float | None = field(default=None, metadata=unit("V"))
+    impulse_F: float = field(default=inf, metadata=unit("F"))
+    proof_V: float | None = field(default=None, metadata=unit("V"))
+    source: Citation
+
+    def impulse(self, value_F: float) -> float | None:
+        """Return the impulse that a capacitance of this class is tested with, in volt."""
+        if self.impulse_V is None:
+            return None
+        return self.impulse_V / sqrt(max(value_F / self.impulse_F, 1.0))
 
 
 def step(steps: tuple[float, ...], value: float) -> int:

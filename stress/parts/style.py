@@ -12,6 +12,7 @@ from stress.parts.law import (
     Hot,
     Insulation,
     Leakage,
+    LineClass,
     Loss,
     Quoted,
     Reverse,
@@ -43,7 +44,7 @@ class Style:
         surge: None where the style has no surge rating.
         reverse: Polar styles only.
         ripples: Multipliers against frequency, by rated voltage; empty where nobody states any.
-        wear: Electrolytics only.
+        wear: Electrolytics only; when a part counts as worn.
         absorption: Share of the voltage that comes back after a discharge.
         tolerance: Usual tolerance of parts of the period.
         new_tolerance: Usual tolerance of a part bought today.
@@ -51,7 +52,9 @@ class Style:
         bias: Share of the capacitance left at the rated voltage, worst and usual.
         fate: How it ages and ends.
         highest_degC: Upper category temperature, in `highest_degC.value`.
-        figures: Further numbers by name, the unit at the end of the name.
+        figures: Further numbers by name, the unit at the end of the name: ac_share (rms over dc
+            rating at line frequency), slope_V_per_s (of one part that was looked up).
+        classes: Classes of line capacitors.
         replacement: The style that is fitted instead.
     """
 
@@ -75,6 +78,7 @@ class Style:
     fate: Fate
     highest_degC: Quoted = field(metadata=unit("degC"))
     figures: Mapping[str, Quoted] = NOTHING
+    classes: tuple[LineClass, ...] = ()
     replacement: str = ""
 
     @property

@@ -22,6 +22,8 @@ from stress.parts.toml_record import (
 from stress.parts.toml_source import Path
 
 FAULTS = ("leaky", "short", "open", "dried", "reversed")
+
+
 # The unit that the name of a figure ends with; a plain ratio otherwise.
 _ENDINGS = {"_V_per_s": "V/s", "_V": "V", "_A": "A", "_K": "K", "_degC": "degC", "_s": "s"}
 
@@ -117,6 +119,15 @@ def style_keys(cite: Read) -> Keys:
         "share": ("share", mapped(share, FAULTS)),
         "years": ("years", plain),
     }
+    line_class: Keys = {
+        **source,
+        "name": ("name", text),
+        "rated": ("rated_V", amount("V")),
+        "peak": ("peak_V", amount("V")),
+        "impulse": ("impulse_V", amount("V")),
+        "impulse_up_to": ("impulse_F", amount("F")),
+        "proof": ("proof_V", amount("V")),
+    }
     steps: Keys = {**source, "rated": volts}
     degrees: Keys = {**source, "value": ("value", amount("degC"))}
     return {
@@ -140,6 +151,7 @@ def style_keys(cite: Read) -> Keys:
         "fate": ("fate", nested(law.Fate, fate)),
         "highest": ("highest_degC", nested(law.Quoted, degrees)),
         "figures": ("figures", _figures(cite)),
+        "classes": ("classes", several(nested(law.LineClass, line_class))),
     }
 
 
