@@ -174,8 +174,10 @@ def unit_lines(entry: TypeEntry, number: int, form: str, pins, recipe) -> tuple[
     """Return the numbers of one unit as TOML, and how far off they are."""
     if form == "rectifier":
         return [f"K = {entry.drop_A / entry.drop_V**1.5:.5g}"], {}
-    if form == "arc":  # 1 V of the drop belongs to the current it is stated at
-        return [f"VARC = {entry.drop_V - 1.0}", "WARC = 0.3", f"RARC = {1 / entry.drop_A:.4g}"], {}
+    if form == "arc":  # 0.4 V of the drop grows with the current; width 0.3 V for the solver
+        start_V = entry.drop_V - 0.3 * np.log(np.expm1(0.4 / 0.3))
+        resistance = f"RARC = {0.4 / entry.drop_A:.4g}"
+        return [f"VARC = {start_V:.5g}", "WARC = 0.3", resistance], {}
     if form == "diode":  # 2 mA at 10 V for those inside amplifiers: from memory, to be confirmed
         k = entry.drop_A / entry.drop_V**1.5 if entry.drop_V else 2e-3 / 10**1.5
         return [f"K = {k:.4g}", "CD = 2e-12"], {}
