@@ -64,17 +64,16 @@ def line_part(position: Position, *, safety_class: str, style: Style, circuit: C
         return LinePart(ac_V=rated_V, notes=tuple(notes), rules=(Y_RULE,))
     notes.append(_as_it_is(found))
     largest = found.value_max_F / (1.0 + VALUE_TOLERANCE)
-    if largest <= 0.0:
+    if found.fixed_A >= LIMIT_A:
+        which = ", ".join(found.resistors) or "what else joins them"
         notes.append(
-            f"the rest from the line to what can be touched passes {figure(found.others_A, 'A')} "
-            f"already, more than {figure(LIMIT_A, 'A')}: it must be mended first, whatever is "
-            "fitted here"
+            f"{which} alone passes {figure(found.fixed_A, 'A')}, more than {figure(LIMIT_A, 'A')}: "
+            "raise it first; the value here counts on that"
         )
-    else:
-        notes.append(
-            f"up to {figure(largest, 'F')} (±{VALUE_TOLERANCE:.0%}) keeps it below "
-            f"{figure(LIMIT_A, 'A')}"
-        )
+    notes.append(
+        f"up to {figure(largest, 'F')} (±{VALUE_TOLERANCE:.0%}) keeps it below "
+        f"{figure(LIMIT_A, 'A')}, shared with the other parts of class Y"
+    )
     return LinePart(
         ac_V=rated_V,
         value_max_F=largest,

@@ -4,27 +4,21 @@ The current is computed through a network that stands for the body, with everyth
 the line and what can be touched counted, at full line voltage: that is the worse plug
 polarity with the power switch open, where the capacitors of both sides of the line add up.
 
-Networks and limits:
-
-- 1500 Ω ∥ 0.15 µF, 0.75 V across it read as 0.5 mA; 0.5 mA for portable, 0.75 mA for
-  stationary equipment: ANSI C101.1 [memory H];
-- 500 Ω in series with 1500 Ω ∥ 0.22 µF, the voltage across the 500 Ω weighted by
-  10 kΩ and 0.022 µF: IEC 60990, perception and reaction [memory H]; 0.5 mA rms as ES1 of
-  IEC 62368-1, table 4 [memory H];
-- classes X and Y: IEC 60384-14 [read second-hand].
+Limits: 0.5 mA for portable, 0.75 mA for stationary equipment, ANSI C101.1 [memory H]; 0.5 mA
+rms as ES1, IEC 62368-1 table 4 [memory H]. Classes X and Y: IEC 60384-14 [read second-hand].
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
 from math import pi, sqrt
-
-import numpy as np
 
 from stress.circuit.circuit import Circuit, Position, Role
 from stress.netlist.flat import Element
 from stress.study.result import Working
+from stress.study.touch_network import admittance, plain_A, read_A
+from stress.text.figure import figure
 from stress.text.unit import unit
 
 LIMIT_A = 0.5e-3
@@ -33,43 +27,7 @@ VALUE_TOLERANCE = 0.20  # code M, the usual one of class Y parts
 # A resistor below this from a pole of the line to ground is the earth of the service, which the
 # equipment does not hold: nobody builds in what would pass a tenth of an ampere to a person.
 EARTH_OHM = 1000.0
-_LEAST_SIEMENS = 1e-12  # ties down what nothing else does
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Body:
-    """A network that stands for a person, and how its voltage is read as a current."""
-
-    name: str
-    series_ohm: float = field(metadata=unit("ohm"))  # carries the current that is read; 0: none
-    shunted_ohm: float = field(metadata=unit("ohm"))
-    shunt_F: float = field(metadata=unit("F"))
-    filter_s: float = field(default=0.0, metadata=unit("s"))
-
-    def impedance_ohm(self, frequency_Hz: float) -> complex:
-        """Return what a source sees."""
-        w = 2.0 * pi * frequency_Hz
-        return self.series_ohm + self.shunted_ohm / (1 + 1j * w * self.shunted_ohm * self.shunt_F)
-
-    def reading(self, frequency_Hz: float) -> float:
-        """Return what is read over what flows."""
-        w = 2.0 * pi * frequency_Hz
-        if self.series_ohm:
-            return 1.0 / abs(1 + 1j * w * self.filter_s)
-        return abs(self.impedance_ohm(frequency_Hz)) / self.shunted_ohm
-
-
-ANSI = Body(
-    name="ANSI C101.1, 1500 Ω ∥ 0.15 µF", series_ohm=0.0, shunted_ohm=1500.0, shunt_F=0.15e-6
-)
-IEC = Body(
-    name="IEC 60990, perception and reaction",
-    series_ohm=500.0,
-    shunted_ohm=1500.0,
-    shunt_F=0.22e-6,
-    filter_s=10e3 * 0.022e-6,
-)
-BODIES = (ANSI, IEC)
+NO_PATH_OHM = 1e8  # more passes no current worth naming
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -79,11 +37,14 @@ class Touch:
     Attributes:
         line_V, frequency_Hz: What it was computed at.
         plain_A: 2πfCV of this position alone.
-        reading_A: Through the worse body network, everything in parallel counted.
+        reading_A: Through the worse body network, everything as it is counted.
         others_A: The same without this position.
+        fixed_A: The same without any position of class Y: what resistors and the rest pass.
         body: The network that read more.
-        value_max_F: The largest capacitance here that keeps the reading under the limit, or
-            0 where the others alone pass it.
+        value_max_F: The largest capacitance here that keeps the reading under the limit. All
+            positions of class Y share what the rest leaves: none is cut below another that is
+            larger. Where the rest alone passes the limit, what they may have without it.
+        resistors: Those straight from the line to what can be touched.
         earths: Resistors that were taken for the earth of the service and not counted.
     """
 
@@ -92,8 +53,10 @@ class Touch:
     plain_A: float = field(metadata=unit("A"))
     reading_A: float = field(metadata=unit("A"))
     others_A: float = field(metadata=unit("A"))
+    fixed_A: float = field(metadata=unit("A"))
     body: str
     value_max_F: float = field(metadata=unit("F"))
+    resistors: tuple[str, ...] = ()
     earths: tuple[str, ...] = ()
 
 
@@ -138,24 +101,6 @@ def line_frequency_Hz(circuit: Circuit) -> float:
     return 60.0
 
 
-def plain_A(value_F: float, *, line_V: float, frequency_Hz: float) -> float:
-    """Return 2πfCV, in ampere rms."""
-    return 2.0 * pi * frequency_Hz * value_F * line_V
-
-
-def read_A(source_ohm: complex, *, line_V: float, frequency_Hz: float) -> tuple[float, str]:
-    """Return the worst reading of the body networks behind an impedance, and which it is."""
-    return max(
-        (
-            line_V
-            / abs(source_ohm + body.impedance_ohm(frequency_Hz))
-            * body.reading(frequency_Hz),
-            body.name,
-        )
-        for body in BODIES
-    )
-
-
 def touch(position: Position, *, circuit: Circuit, limit_A: float = LIMIT_A) -> Touch | None:
     """Return the touch current at high line, or None where no line is known.
 
@@ -174,29 +119,55 @@ def touch(position: Position, *, circuit: Circuit, limit_A: float = LIMIT_A) -> 
     live -= reach
     earths = service_earths(circuit)
     counted = [element for element in circuit.netlist.elements if element.name not in earths]
+    group = {
+        other.name.lower(): other.value_F or 0.0
+        for other in circuit.positions
+        if other.name == position.name or safety_class(other, circuit=circuit) == "Y"
+    }
 
-    def reading(value_F: float) -> tuple[float, str]:
-        admittance = _between(
-            counted,
-            live=live,
-            reach=reach,
-            frequency_Hz=hertz,
-            changed={position.name.lower(): value_F},
-        )
-        ohm = 1.0 / admittance if admittance else complex(1e15)
-        return read_A(ohm, line_V=line_V, frequency_Hz=hertz)
+    def reading(values_F: Mapping[str, float], *, of: Sequence[Element] = counted) -> float:
+        siemens = admittance(of, live=live, reach=reach, frequency_Hz=hertz, changed=values_F)
+        return read_A(siemens, line_V=line_V, frequency_Hz=hertz)[0]
 
-    now, body = reading(position.value_F)
-    others, _ = reading(0.0)
+    own = position.name.lower()
+    nothing = dict.fromkeys(group, 0.0)
+    fixed_A = reading(nothing)
+    shared = counted if fixed_A < limit_A else [e for e in counted if e.name.lower() in group]
+    as_is = admittance(counted, live=live, reach=reach, frequency_Hz=hertz, changed=group)
+    now_A, body = read_A(as_is, line_V=line_V, frequency_Hz=hertz)
     return Touch(
         line_V=line_V,
         frequency_Hz=hertz,
         plain_A=plain_A(position.value_F, line_V=line_V, frequency_Hz=hertz),
-        reading_A=now,
-        others_A=others,
+        reading_A=now_A,
+        others_A=reading({**group, own: 0.0}),
+        fixed_A=fixed_A,
         body=body,
-        value_max_F=_largest(lambda value_F: reading(value_F)[0], limit_A),
+        value_max_F=_largest(
+            lambda most_F: reading(
+                {
+                    name: most_F if name == own else min(value_F, most_F)
+                    for name, value_F in group.items()
+                },
+                of=shared,
+            ),
+            limit_A,
+        ),
+        resistors=_between_both(counted, live=live, reach=reach),
         earths=earths,
+    )
+
+
+def _between_both(
+    elements: Iterable[Element], *, live: Collection[str], reach: Collection[str]
+) -> tuple[str, ...]:
+    return tuple(
+        f"{element.name} ({figure(element.value or 0.0, 'ohm')})"
+        for element in elements
+        if element.letter == "R"
+        and any(node in live for node in element.nodes)
+        and any(node in reach for node in element.nodes)
+        and (element.value or 0.0) < NO_PATH_OHM
     )
 
 
@@ -244,62 +215,3 @@ def _largest(reading: Callable[[float], float], limit_A: float) -> float:
         middle = (low + high) / 2.0
         low, high = (middle, high) if reading(middle) <= limit_A else (low, middle)
     return low
-
-
-def _between(
-    elements: Iterable[Element],
-    *,
-    live: set[str],
-    reach: set[str],
-    frequency_Hz: float,
-    changed: dict[str, float],
-) -> complex:
-    """Return the admittance from the line to what can be touched, in siemens.
-
-    All line-connected nodes are one node, all that can be touched another; in between, the
-    resistors, capacitors and inductors by nodal analysis. Tubes and semiconductors do not
-    count: they are cold, and what they add is less than the tolerance of a capacitor.
-    """
-    w = 2.0 * pi * frequency_Hz
-    branches: list[tuple[str, str, complex]] = []
-    for element in elements:
-        if len(element.nodes) < 2:
-            continue
-        value = changed.get(element.name.lower(), element.value)
-        nodes = [
-            "line" if node in live else "touch" if node in reach else node
-            for node in element.nodes[:2]
-        ]
-        if nodes[0] == nodes[1] or value is None:
-            continue
-        if element.letter == "R" and value > 0.0:
-            branches.append((nodes[0], nodes[1], complex(1.0 / value)))
-        elif element.letter == "C":
-            branches.append((nodes[0], nodes[1], 1j * w * value))
-        elif element.letter == "L" and value > 0.0:
-            branches.append((nodes[0], nodes[1], 1.0 / (1j * w * value)))
-        elif element.letter == "V" and element.wave is None and not value:
-            branches.append((nodes[0], nodes[1], complex(1e6)))
-    order = sorted({node for first, second, _ in branches for node in (first, second)} - {"line"})
-    if "touch" not in order or not any("line" in branch[:2] for branch in branches):
-        return 0j
-    row = {node: number for number, node in enumerate(order)}
-    matrix = np.eye(len(order), dtype=np.complex128) * _LEAST_SIEMENS
-    driven = np.zeros(len(order), dtype=np.complex128)
-    for first, second, siemens in branches:
-        for node, other in ((first, second), (second, first)):
-            if node == "line":
-                continue
-            matrix[row[node], row[node]] += siemens
-            if other == "line":
-                driven[row[node]] += siemens
-            else:
-                matrix[row[node], row[other]] -= siemens
-    # With 1 V on the line and what can be touched held at 0 V, the current into it.
-    free = [number for number, node in enumerate(order) if node != "touch"]
-    held = row["touch"]
-    total = driven[held]
-    if free:
-        voltages = np.linalg.solve(matrix[np.ix_(free, free)], driven[free])
-        total = total - matrix[held, free] @ voltages
-    return complex(total)

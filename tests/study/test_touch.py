@@ -8,7 +8,7 @@ from math import pi, sqrt
 import pytest
 
 from stress.circuit.circuit import Line, Role
-from stress.study import touch
+from stress.study import touch, touch_network
 from stress.study.result import Condition, PositionStress, Working
 
 LINE = "V1 l1 l2 sin"
@@ -26,7 +26,7 @@ LINE = "V1 l1 l2 sin"
 )
 def test_plain_current(value_F, line_V, hertz, printed_mA):
     """2πfCV, worked by hand to three places."""
-    found = touch.plain_A(value_F, line_V=line_V, frequency_Hz=hertz)
+    found = touch_network.plain_A(value_F, line_V=line_V, frequency_Hz=hertz)
     assert found * 1e3 == pytest.approx(printed_mA, abs=0.0006)
 
 
@@ -67,7 +67,8 @@ def test_a_part_behind_another_counts_as_the_chain_it_is(circuit_of):
     found = touch.touch(circuit.position("C1"), circuit=circuit)
     chain = 1000 + 1 / (2j * pi * 60 * 2e-8)
     expected = max(
-        126.0 / abs(chain + body.impedance_ohm(60)) * body.reading(60) for body in touch.BODIES
+        126.0 / abs(chain + body.impedance_ohm(60)) * body.reading(60)
+        for body in touch_network.BODIES
     )
     assert found.reading_A == pytest.approx(expected, rel=1e-6)
 
@@ -89,16 +90,29 @@ def test_largest_capacitance(circuit_of, limit_mA, line_V, hertz, printed_nF):
     circuit = replace(circuit, netlist=netlist, line=line)
     found = touch.touch(circuit.position("C1"), circuit=circuit, limit_A=limit_mA * 1e-3)
     assert found.value_max_F * 1e9 == pytest.approx(printed_nF, rel=0.02)
-    assert touch.plain_A(found.value_max_F, line_V=line_V, frequency_Hz=hertz) == pytest.approx(
-        limit_mA * 1e-3, rel=0.02
-    )
+    assert touch_network.plain_A(
+        found.value_max_F, line_V=line_V, frequency_Hz=hertz
+    ) == pytest.approx(limit_mA * 1e-3, rel=0.02)
 
 
 def test_resistors_alone_may_pass_the_limit(circuit_of):
-    circuit = circuit_of(LINE, "C1 l1 0 1e-9", "R1 l2 0 1e5", live=("l1", "l2"), touch=("0",))
+    lines = (LINE, "C1 l1 0 1e-9", "R1 l2 0 1e5")
+    circuit = circuit_of(*lines, live=("l1", "l2"), touch=("0",))
     found = touch.touch(circuit.position("C1"), circuit=circuit)
-    assert found.others_A > touch.LIMIT_A
-    assert found.value_max_F == 0.0
+    assert found.fixed_A == pytest.approx(126.0 / 102e3, rel=2e-3)
+    assert found.resistors == ("R1 (100 kΩ)",)
+    # 126 V at 60 Hz: 0.5 mA are 10.5 nF, once the resistor is out of the way.
+    assert found.value_max_F == pytest.approx(10.5e-9, rel=0.01)
+
+
+def test_small_parts_keep_their_share(circuit_of):
+    """10.5 nF in all: 2 nF stay, and what was 0.2 µF has the rest."""
+    lines = (LINE, "C1 l1 0 2e-7", "C2 l1 ant 2e-9")
+    circuit = circuit_of(*lines, live=("l1", "l2"), touch=("0", "ant"))
+    large = touch.touch(circuit.position("C1"), circuit=circuit)
+    small = touch.touch(circuit.position("C2"), circuit=circuit)
+    assert large.value_max_F == pytest.approx(8.5e-9, rel=0.01)
+    assert small.value_max_F > 2e-9
 
 
 def test_the_earth_of_the_service_is_no_path_to_a_person(circuit_of):
@@ -185,6 +199,6 @@ Cw out 0 0.022u
     )
     volts = float(re.search(r"^0\s+\S+\s+(\S+)", ran.stdout, re.MULTILINE).group(1))
     ohm = 1 / (2j * pi * 60 * 4.7e-9 + 1 / 470e3)
-    reading = 126.0 / abs(ohm + touch.IEC.impedance_ohm(60)) * touch.IEC.reading(60)
+    reading = 126.0 / abs(ohm + touch_network.IEC.impedance_ohm(60)) * touch_network.IEC.reading(60)
     # 10 kΩ in series with 120 kΩ of reactance takes 500·10k/(120k)² = 3.5e-4 off the 500 Ω.
     assert reading == pytest.approx(volts / 500, rel=5e-4)
