@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import PurePath
 
 from stress.circuit import (
@@ -88,6 +88,10 @@ def survey(
             *_unrecognised(a),
         ),
         assumed=(*line.assumed, *a.sources.assumed, *a.touch.assumed, *a.envelopes),
+        decisions=(
+            *(f"{d.instance.name} ({d.instance.subcircuit}): {d.reason}" for d in a.split.devices),
+            *(f"{i.name} ({i.subcircuit}): {reason}" for i, reason in a.split.blocks),
+        ),
     )
     return circuit, tuple(errors)
 
@@ -108,6 +112,18 @@ def _unrecognised(a: Anatomy) -> list[Finding]:
         for d in a.split.devices
         if d.instance.name not in known and any(e.letter in "BG" for e in d.elements)
     ]
+
+
+def _in_signal(part: Part, graph: Graph, driven: drive.Drive, sheet: Sheet) -> Part:
+    """Return a tube without grids that no power drives as what it is: a detector, which is cold
+    while the others are."""
+    entry = sheet.tubes.get(part.name.lower())
+    stated = part.type or (entry is not None and entry.rectifier is not None)
+    if part.kind is not Kind.RECTIFIER or stated:
+        return part
+    if any(graph.at(node) in driven.nodes for node in part.pins.values()):
+        return part
+    return replace(part, kind=Kind.TUBE)
 
 
 def _ordered(parts: Sequence[Part]) -> tuple[Part, ...]:
@@ -162,6 +178,7 @@ def anatomy(netlist: Netlist, sheet: Sheet, *, types: Sequence[TypeEntry] = ()) 
         named=sheet.equipment.touchable,
     )
     others = component.others(netlist, sheet=sheet, inside=split.inside, types=types)
+    devices = tuple(_in_signal(part, graph, driven, sheet) for part in devices)
     parts = _ordered((*devices, *solid, *others))
     around = Surroundings(
         graph,

@@ -169,6 +169,7 @@ class Circuit:
         line_connected: Nodes with a conducting path to the line that no winding breaks.
         findings: What is visible without solving.
         assumed: Everything assumed, in words, for the report.
+        decisions: Which X was taken for one part and which for a block, and why, in words.
     """
 
     netlist: Netlist
@@ -186,6 +187,7 @@ class Circuit:
     line_connected: frozenset[str] = frozenset()
     findings: tuple[Finding, ...] = ()
     assumed: tuple[str, ...] = ()
+    decisions: tuple[str, ...] = ()
 
     def position(self, name: str) -> Position:
         """Return the position of that name; KeyError where there is none."""

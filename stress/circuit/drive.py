@@ -161,9 +161,12 @@ def _ends(graph: Graph, cores: Iterable[str]) -> set[str]:
 
 
 def _behind_copper(graph: Graph, ends: set[str]) -> set[str]:
-    return ends | {
-        e.other(n) for n in ends for e in graph.around(n) if e.letter == "R" and e.ohm <= SERIES_OHM
-    }
+    found = set(ends)
+    for node in ends:
+        for edge in graph.around(node):
+            if edge.letter == "R" and edge.ohm <= SERIES_OHM:
+                found.add(edge.other(node))
+    return found - {GROUND}
 
 
 def _tied(graph: Graph, node: str, *, least_F: float = HELD_F) -> bool:
@@ -253,10 +256,9 @@ def _returns(
         if hot:
             found |= chain - hot
     for plus, minus in poles:
-        if GROUND not in minus and plus & fed and not minus & fed:
-            found |= minus
-        if GROUND not in plus and minus & fed and not plus & fed:
-            found |= plus
+        for own, other in ((plus, minus), (minus, plus)):
+            if GROUND not in own and (other - {GROUND}) & fed and not own & fed:
+                found |= own
     return found - {GROUND}
 
 

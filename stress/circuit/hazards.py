@@ -159,9 +159,9 @@ def line_classes(s: Surroundings, positions: Sequence[Position], sheet: Sheet) -
         a, b = (s.graph.at(n) for n in p.nodes)
         bridge = bool(hot) and ((a in hot and b in safe) or (b in hot and a in safe))
         if p.role is Role.LINE_CHASSIS or bridge:
-            needed, why = "Y", "from a line-connected node to what can be touched"
+            needed, why = "Y", "between a line-connected node and what can be touched"
         elif p.role is Role.LINE_ACROSS:
-            needed, why = "X", "across the line"
+            needed, why = "X", "on the line all the time, often behind no fuse"
         else:
             continue
         if p.style_source == "sheet" and p.style.name.lower() in (
@@ -173,7 +173,7 @@ def line_classes(s: Surroundings, positions: Sequence[Position], sheet: Sheet) -
             Finding(
                 severity=Severity.REPLACE,
                 where=p.name,
-                text=f"{p.role_text}: {why}; only class {needed} may stand there",
+                text=f"{p.role_text}: {why}; only class {needed} (IEC 60384-14) may stand there",
                 action=f"fit class {needed}"
                 + ("" if p.style_source == "sheet" else ", unless it is one already"),
                 rule=f"class-{needed.lower()}",

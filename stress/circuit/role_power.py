@@ -59,6 +59,8 @@ def _to_case(s: Surroundings, e: Ends) -> Found:
         if case in s.touch.touchable and case != GROUND and here not in s.touch.touchable:
             if _is_antenna(case):
                 return Role.COUPLING, f"coupling, {case} to {_aerial_coil(s, here)}"
+            if s.is_joined(here, case):
+                continue
             if here == GROUND or here in s.supply.outputs:
                 return Role.LINE_CHASSIS, f"{s.words(here)} to {case}"
     for here, case in ((e.a, e.b), (e.b, e.a)):
@@ -81,24 +83,38 @@ def doubler(s: Surroundings, c: Edge, e: Ends) -> Found:
     for here, there in ((c.a, c.b), (c.b, c.a)):
         if there in pumped and here in driven:
             return Role.FLYING, f"doubler, {s.words(here)} to the rectifiers at {there}"
+        if (c.value or 0.0) >= HELD_F and there in _midpoints(s) and here in _midpoints(s)[there]:
+            return Role.FLYING, f"doubler half, {s.words(here)} to the midpoint {there}"
         if there in s.drive.returns and here in s.supply.outputs and (c.value or 0) >= HELD_F:
-            other = [o for o in s.supply.outputs.values() if o.sign * _sign(s, here) < 0]
-            if _is_midpoint(s, there):
-                return Role.FLYING, f"doubler half, {s.words(here)} to the midpoint {there}"
-            if not other:
-                return Role.RESERVOIR, f"reservoir, {s.words(here)} to the return {there}"
+            by = ", ".join(s.supply.outputs[here].by)
+            return (
+                Role.RESERVOIR,
+                f"reservoir, {s.words(here)} to the return {there}, fed by {by}",
+            )
     return None
 
 
-def _sign(s: Surroundings, node: str) -> int:
-    output = s.supply.outputs.get(node)
-    return output.sign if output else 0
+def _midpoints(s: Surroundings) -> dict[str, set[str]]:
+    """Return the nodes where the two halves of a full-wave doubler meet, with the far ends:
+    two rectifiers at one driven node lead to both ends of two large capacitors in series."""
+    found: dict[str, set[str]] = {}
+    for x in s.drive.nodes:
+        up = {j.cathode for j in s.graph.junctions if j.anode == x}
+        down = {j.anode for j in s.graph.junctions if j.cathode == x}
+        for plus in up - down:
+            for minus in down - up:
+                for middle in _held_to(s, plus) & _held_to(s, minus):
+                    if middle in s.drive.returns:
+                        found.setdefault(middle, set()).update((plus, minus))
+    return found
 
 
-def _is_midpoint(s: Surroundings, node: str) -> bool:
-    """Say whether two large capacitors meet at the return of a rectifier."""
-    large = [x for x in s.graph.around(node) if x.letter == "C" and (x.value or 0) >= HELD_F]
-    return len({x.other(node) for x in large}) > 1
+def _held_to(s: Surroundings, node: str) -> set[str]:
+    return {
+        x.other(node)
+        for x in s.graph.around(node)
+        if x.letter == "C" and (x.value or 0.0) >= HELD_F
+    }
 
 
 def snubber(s: Surroundings, c: Edge, e: Ends) -> Found:
@@ -217,7 +233,7 @@ def supply(s: Surroundings, c: Edge, e: Ends) -> Found:
         if any(x.name.lower() in s.gated for x in s.graph.around(node)) and not small:
             return Role.RESERVOIR, f"input reservoir of the converter, {where}"
         return Role.DECOUPLING, f"decoupling, {where}, across the source"
-    if _is_first(s, node) and feed.output.origin == "line":
+    if _is_first(s, c, node) and feed.output.origin == "line":
         if small:
             return Role.DECOUPLING, f"quiets the rectifier, {where}"
         by = ", ".join(feed.output.by) or "the bias resistor"
@@ -249,6 +265,9 @@ def _distribution(s: Surroundings, c: Edge, node: str, where: str, loads: frozen
     screens = [n.pin for n in s.near(node, "screen", ohm=10e3)]
     if loads and loads <= {"screen", "other"} and screens:
         return Role.SCREEN_BYPASS, f"screen bypass, {screens[0].text}"
+    near = loads or {n.pin.kind for n in s.near(node, ohm=1e6)}
+    if near and near <= {"input", "other"}:
+        return Role.DECOUPLING, f"decoupling of the bias, {where}"
     if feed.choke:
         return Role.SMOOTHING, f"smoothing behind the choke, {where}"
     if feed.since_ohm < DECOUPLING_OHM and (c.value or 0.0) >= HELD_F:
@@ -264,11 +283,12 @@ def _named(node: str, sign: int) -> str:
     return f"{'bias' if sign < 0 else 'supply'} {node}"
 
 
-def _is_first(s: Surroundings, node: str) -> bool:
+def _is_first(s: Surroundings, c: Edge, node: str) -> bool:
     """Say whether no large capacitor lies between an output and this node."""
     feed = s.supply.feeds[node]
     near = feed.ohm <= AFTER_RECTIFIER_OHM or feed.choke
-    return feed.stage == 0 and near and (node == feed.output.node or s.is_held(node))
+    large = (c.value or 0.0) >= HELD_F
+    return feed.stage == 0 and near and (node == feed.output.node or large)
 
 
 def _supply_and_return(s: Surroundings, e: Ends) -> tuple[str, str] | None:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from stress.circuit.circuit import Kind, Role
 from stress.circuit.graph import GROUND, Edge, Pin
 from stress.circuit.role_power import Found
-from stress.circuit.surroundings import RADIO_F, SIGNAL_OHM, Ends, Near, Surroundings
+from stress.circuit.surroundings import RADIO_F, SIGNAL_OHM, STOPPER_OHM, Ends, Near, Surroundings
 
 AVC_OHM = 220e3  # AVC lines are fed through more than this (common practice)
 RETURN_OHM = 47e3
@@ -24,6 +24,8 @@ def bypass(s: Surroundings, c: Edge, e: Ends) -> Found:
     if not pins and node in s.controls:
         return Role.FEEDBACK, f"compensates the loop, {node} to {s.words(quiet)}"
     if "common" in pins and not s.direct(node, "output"):
+        if _is_regulated(s, pins["common"]):
+            return Role.SMOOTHING, f"smoothing of the regulated supply {node}"
         return _at_cathode(s, pins["common"], quiet)
     if "output" in pins:
         return _at_plate(s, c, e, pins["output"], quiet)
@@ -36,6 +38,17 @@ def bypass(s: Surroundings, c: Edge, e: Ends) -> Found:
     if "other" in pins:
         return Role.DECOUPLING, f"radio-frequency bypass, {pins['other'].text}"
     return _behind_resistors(s, c, e, node, quiet)
+
+
+def _is_regulated(s: Surroundings, pin: Pin) -> bool:
+    """Say whether a part passes a supply on: its output on a rail, its input held still."""
+    part = s.graph.parts[pin.part]
+    at = {Pin(part.name, role).kind: s.graph.at(node) for role, node in part.pins.items()}
+    held = at.get("input", "")
+    clamped = any(j.cathode == held and not j.tube for j in s.graph.junctions)
+    rail = at.get("output", "")
+    fed = rail in s.supply.feeds and (s.is_held(rail) or rail in s.supply.outputs)
+    return fed and held != GROUND and (s.still(held) or clamped)
 
 
 def _at_cathode(s: Surroundings, pin: Pin, quiet: str) -> Found:
@@ -71,7 +84,10 @@ def _is_detector(s: Surroundings, c: Edge, node: str) -> bool:
     or behind a resistor of its load."""
     if (c.value or 0.0) > DETECTOR_F or node in s.supply.outputs:
         return False
-    return _at_detector(s, node) or bool(s.near(node, "diode"))
+    reached = s.graph.reach(
+        node, through=lambda x: x.letter in "RSW", stop=s.still, limit_ohm=STOPPER_OHM
+    )
+    return any(_at_detector(s, n) for n in reached if not s.still(n))
 
 
 def _at_detector(s: Surroundings, node: str) -> bool:
@@ -330,8 +346,8 @@ def _output_core(s: Surroundings, node: str, part: str) -> bool:
             if edge.letter != "L":
                 continue
             for name in s.graph.windings_with(edge.name):
-                for end in s.graph.elements[name].nodes:
-                    for pin in s.direct(s.graph.at(end), "output"):
-                        if pin.part != part and s.after(part, pin.part, without=""):
+                for end in {s.graph.at(n) for n in s.graph.elements[name].nodes}:
+                    for near in () if s.still(end) else s.near(end, "output", ohm=1000.0):
+                        if near.pin.part != part and s.after(part, near.pin.part, without=""):
                             return True
     return False

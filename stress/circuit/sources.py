@@ -24,6 +24,7 @@ from stress.text.figure import figure
 
 LINE_HZ = (40.0, 70.0)
 LINE_LEAST_V = 5.0  # peak; less is a signal
+STRONG_V = 40.0  # peak; no signal is so large, so that a capacitor may lie between: a doubler
 HIGH_LINE = 1.10
 LOW_LINE = 0.90
 SERIES_OHM = 1000.0
@@ -179,11 +180,12 @@ def _is_line(graph: Graph, element: Element) -> bool:
     if not LINE_HZ[0] <= wave.values[2] <= LINE_HZ[1] or abs(wave.values[1]) < LINE_LEAST_V:
         return False
     fed = {n for j in graph.junctions for n in (j.anode, j.cathode)}
+    passed = "RSWC" if abs(wave.values[1]) >= STRONG_V else "RSW"
     for node in {graph.at(n) for n in element.nodes} - {GROUND}:
         reached = graph.reach(
             node,
             through=lambda e: (
-                e.letter in "RSW" or (e.letter == "L" and len(graph.windings_with(e.name)) == 1)
+                e.letter in passed or (e.letter == "L" and len(graph.windings_with(e.name)) == 1)
             ),
             stop=lambda n: n == GROUND,
             limit_ohm=SERIES_OHM,

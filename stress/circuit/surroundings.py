@@ -13,7 +13,7 @@ from stress.circuit.circuit import Kind, Part
 from stress.circuit.drive import HELD_F, Drive
 from stress.circuit.graph import GROUND, Edge, Graph, Pin
 from stress.circuit.supply import Supply
-from stress.circuit.touch import Touch
+from stress.circuit.touch import STATIC_OHM, Touch
 
 STOPPER_OHM = 100e3  # series resistors at grids and plates that are no place of their own
 SIGNAL_OHM = 5.1e6
@@ -150,6 +150,11 @@ class Surroundings:
             or self.is_held(node)
         )
 
+    def is_joined(self, a: str, b: str) -> bool:
+        """Say whether direct current flows between two nodes through less than a static
+        discharge resistor."""
+        return b in self.graph.reach(a, through=lambda e: e.conducts and e.ohm < STATIC_OHM)
+
     def is_held(self, node: str) -> bool:
         """Say whether a large capacitor from the node goes to ground or a supply."""
         for edge in self.graph.around(node):
@@ -208,7 +213,7 @@ class Surroundings:
             for role, node in part.pins.items():
                 if Pin(part.name, role).kind == "output":
                     here = self.graph.at(node)
-                    self._add_stage(stages, here, here, "")
+                    self._add_stage(stages, here, here, "direct")
         cores = set(self.graph.joints.values())
         for core in cores:
             nodes = {self.graph.at(n) for c in core for n in self.graph.elements[c].nodes}
@@ -218,10 +223,15 @@ class Surroundings:
         return stages
 
     def _add_stage(self, stages: nx.DiGraph, here: str, there: str, by: str) -> None:
-        outputs = [n for n in self.near(here, "output", "common") if not self.still(here)]
+        if self.still(here) or self.still(there):
+            return
+        outputs = self.near(here, "output", "common")
+        inputs = self.near(there, "input", ohm=SIGNAL_OHM)
         for near in outputs[:1]:
-            for far in self.near(there, "input", ohm=SIGNAL_OHM):
-                if far.pin.part != near.pin.part:
+            for far in inputs:
+                # What is many times further belongs to another branch of the grid return.
+                within = far.ohm <= max(10e3, 3.0 * inputs[0].ohm)
+                if within and far.pin.part != near.pin.part:
                     stages.add_edge(near.pin.part, far.pin.part, by=by)
 
     def after(self, earlier: str, later: str, *, without: str) -> bool:
