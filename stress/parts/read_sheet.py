@@ -3,8 +3,9 @@
 Names of parts may be written with their block, quoted or not: `[capacitors."X3.C5"]` and
 `[capacitors.X3.C5]` are the same. Which X is a device or a block stands in
 `[devices] names = ["X3"]` and `[blocks] names = [...]`, or in a list `devices = ["X3"]` above
-the first table. Limits of tubes are design-centre unless `rating` says otherwise; those of all
-other parts are absolute.
+the first table. A capacitor's `marking` ("104K", "mica-three: red green black") fills what its
+other keys leave open. Limits of tubes are design-centre unless `rating` says otherwise; those
+of all other parts are absolute.
 """
 
 from __future__ import annotations
@@ -167,6 +168,7 @@ class _Reader:
         before = len(self.tables.errors)
         found = self.tables.fields(accepted, path, value)
         found |= found.pop("fitted", {})
+        found = found.pop("marking", {}) | found
         return CapacitorEntry(**found) if len(self.tables.errors) == before else None
 
     def _tube(self, path: Path, value: Any, name: str, accepted: Keys) -> TubeEntry | None:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from typing import Any
 
-from stress.parts import styles
+from stress.parts import capacitor_codes, styles
 from stress.parts.limit import STRESSES, Rating
 from stress.parts.toml_record import (
     MISSING,
@@ -72,6 +72,21 @@ def pins(tables: Tables, path: Path, value: Any) -> Any:
     return found
 
 
+def marking(tables: Tables, path: Path, value: Any) -> Any:
+    """Read what is printed or dotted on a capacitor, as the fields it fills."""
+    try:
+        found = capacitor_codes.read(value if isinstance(value, str) else str(value))
+    except capacitor_codes.CodeError as error:
+        return tables.wrong(path, str(error), 'such as "104K", or "mica-three: red green black"')
+    fields = {
+        "value_F": found.value_F,
+        "rated_V": found.rated_V,
+        "tolerance": found.tolerance,
+        "style": found.style,
+    }
+    return {name: field for name, field in fields.items() if field is not None}
+
+
 def between(tables: Tables, path: Path, value: Any) -> Any:
     """Read two different node names."""
     found = several(text, least=2, most=2)(tables, path, value)
@@ -118,6 +133,7 @@ CAPACITOR: Keys = {
     "year": ("year", whole(OLDEST, NEWEST)),
     "role": ("role", text),
     "metal_case": ("metal_case", flag),
+    "marking": ("marking", marking),  # fills what the other keys leave open
     "fitted": ("fitted", lambda tables, path, value: tables.fields(FITTED, path, value)),
 }
 _TUBE_STRESSES = {

@@ -182,6 +182,18 @@ def test_entries_know_their_place():
     assert sheet.span("capacitors", "c99") is None
 
 
+def test_marking_fills_what_is_left_open():
+    sheet = read_text(
+        "[capacitors.C1]\nmarking = 'mica-three: red green black'\nrated = '300 V'\n"
+        "[capacitors.C2]\nmarking = '104K2E'",
+        path="set.toml",
+    )
+    c1, c2 = sheet.capacitors["c1"], sheet.capacitors["c2"]
+    assert (c1.value_F, c1.rated_V, c1.style) == (25e-12, 300.0, "mica")
+    assert (c2.value_F, c2.rated_V, c2.style) == (100e-9, 250.0, None)
+    assert c2.tolerance == (0.9, 1.1)
+
+
 def test_sheet_crosses_to_another_process():
     sheet = read_text(FULL, path="set.toml")
     assert pickle.loads(pickle.dumps(sheet)) == sheet
@@ -267,6 +279,7 @@ MESSAGES = [
     ('[line]\nnominal = "117 V"\nlow = "120 V"', "the low line is above the nominal one"),
     ('[capacitors.C5]\nrated = "-4 V"', '"-4 V" is too small'),
     ('[capacitors.C5]\nrated = "0 V"', '"0 V" is too small'),
+    ("[capacitors.C5]\nmarking = '1O4'", '"1O4" is no code such as'),
     ("[capacitors.C5]\nyear = 38", "a whole number from 1900 to 2100 is wanted"),
     ('[capacitors.C5]\ntolerance = ["5 %"]', "two values are wanted"),
     ('[capacitors.C5]\ntolerance = ["5 %", "-5 %"]', "the lower value comes first"),
