@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import tomllib
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from functools import cache
 from pathlib import Path
 from typing import Any
@@ -16,19 +16,20 @@ from stress.parts.type import TypeEntry
 TABLE = Path(__file__).parent / "model_table"
 
 
-def subcircuit(name: str) -> str | None:
+def subcircuit(name: str, *, extra: Sequence[TypeEntry] = ()) -> str | None:
     """Return the `.subckt` of the built-in model of a type, or None.
 
     The name is matched as by `stress.parts.types.find`; the subcircuit carries the name that
     was asked for. Pins: plate grid cathode; plate screen grid cathode; rectifiers plate
     [plate2] cathode; then diode, diode2, oscillator, plate2, grid2, cathode2 as far as the
     type has them (`TypeEntry.pins`). One unit of a double triode is one subcircuit. The wound
-    parts of `stress.parts.wound` are found by their own names.
+    parts of `stress.parts.wound` are found by their own names. Entries in `extra` (a user's
+    own) go before those of the table and may use a model by `like`.
     """
     wound_part = wound.subcircuit(name)
     if wound_part is not None:
         return wound_part
-    entry = types.find(name)
+    entry = types.find(name, extra=extra)
     if entry is None:
         return None
     found = units(entry)

@@ -99,8 +99,11 @@ def _by_name(pins: Sequence[str]) -> dict[str, str]:
         role = _ROLE.get(name)
         if role is not None and role not in roles:
             roles[role] = pin
-    if "plate2" in roles and "screen" in roles and plain_names.keys() & {"g2", "grid2"}:
-        roles["grid2"] = roles.pop("screen")  # two triodes: G2 is the other grid
+    second = plain_names.get("g2", plain_names.get("grid2"))
+    if "plate2" in roles and second is not None:  # two units: G2 is the grid of the other
+        screens = [pin for name, pin in plain_names.items() if _ROLE.get(name) == "screen"]
+        roles |= {"grid2": second, "screen": next((p for p in screens if p != second), "")}
+        roles = {role: pin for role, pin in roles.items() if pin}
     if plain_names.keys() & {"g4", "g5", "grid4"} and {"suppressor", "grid"} <= roles.keys():
         # A pentagrid: grid 1 oscillates, the signal is on grid 3.
         roles["oscillator"], roles["grid"] = roles["grid"], roles.pop("suppressor")
