@@ -51,7 +51,8 @@ class Pin:
     def kind(self) -> str:
         """ "output", "input", "common", "screen", "diode", or "other" (heater, suppressor)."""
         word = self.role.rstrip("0123456789_")
-        return _KINDS.get(word, "input" if word.endswith("grid") else "other")
+        last = word.rpartition("_")[2]
+        return _KINDS.get(word) or _KINDS.get(last, "other")
 
     @property
     def text(self) -> str:

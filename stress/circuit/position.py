@@ -48,7 +48,7 @@ def find(
                 )
             )
         edge = _valued(edges[name], value)
-        role, text = role_of(s, edge)
+        role, text = _stated(entry, *role_of(s, edge))
         position, odd = _position(s, element, entry, value, role, text, cans.get(name, ""))
         positions.append(position)
         findings += odd
@@ -62,6 +62,16 @@ def find(
                 )
             )
     return tuple(positions), tuple(errors), tuple(findings)
+
+
+def _stated(entry: CapacitorEntry, role: Role, text: str) -> tuple[Role, str]:
+    """Return the role that the sheet states; free words go before those of the graph."""
+    if entry.role is None:
+        return role, text
+    stated = {known.value.lower(): known for known in Role}.get(entry.role.strip().lower())
+    if stated is None:
+        return role, entry.role
+    return stated, text if stated is role else stated.value
 
 
 def _valued(edge: Edge, value: float | None) -> Edge:
