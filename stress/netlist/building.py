@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from stress.netlist.evaluate import OPERATORS
-from stress.netlist.expression import Binary, Conditional, Expression, Number, Unary
+from stress.netlist.expression import Binary, Call, Conditional, Expression, Number, Unary
 from stress.netlist.function import folded
 from stress.netlist.meaning import FormulaError, Sizes
 from stress.netlist.token import Tokens
@@ -70,6 +70,9 @@ class Builder(Tokens):
             return self.joined(
                 part.operator, self.settled(part.left, at), self.settled(part.right, at), at
             )
+        if isinstance(part, Call):
+            inner = tuple(self.settled(argument, at) for argument in part.arguments)
+            return self.made(Call(part.function, inner), *inner, at=at)
         if isinstance(part, Unary) and isinstance(part.operand, Number):
             return Number(float(not part.operand.value))
         if isinstance(part, Conditional) and isinstance(part.test, Number):

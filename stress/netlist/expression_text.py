@@ -131,7 +131,8 @@ def _table(x: str, points: tuple[Expression, ...]) -> str:
     if len(pairs) == 1:
         return repr(float(pairs[0][1]))
     told = ",".join(f"{a!r},{b!r}" for a, b in pairs)
-    return f"pwl({x},{told})"
+    # pwl goes on beyond its ends with their slopes; a table does not.
+    return f"pwl(min(max({x},{pairs[0][0]!r}),{pairs[-1][0]!r}),{told})"
 
 
 def _written_out(x: str, points: tuple[Expression, ...]) -> str:

@@ -312,5 +312,11 @@ class _Reader(Builder):
         if isinstance(self.names, Formals):
             around = self.names.texts
             texts = [around.get(text.lower(), text) for text in texts]
-        inner = Formals(self.outer(), trees, dict(zip(formals, texts, strict=True)))
+        # What has a value is no node: ngspice leaves the names inside V() and I() alone then.
+        given = {
+            formal: text
+            for formal, text in zip(formals, texts, strict=True)
+            if isinstance(trees[formal], FormulaError)
+        }
+        inner = Formals(self.outer(), trees, given)
         return self.inlined(body, inner, token, at, end)

@@ -129,7 +129,7 @@ NAMED: dict[str, tuple[int, int, Callable[..., Expression]]] = {
     "ternary_fcn": (3, 3, Conditional),
     "table": (3, 9999, _plain("table")),
     "tbl": (3, 9999, _plain("table")),
-    "pwl": (3, 9999, _plain("table")),
+    "pwl": (3, 9999, lambda *arguments: _extended(*arguments)),
     "buf": (1, 1, lambda x: Binary(">", x, Number(0.5))),
     "inv": (1, 1, lambda x: Binary("<=", x, Number(0.5))),
     "not": (1, 1, lambda x: Unary("!", x)),
@@ -142,6 +142,20 @@ NAMED: dict[str, tuple[int, int, Callable[..., Expression]]] = {
     "deg": (1, 1, lambda x: Binary("*", Number(180 / math.pi), x)),
     "rad": (1, 1, lambda x: Binary("*", Number(math.pi / 180), x)),
 }
+
+
+def _extended(x: Expression, *points: Expression) -> Expression:
+    """A table whose ends go on with their last slopes, as pwl() of ngspice does (measured)."""
+    held = call("table", x, *points)
+    if len(points) < 4:
+        return held
+    x1, y1, x2, y2 = points[:4]
+    before = Binary("/", Binary("-", y2, y1), Binary("-", x2, x1))
+    v1, w1, v2, w2 = points[-4:]
+    after = Binary("/", Binary("-", w2, w1), Binary("-", v2, v1))
+    low = Binary("*", before, call("ramp", Binary("-", x1, x)))
+    high = Binary("*", after, call("ramp", Binary("-", x, v2)))
+    return Binary("+", Binary("-", held, low), high)
 
 
 def _square(x: Expression) -> Expression:

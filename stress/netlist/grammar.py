@@ -11,7 +11,7 @@ from stress.netlist.controlled import behavioural, controlled
 from stress.netlist.magnetic import coupling, inductor
 from stress.netlist.part import Part
 from stress.netlist.passive import resistor
-from stress.netlist.semiconductor import line, semiconductor, switch
+from stress.netlist.semiconductor import coupled_lines, line, semiconductor, switch
 from stress.netlist.stimulus import source
 
 
@@ -47,20 +47,12 @@ GRAMMAR = {
     "O": Row("lossy line", "O1 node node node node model", semiconductor),
     "U": Row("distributed RC line", "U1 node node node model", semiconductor),
     "Y": Row("lossy line", "Y1 node node node node model", semiconductor),
+    "P": Row("coupled lines", "P1 node … node node … node model", coupled_lines),
 }
 # Letters that schematic editors give to parts for which SPICE has no card.
 NO_DEVICE = {
     "A": "a code-model device",
     "N": "a compiled model",
-    "P": "a coupled line, or a plug of a schematic editor",
-}
-_REFERENCES = {
-    "F": "if it is a fuse, write it as a resistor of its cold resistance",
-    "J": "if it is a connector, take it out or join its nodes",
-    "K": "if it is a relay, write its coil as R and its contact as S",
-    "P": "if it is a plug, take it out or join its nodes",
-    "T": "if it is a transformer, write its windings as L cards coupled by a K card",
-    "U": "if it is an integrated circuit, write it as an X card with a model file",
 }
 
 
@@ -78,7 +70,7 @@ def read_element(part: Part, into: Assembly) -> None:
         raise part.obstacle(
             f"{part.full} is {NO_DEVICE[part.letter]}, which is not simulated here",
             part.head,
-            _REFERENCES.get(part.letter, "replace it by the parts it stands for"),
+            "replace it by the parts it stands for",
         )
     known = " ".join(GRAMMAR)
     raise part.error(

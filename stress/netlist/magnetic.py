@@ -86,7 +86,7 @@ def coupling(part: Part, into: Assembly) -> None:
     part.need(3, "K1 L1 L2 coupling")
     given = part.given.pop("k", None) or part.given.pop("coupling", None)
     words = part.words
-    if given is None and words[-1].text[:1].isalpha() and len(words) >= 3:
+    if given is None and words[-1].text[:1].isalpha() and words[-1].kind == "word":
         before = words[-2].text[:1]
         if before.isdigit() or before == ".":
             raise part.obstacle(
@@ -94,7 +94,11 @@ def coupling(part: Part, into: Assembly) -> None:
                 words[-1],
                 "give the windings as inductances in henry and couple them without the core model",
             )
-        if words[-1].text[:1].upper() == "L" and part.scope.value(words[-1].text.lower()) is None:
+        if (
+            words[-1].text[:1].upper() == "L"
+            and words[-1].kind == "word"
+            and part.scope.value(words[-1].text.lower()) is None
+        ):
             raise part.error(
                 f"{part.name}: the coupling is missing", words[-1], "the form is K1 L1 L2 0.99"
             )

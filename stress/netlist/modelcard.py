@@ -160,6 +160,13 @@ def _parameter(
     value = fields[at + 2]
     low = key.text.lower()
     at += 3
+    if kind == "cpl" and low != "length":  # a matrix: numbers one behind the other
+        row = [value.text]
+        while at < len(fields) and not (at + 1 < len(fields) and fields[at + 1].text == "="):
+            row.append(fields[at].text)
+            at += 1
+        numbers[low] = " ".join(repr(read_number(text).value) for text in row)
+        return at
     if low in VENDOR or (low.startswith(("dev/", "lot/"))):
         return at
     if value.kind == "string":

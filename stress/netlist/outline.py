@@ -164,7 +164,7 @@ class Outline:
         span = card.span(*at, scope.within)
         call = place(span)
         try:
-            source = self.files.include(name, asked_by=entry.source, call=call)
+            source = self.files.include(name, asked_by=entry.source, call=call, part=part)
         except Refused as refusal:
             if refusal.missing:
                 self.problems.obstacle(refusal.message, span, refusal.hint)

@@ -26,6 +26,7 @@ from stress.text.span import SourceError, Span
 _SENSES = re.compile(r"(?<![\w.])[vi]\s*\(", re.IGNORECASE)
 GROUND = frozenset({"0", "gnd", "gnd!"})
 DEEPEST_PARAMETER = 60
+BOLTZMANN_V = 8.617333262e-5  # volt per kelvin: Boltzmann constant over elementary charge
 
 
 @dataclass(frozen=True, slots=True)
@@ -126,6 +127,8 @@ class Scope:
             if held is not None:
                 return scope._settle(name, held) if isinstance(held, Assignment) else held
             scope = scope.caller
+        if name == "vt":  # known to every ps netlist without a definition
+            return (self.world.temperature_degC + 273.15) * BOLTZMANN_V
         return None
 
     def _settle(self, name: str, held: Assignment) -> float | str:

@@ -50,7 +50,9 @@ def semiconductor(part: Part, into: Assembly) -> None:
         low = extra.text.lower()
         if low in _FLAGS:
             parameters["off"] = 1.0
-        elif low in ("ic", "thermal", "tnodeout"):
+        elif low == "thermal":
+            parameters["thermal"] = 1.0
+        elif low in ("ic", "tnodeout"):
             continue
         elif "area" not in parameters and part.letter in "DQJZM":
             parameters["area"] = part.number(extra)
@@ -139,3 +141,17 @@ def line(part: Part, into: Assembly) -> None:
     if "td" not in parameters and "f" not in parameters:
         raise part.error(f"{part.name}: TD= or F= is missing", part.head, f"the form is {form}")
     into.add(part, "T", part.nodes(4), parameters=parameters)
+
+
+def coupled_lines(part: Part, into: Assembly) -> None:
+    """`P1 a b 0 c d 0 model`: as many nodes as the model has lines, twice, each with its ground."""
+    model = part.words[-1] if part.words else part.head
+    if len(part.words) < 5 or not into.knows_model(part.scope, model.text):
+        raise part.obstacle(
+            f"{part.full} is no coupled line: its last word is no model",
+            part.head,
+            "if it is a plug or connector, take it out or join its nodes",
+        )
+    key = into.model(part, model, ("cpl",))
+    if key:
+        into.add(part, "P", part.nodes(len(part.words) - 1), model=key)

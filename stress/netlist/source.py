@@ -124,8 +124,8 @@ class Files:
             error = SourceError(refusal.message, Span(file, 0, 0, 1, ""), refusal.hint)
             raise SourceErrors([error]) from None
 
-    def include(self, name: str, *, asked_by: Source, call: str) -> Source:
-        """Read a file that a line of another file names.
+    def include(self, name: str, *, asked_by: Source, call: str, part: str = "") -> Source:
+        """Read a file that a line of another file names; `part` is the section it asks for.
 
         Raises:
             Refused: With the reason.
@@ -138,12 +138,14 @@ class Files:
             raise Refused(f"includes nested deeper than {DEEPEST_INCLUDE}")
         path = self._find(name, asked_by)
         shown = path.name if asked_by.real is None else self._shown(path)
-        if call and any(entry.startswith(f"{shown},") for entry in asked_by.within):
+        if part:
+            shown = f"{shown} {part}"
+        around = any(entry.startswith(f"{shown}, included") for entry in asked_by.within)
+        if around or (path == asked_by.real and not part):
             raise Refused(f'"{shown}" includes itself', "take one of the includes out")
-        if asked_by.real is not None and path == asked_by.real:
-            raise Refused(f'"{shown}" includes itself', "take the include out")
         within = (*asked_by.within, f"{shown}, included at {call}")
-        return Source(shown, self._lines(path, shown), path, within)
+        file = shown.removesuffix(f" {part}") if part else shown
+        return Source(file, self._lines(path, file), path, within)
 
     def _shown(self, path: Path) -> str:
         if self.folder is not None:

@@ -118,7 +118,12 @@ class _Source:
 
     def _is_value(self, field: Field) -> bool:
         return field.kind != "mark" and not (
-            field.kind == "word" and (field.text.lower() in WAVES or field.text.lower() == "ac")
+            field.kind == "word"
+            and (
+                field.text.lower() in WAVES
+                or field.text.lower() in NOISE
+                or field.text.lower() == "ac"
+            )
         )
 
     def _skip_numbers(self) -> None:
@@ -177,7 +182,8 @@ class _Source:
                     self.at += 1
                 self.at += 1
             elif self._followed_by_equals() or (
-                (field.kind == "word" and low in ("dc", "ac")) or (low in WAVES and low != kind)
+                (field.kind == "word" and low in ("dc", "ac", "distof1", "distof2"))
+                or (low in WAVES and low != kind)
             ):
                 break
             else:

@@ -87,10 +87,8 @@ def _card(element: Element, letters: Mapping[str, str]) -> str:
     if element.wave is not None:
         words.append(_wave(element.wave))
     for name, value in element.parameters.items():
-        if name in ("on", "off"):
+        if name in ("on", "off", "thermal"):
             words.append(name)
-        elif name == "area" and element.letter in "DQJZ":
-            words.append(repr(value))
         else:
             words.append(f"{name}={value!r}")
     return " ".join(words)

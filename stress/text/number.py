@@ -9,7 +9,7 @@ _PLAIN = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?")
 _NUMBER = re.compile(r"([+-]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][+-]?\d+)?)([^\W\d_]*|%)(.*)", re.DOTALL)
 _COMMA = re.compile(r"([+-]?\d+),(\d+)([^\W\d_]*)")
 # IEC 60062: the letter stands where the point would be ("4k7", "2u2", "4R7", "R47").
-_CODED = re.compile(r"([+-]?\d*)([a-zA-ZµμΩ])(\d+)([^\W\d_]*)")
+_CODED = re.compile(r"([+-]?\d*)(meg|[a-zA-ZµμΩ])(\d+)([^\W\d_]*)", re.IGNORECASE)
 
 SCALES = {
     "t": 1e12,
@@ -207,7 +207,7 @@ def _unusual(text: str, quantity: str) -> Reading:
         scale = "" if letter in "rRΩ" else letter.lower()
         if letter == "M" and quantity != "C" and quantity != "L":
             scale = "meg"  # IEC 60062 has M for mega
-        known = scale in SCALES or letter in "rRΩ" or (letter in "vV" and whole)
+        known = scale in SCALES or letter in "rRΩ" or (letter in "vV" and whole != "")
         if known and (not unit or unit.lower() in UNITS):
             digits = f"{whole or '0'}.{part}"
             value = _scaled(digits, scale if scale in SCALES else "")
