@@ -7,10 +7,7 @@ from dataclasses import dataclass, field
 
 from stress.circuit.circuit import Circuit
 from stress.study.result import Replacement
-from stress.text.figure import figure
 from stress.text.unit import unit
-
-COLUMNS = ("designators", "quantity", "value", "voltage", "style", "ripple", "remarks")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -37,24 +34,6 @@ class Row:
     ripple_rms_A: float | None = field(default=None, metadata=unit("A"))
     ripple_Hz: float | None = field(default=None, metadata=unit("Hz"))
     remarks: str = ""
-
-    def cells(self) -> tuple[str, ...]:
-        """Return the row as text, in the order of `COLUMNS`."""
-        ripple = ""
-        if self.ripple_rms_A:
-            at = f" at {figure(self.ripple_Hz, 'Hz')}" if self.ripple_Hz else ""
-            ripple = f"{figure(self.ripple_rms_A, 'A')}{at}"
-        kind = f"{self.style} class {self.safety_class}" if self.safety_class else self.style
-        unit_of_V = "V ac" if self.safety_class else "V"
-        return (
-            " ".join(self.designators),
-            str(self.quantity),
-            " + ".join(figure(value, "F") for value in self.value_F),
-            f"{self.rated_V:g} {unit_of_V}" if self.rated_V is not None else "",
-            kind,
-            ripple,
-            self.remarks,
-        )
 
 
 def rows(replacements: Mapping[str, Replacement], *, circuit: Circuit) -> tuple[Row, ...]:

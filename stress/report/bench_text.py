@@ -1,0 +1,145 @@
+"""Bench limits and verdicts on readings, on a terminal or in a pipe."""
+
+from __future__ import annotations
+
+from rich.console import Console
+from rich.text import Text
+
+from stress.circuit.circuit import Position
+from stress.judge.verdict import Advice, Verdicts
+from stress.report.order import order_of_work
+from stress.report.words import amount, encodable, marked, plain
+from stress.study.result import Bench, Review
+from stress.text.figure import figure
+
+INDENT = 5
+
+
+class _Out:
+    """Writes wrapped paragraphs without control characters."""
+
+    def __init__(self, console: Console) -> None:
+        self.console = console
+
+    def line(self, text: str = "", *, first: str = "", indent: int = 0, bold: bool = False) -> None:
+        """Print a paragraph; `first` stands in the indentation of its first line."""
+        shown = Text(encodable(plain(text), self.console.encoding), style="bold" if bold else "")
+        room = max(self.console.width - indent, 20)
+        for number, line in enumerate(shown.wrap(self.console, room) or [Text()]):
+            line.rstrip()
+            before = Text((plain(first) if number == 0 else "").ljust(indent))
+            self.console.print(before.append_text(line), highlight=False, no_wrap=True)
+
+
+def print_bench(review: Review, console: Console) -> None:
+    """Print the limits of every position in the order of work, with what they rest on."""
+    out = _Out(console)
+    out.line(f"{review.circuit.name}: bench limits", bold=True)
+    sheet = review.circuit.sheet
+    out.line(
+        f"on the bench at {sheet.bench_degC:.0f} °C; safety factor {sheet.safety:g} on leakage. "
+        "Discharge every part before and after a test."
+    )
+    rank = {risk.position: risk.rank for risk in review.risks}
+    last = len(rank) + 1
+    for position in sorted(review.circuit.positions, key=lambda p: rank.get(p.name, last)):
+        out.line()
+        out.line(f"{position.name:<4} {position.role_text}; {marked(position)}", bold=True)
+        limits = review.bench.get(position.name)
+        if limits is None:
+            out.line("no limits: its value or what it bears is not known", indent=INDENT)
+            continue
+        _limits(limits, position, out)
+
+
+def _limits(limits: Bench, position: Position, out: _Out) -> None:
+    if limits.test_V is not None:
+        most = amount(limits.leakage_max_A, "A")
+        out.line(
+            f"leakage: at {figure(limits.test_V, 'V')} not more than {most}"
+            f"{_where(limits.in_leakage)}: {limits.leakage_reason}",
+            indent=INDENT,
+        )
+    if limits.esr_max_ohm is not None:
+        out.line(
+            f"ESR: not above {figure(limits.esr_max_ohm, 'ohm')}{_where(limits.in_esr)}: "
+            f"{limits.esr_reason}",
+            indent=INDENT,
+        )
+    if limits.value_min_F is not None and limits.value_max_F is not None:
+        out.line(
+            f"capacitance: {figure(limits.value_min_F, 'F')} to {figure(limits.value_max_F, 'F')}"
+            f"{_where(limits.in_capacitance)}",
+            indent=INDENT,
+        )
+    for note in limits.notes:
+        out.line(note, first="   - ", indent=INDENT)
+
+
+def _where(verdict: str | None) -> str:
+    return f", {verdict}" if verdict is not None else ""
+
+
+def print_verdicts(found: Verdicts, console: Console) -> None:
+    """Print the verdict on every position that was measured, the most serious first."""
+    out = _Out(console)
+    out.line("Readings", bold=True)
+    if not found.verdicts:
+        out.line("no position was measured", indent=INDENT)
+    for advice in Advice:
+        for verdict in found.verdicts:
+            if verdict.advice is not advice:
+                continue
+            out.line(str(verdict), first=f"{verdict.position:<4} ", indent=INDENT)
+            for point in verdict.points:
+                if point.advice is not advice:
+                    out.line(f"{point.advice}: {point.reason}", first="   - ", indent=INDENT)
+    if found.drifts:
+        out.line()
+        out.line("Resistors and windings", bold=True)
+        for drift in found.drifts:
+            out.line(str(drift), indent=INDENT)
+
+
+def print_change(before: Review, after: Review, console: Console, *, title: str) -> None:
+    """Print how the order of work and the findings change from one review to the other.
+
+    Args:
+        before: As drawn.
+        after: With readings, or with the parts that were chosen.
+        title: What the second one is.
+    """
+    out = _Out(console)
+    out.line(title, bold=True)
+    places = {risk.position: risk for risk in before.risks}
+    for risk in after.risks:
+        old = places.get(risk.position)
+        if old is not None and old.rank == risk.rank and old.severity is risk.severity:
+            continue
+        was = f"was {old.rank} ({old.severity})" if old is not None else "was not ranked"
+        out.line(
+            f"now {risk.rank} ({risk.severity}), {was}: {risk.reason}",
+            first=f"{risk.position:<4} ",
+            indent=INDENT,
+        )
+    if all(
+        risk.position in places and places[risk.position].rank == risk.rank for risk in after.risks
+    ):
+        out.line("the order of work stays as it was", indent=INDENT)
+    _findings(before, after, out)
+
+
+def _findings(before: Review, after: Review, out: _Out) -> None:
+    """Print what is new among the steps, and what is gone; a step is known by place and rule."""
+    old = {(step.where, step.rule): step for step in order_of_work(before)}
+    new = {(step.where, step.rule): step for step in order_of_work(after)}
+    for heading, steps in (
+        ("New findings", [step for key, step in new.items() if key not in old]),
+        ("No longer found", [step for key, step in old.items() if key not in new]),
+    ):
+        if not steps:
+            continue
+        out.line()
+        out.line(heading, bold=True)
+        for step in steps:
+            out.line(step.text, first=f"{step.where:<4} ", indent=max(INDENT, len(step.where) + 1))
