@@ -3,6 +3,7 @@
 import pytest
 
 from stress.parts import policy, styles
+from stress.parts.describe_policy import description
 from stress.parts.policy import policies
 from stress.text.span import SourceErrors
 
@@ -108,6 +109,25 @@ def test_temperature_below_the_highest():
     style = styles.find("aluminium")
     heat = policies()["RADC-TR-84-254 level III"].rule(style).temperature
     assert heat.limit_degC(style) == 65.0
+
+
+LINES = [
+    ("common-practice", "aluminium          voltage 90 %"),
+    ("common-practice", "aluminium          temperature 20 K below its highest"),
+    ("EEE-INST-002", "tantalum           voltage 30 %, to 110 °C (CSR, CWR)"),
+    ("EEE-INST-002", "ceramic-1          at least 100 V below 10 V (CCR, CKR, CDR below 10 V dc)"),
+    ("IPC-9592B", "aluminium          voltage 80 %, ratings to 250 V"),
+    ("ECSS-Q-ST-30-11C", "tantalum-wet       reverse 0 % (no reverse voltage)"),
+    ("ECSS-Q-ST-30-11C", "not covered: paper, paper-oil"),
+]
+
+
+@pytest.mark.parametrize(("name", "line"), LINES)
+def test_policy_is_stated_number_by_number(name, line):
+    printed = description(policies()[name])
+    assert f"\n  {line}" in printed
+    count = sum(len(rule.voltage) for rule in policies()[name].rules.values())
+    assert printed.count(" voltage ") >= count
 
 
 def test_users_write_their_own(tmp_path):
