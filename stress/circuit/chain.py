@@ -21,6 +21,7 @@ SUPPLIES = {
     Role.AVC: "AVC line",
 }
 CORE_COST = 6.0
+SCREEN_COST = 3.0  # the plate carries most of the current
 SUPPLY_COST = 4.0  # what spreads over a supply reaches everything; a direct way goes before it
 
 
@@ -142,6 +143,7 @@ class Chains:
             )
             if pin.kind != "input":
                 extra = SUPPLY_COST if at in self.supplies else 0.5
+                extra += SCREEN_COST if pin.kind == "screen" else 0.0
                 self.ways.add_edge(("part", name), ("node", at), cost=extra)
 
     def _words(self, kind: str, name: str) -> str:

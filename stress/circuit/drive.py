@@ -125,20 +125,24 @@ def _poles(graph: Graph, plus: str, minus: str) -> tuple[frozenset[str], frozens
 def _add_chokes(graph: Graph, poles: tuple[set[str], set[str]]) -> None:
     """Add what lies behind line-filter chokes: one winding alone, or a pair on one core with
     each winding in its own pole."""
-    for own, other in (poles, poles[::-1]):
-        for node in tuple(own):
+    found: tuple[set[str], set[str]] = (set(), set())
+    for own, other, new in zip(poles, poles[::-1], found, strict=True):
+        for node in own:
             for edge in inductors(graph, node):
                 there = edge.other(node)
                 core = graph.windings_with(edge.name)
                 if there in own | other | {GROUND} or held(graph, there):
                     continue
                 small = (edge.value or 0.0) < 0.05
-                twin = len(core) == 2 and all(
-                    any(graph.at(n) in pole for pole in poles for n in graph.elements[c].nodes)
-                    for c in core
-                )
+                twin = len(core) == 2 and all(_ends_in(graph, c, poles) == 1 for c in core)
                 if (len(core) == 1 and small) or twin:
-                    own.add(there)
+                    new.add(there)
+    for own, new in zip(poles, found, strict=True):
+        own |= new
+
+
+def _ends_in(graph: Graph, inductor: str, poles: tuple[set[str], set[str]]) -> int:
+    return sum(graph.at(n) in poles[0] | poles[1] for n in graph.elements[inductor].nodes)
 
 
 def _cores_at(graph: Graph, nodes: Collection[str]) -> frozenset[str]:

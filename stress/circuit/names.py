@@ -97,7 +97,7 @@ def _stems(resistors: Mapping[str, str]) -> dict[str, str]:
 
 
 def _missing(table: str, name: str, known: Mapping[str, str], what: str, span: Span) -> SourceError:
-    close = get_close_matches(name.lower(), known, n=1, cutoff=0.6)
+    close = get_close_matches(name.lower(), known, n=1, cutoff=0.5)
     if close:
         hint = f"did you mean {known[close[0]]}?"
     else:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from stress.circuit import role_power, role_signal
+from stress.circuit import role_bypass, role_power, role_signal
 from stress.circuit.circuit import Role
 from stress.circuit.graph import Edge
 from stress.circuit.role_power import Found
@@ -27,7 +27,7 @@ RULES: tuple[Rule, ...] = (
     role_power.across_winding,
     role_power.buffer,
     role_power.supply,
-    role_signal.bypass,
+    role_bypass.bypass,
     role_signal.coupling,
 )
 
