@@ -7,10 +7,8 @@ from stress.circuit.graph import GROUND, Edge, Pin
 from stress.circuit.role_power import Found
 from stress.circuit.surroundings import RADIO_F, SIGNAL_OHM, STOPPER_OHM, Ends, Near, Surroundings
 
-AVC_OHM = 220e3  # AVC lines are fed through more than this (common practice)
-RETURN_OHM = 47e3
+RETURN_OHM = 47e3  # less between grid and return is a stopper (common practice)
 DETECTOR_F = 5e-9
-WORDS = {"cathode": "cathode", "emitter": "emitter", "source": "source", "filament": "filament"}
 
 
 def bypass(s: Surroundings, c: Edge, e: Ends) -> Found:
@@ -52,7 +50,7 @@ def _is_regulated(s: Surroundings, pin: Pin) -> bool:
 
 
 def _at_cathode(s: Surroundings, pin: Pin, quiet: str) -> Found:
-    word = WORDS.get(pin.role.rstrip("0123456789"), "cathode")
+    word = pin.role.rstrip("0123456789_")
     return Role.CATHODE_BYPASS, f"{word} bypass, {pin.text} to {s.words(quiet)}"
 
 

@@ -57,4 +57,4 @@ def sheet(
             click.echo(f"{output} is there already; give another name", err=True)
             sys.exit(UNUSABLE)
         output.write_text(text, encoding="utf-8")
-        click.echo(f"{output}: {len(circuit.positions)} capacitors to look at")
+        click.echo(f"{output}: capacitors to look at: {len(circuit.positions)}")

@@ -195,7 +195,8 @@ def _finding(finding: Finding) -> str:
 
 def _obstacles(errors: Sequence[SourceError], width: int) -> Iterator[str]:
     if not errors:
-        yield from _head("Nothing stands in the way of a simulation.")
+        yield ""
+        yield from _item("Nothing stands in the way of a simulation.", "", width, indent=0)
         return
     yield from _head(f"{_count(len(errors), 'obstacle')} to a simulation:")
     for error in errors:
