@@ -284,10 +284,7 @@ def unknown(card: Card, word: str, scope: Scope, problems: Problems) -> None:
     if what is not None:
         problems.ignore(f"{word}: {what}", card.whole(scope.within))
         return
-    hint = did_you_mean(word, {*READ, *IGNORED})
-    raise card.error(
-        f'unknown control card "{word}"',
-        (0, len(word)),
-        hint or "a comment begins with *, a control card with a name such as .model or .param",
-        scope.within,
-    )
+    hint = did_you_mean(word, READ)
+    if hint:
+        raise card.error(f'unknown control card "{word}"', (0, len(word)), hint, scope.within)
+    problems.ignore(f"{word}: unknown control card", card.whole(scope.within))

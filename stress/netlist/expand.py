@@ -48,7 +48,7 @@ class Expansion:
         for entry in scope.block.cards:
             try:
                 card = entry.card(dollar=self.into.dollar)
-                if card.text[0] in "xX":
+                if card.text[:1] in ("x", "X"):
                     letters |= self._instance(card, scope)
                 else:
                     read_element(Part(card, scope, self.problems), self.into)

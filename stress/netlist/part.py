@@ -40,6 +40,11 @@ class Part:
         """
         self.card, self.scope, self.problems = card, scope, problems
         fields = card.fields
+        if not fields or fields[0].kind != "word":
+            at = fields[0] if fields else None
+            raise card.error(
+                f'"{card.text[:1]}" begins no card', at, "a comment begins with *", scope.within
+            )
         self.head = fields[0]
         self.name = self.head.text
         self.full = scope.prefix + self.name

@@ -21,12 +21,18 @@ class Limit(SourceErrors):
 
 @dataclass(slots=True)
 class Problems:
-    """Collects; nothing is told twice for one place."""
+    """Collects; nothing is told twice for one place.
+
+    Attributes:
+        end: File and line of the `.end` card: ngspice reads on behind it, but what is wrong
+            there is no error.
+    """
 
     errors: list[SourceError] = field(default_factory=list)
     obstacles: list[SourceError] = field(default_factory=list)
     notices: list[Finding] = field(default_factory=list)
     ignored: list[Ignored] = field(default_factory=list)
+    end: tuple[str, int] | None = None
     _told: set[tuple[object, ...]] = field(default_factory=set)
 
     def error(self, error: SourceError) -> None:
@@ -36,6 +42,10 @@ class Problems:
             Limit: There are too many to go on.
         """
         if not self._new(error.message, error.span):
+            return
+        span = error.span
+        if self.end is not None and span.file == self.end[0] and span.line > self.end[1]:
+            self.ignore(f"behind .end, and no card: {error.message}", span)
             return
         if isinstance(error, Obstacle):
             self.obstacles.append(error)

@@ -94,6 +94,14 @@ def _read(
     _later(top, scope, into, settings, problems)
     expansion.block(scope)
     elements = resolve(into, problems)
+    if len(problems.errors) > 2 and not elements and not into.instances:
+        first = problems.sorted_errors()[:3]
+        what = SourceError(
+            "this does not look like a netlist: none of its cards can be read",
+            source.whole(),
+            "export the circuit from the schematic editor as SPICE netlist",
+        )
+        raise SourceErrors([what, *first])
     if problems.errors:
         raise SourceErrors(problems.sorted_errors())
     return Netlist(
@@ -127,7 +135,10 @@ def _control(
     elif word in (".options", ".option", ".opt", ".temp", ".ic", ".tran", ".step"):
         if scope.name:
             _settle(entry, scope, into, settings)
-    elif word in (".title", ".end", ".endl"):
+    elif word == ".end":
+        if not scope.name and not entry.source.within and into.problems.end is None:
+            into.problems.end = (entry.source.file, entry.index + 1)
+    elif word in (".title", ".endl"):
         pass
     else:
         unknown(card, word, scope, into.problems)

@@ -8,7 +8,7 @@ along the text, from the inner to the outer definition.
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 from difflib import get_close_matches
 
@@ -245,7 +245,7 @@ class World:
     settling: list[str] = field(default_factory=list)
 
 
-def did_you_mean(name: str, known: set[str] | list[str]) -> str:
+def did_you_mean(name: str, known: Iterable[str]) -> str:
     """Return the hint "did you mean …?", or "" where nothing is near."""
     near = get_close_matches(name.lower(), [entry.lower() for entry in known], 3, 0.7)
     return f"did you mean {' or '.join(dict.fromkeys(near))}?" if near else ""

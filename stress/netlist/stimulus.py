@@ -64,7 +64,7 @@ class _Source:
         while self.at < len(self.fields):
             field = self.fields[self.at]
             low = field.text.lower()
-            if field.kind == "mark":
+            if field.kind == "mark" or low in ("tran", "transient"):
                 self.at += 1
             elif low == "dc" and field.kind == "word":
                 self.at += 1

@@ -46,13 +46,15 @@ def read_header(card: Card, within: tuple[str, ...]) -> Header:
     optional: list[tuple[str, str]] = []
     first_assigned: int | None = None
     optional_now = False
-    depth, at = 0, 2
+    depth, at, listed = 0, 2, False
     while at < len(fields):
         field = fields[at]
         following = fields[at + 1] if at + 1 < len(fields) else None
         low = field.text.lower()
         if field.kind == "mark" and field.text in "()":
             depth += 1 if field.text == "(" else -1
+            if depth == 1 and field.text == "(":
+                listed = not pins  # `.subckt NAME (a b c)`; later it is a remark
         elif low in ("optional:", "text:") or (
             low == "optional" and following and following.text == ":"
         ):
@@ -66,7 +68,7 @@ def read_header(card: Card, within: tuple[str, ...]) -> Header:
             else:
                 first_assigned = field.start if first_assigned is None else first_assigned
                 break
-        elif depth > 0 and pins:
+        elif depth > 0 and not listed:
             prose.append(field.text)
         elif field.kind == "word":
             pins.append(field.text)

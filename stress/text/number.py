@@ -207,6 +207,8 @@ def _unusual(text: str, quantity: str) -> Reading:
         scale = "" if letter in "rRΩ" else letter.lower()
         if letter == "M" and quantity != "C" and quantity != "L":
             scale = "meg"  # IEC 60062 has M for mega
+        elif letter == "L" and quantity == "R":
+            scale = "m"
         known = scale in SCALES or letter in "rRΩ" or (letter in "vV" and whole != "")
         if known and (not unit or unit.lower() in UNITS):
             digits = f"{whole or '0'}.{part}"
