@@ -12,7 +12,16 @@ from stress.study import conditions as stock
 from stress.study.damage_time import timed
 from stress.study.fault import Fault, values
 from stress.study.function import Sign, moved, signs
-from stress.study.limits import Limits, Stresses, all_stresses, counted, excess, limits, over
+from stress.study.limits import (
+    Limits,
+    Stresses,
+    all_stresses,
+    counted,
+    excess,
+    limits,
+    over,
+    shares,
+)
 from stress.study.result import Condition, CurvePoint, Victim
 from stress.study.working import Healthy, node_means, unanswered
 
@@ -53,13 +62,20 @@ class Scene:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Reading:
-    """What one leakage resistance does: shares of limits and of what may move, as logarithms."""
+    """What one leakage resistance does.
+
+    Attributes:
+        critical, assumed, functional: Logarithm of the largest share of a known limit, of an
+            assumed one, and of what may move.
+        shares: Of every known limit.
+    """
 
     point: CurvePoint
     critical: float
     assumed: float
     functional: float
     functional_text: str
+    shares: Mapping[tuple[str, str], float]
     victims: tuple[Victim, ...]
     assumed_victims: tuple[Victim, ...]
 
@@ -94,6 +110,7 @@ def read(scene: Scene, ohm: float, answer: Answer) -> Reading:
             assumed=nothing,
             functional=nothing,
             functional_text="",
+            shares={},
             victims=(),
             assumed_victims=(),
         )
@@ -101,16 +118,18 @@ def read(scene: Scene, ohm: float, answer: Answer) -> Reading:
     stresses = all_stresses(scene.circuit, waves, removed=scene.removed)
     known = counted(scene.judged, healthy=scene.stresses, but=scene.position.name, assumed=False)
     every = counted(scene.judged, healthy=scene.stresses, but=scene.position.name, assumed=True)
+    known_shares = shares(stresses, known)
     functional, text = moved(signs(scene.circuit, waves, removed=scene.removed), scene.signs)
     volts = waves.mean(waves.voltage(*scene.position.nodes))
     return Reading(
         point=CurvePoint(
             ohm=ohm, leak_A=abs(volts) / ohm, stresses=stresses, nodes=node_means(waves)
         ),
-        critical=excess(stresses, known),
-        assumed=excess(stresses, {k: v for k, v in every.items() if v.assumed}),
+        critical=excess(known_shares),
+        assumed=excess(shares(stresses, {k: v for k, v in every.items() if v.assumed})),
         functional=functional,
         functional_text=text,
+        shares=known_shares,
         victims=timed(
             over(
                 stresses,

@@ -1,7 +1,8 @@
 """At which leakage a position damages its neighbours, and at which the equipment limps.
 
 Swept on the logarithm of the leakage resistance from the insulation down to 1 Ω, a decade at a
-time, halved where anything moves; the crossing with the highest resistance is then closed in on.
+time, halved where a limit may be passed in between; the crossing with the highest resistance is
+then closed in on.
 """
 
 from __future__ import annotations
@@ -9,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Callable, Sequence
 from dataclasses import replace
 from itertools import pairwise
-from math import exp, floor, log, log10, sqrt
+from math import exp, floor, log10, sqrt
 
 from stress.circuit.circuit import Circuit, Position
 from stress.engine.case import Settled
@@ -27,7 +28,8 @@ from stress.study.working import Healthy
 LEAST_OHM = 1.0
 CLOSE = 0.01  # of the resistance, when a crossing is taken as found
 SHOWN_CHANGE = 0.02  # share by which a part must move to stand in the curve
-MOVES = 0.2  # change of a stress between two points that asks for one in between
+NEAR = 0.6  # share of a limit from which it may be passed between two points
+MOVES = 0.2  # change of a stress between two points that may hide more
 SAME = 2e-4  # logarithm of a share that is as good as the limit itself
 REFINEMENTS = 12
 SEARCHED = (stock.NOMINAL, stock.HIGH, stock.DRIVEN)
@@ -91,7 +93,7 @@ def sweep(
     between = [
         (float(f"{sqrt(a * b):.6g}"), a)
         for a, b in _intervals(readings)
-        if _moves(readings[a], readings[b])
+        if _may_hide(readings[a], readings[b])
     ]
     cases = tuple(scene.case(ohm, parent=_parent(scene, above, top)) for ohm, above in between)
     if cases:
@@ -154,15 +156,17 @@ def _intervals(readings: dict[float, Reading]) -> list[tuple[float, float]]:
     return list(pairwise(_solved(readings)))
 
 
-def _moves(above: Reading, below: Reading) -> bool:
-    """Tell whether any stress that counts changes by more than a fifth between two points."""
-    if max(above.functional, below.functional) < log(MOVES):
+def _may_hide(above: Reading, below: Reading) -> bool:
+    """Tell whether a limit may be passed between two points that both keep it.
+
+    So where a stress comes near its limit and changes by more than a fifth.
+    """
+    if max(above.critical, below.critical) > 0.0:
         return False
-    for part, own in below.point.stresses.items():
-        for name, value in own.items():
-            was = above.point.stresses.get(part, {}).get(name, value)
-            if abs(value - was) > MOVES * max(abs(was), abs(value)) and abs(value) > 1e-6:
-                return True
+    for key, share in below.shares.items():
+        was = above.shares.get(key, share)
+        if max(share, was) > NEAR and abs(share - was) > MOVES * max(share, was):
+            return True
     return False
 
 
@@ -175,8 +179,10 @@ def close_in(
 ) -> Plan[float | None]:
     """Return the highest resistance at which a measure turns positive, or None.
 
-    Secant steps on logarithms inside the bracket (regula falsi with the Illinois weight, Dowell
-    and Jarratt 1971); every point that is tried joins `readings`.
+    A small leak moves everything in proportion to its conductance, so the steps are secants of
+    the share against conductance inside the bracket (regula falsi with the Illinois weight,
+    Dowell and Jarratt 1971), halved on the logarithm where that does not close in. Every point
+    that is tried joins `readings`.
     """
     bracket = next(
         (
@@ -189,15 +195,14 @@ def close_in(
     if bracket is None:
         return None
     high, low = bracket
-    f_high, f_low = measure(readings[high]), measure(readings[low])
-    last = 0
+    f_high, f_low = (exp(measure(readings[ohm])) - 1.0 for ohm in bracket)
+    last = same = 0
     for _ in range(REFINEMENTS):
         if high / low < 1.0 + CLOSE or f_low < SAME:
             break
-        span = log(high) - log(low)
-        step = span * f_low / (f_low - f_high)
-        step = min(max(step, 0.02 * span), 0.98 * span)
-        ohm = float(f"{exp(log(low) + step):.6g}")
+        share = f_low / (f_low - f_high)
+        ohm = 1.0 / (share / high + (1.0 - share) / low) if same < 2 else sqrt(high * low)
+        ohm = float(f"{min(max(ohm, low * (1 + CLOSE / 3)), high / (1 + CLOSE / 3)):.6g}")
         if not low < ohm < high:
             break
         parent = _parent(scene, high, insulation_of(scene.position))
@@ -205,8 +210,9 @@ def close_in(
         readings[ohm] = read(scene, ohm, answer)
         if readings[ohm].point.unanswered is not None:
             break
-        value = measure(readings[ohm])
+        value = exp(measure(readings[ohm])) - 1.0
         side = 1 if value >= 0.0 else -1
+        same = same + 1 if side == last else 0
         if side > 0:
             low, f_low = ohm, value
             f_high = f_high / 2.0 if last == side else f_high

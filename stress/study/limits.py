@@ -107,11 +107,16 @@ def counted(
     }
 
 
-def excess(stresses: Stresses, counting: Mapping[tuple[str, str], Limit]) -> float:
-    """Return the logarithm of the largest share of a limit; positive where one is passed."""
-    shares = [
-        stresses.get(part, {}).get(name, 0.0) / limit.value
+def shares(
+    stresses: Stresses, counting: Mapping[tuple[str, str], Limit]
+) -> Mapping[tuple[str, str], float]:
+    """Return the share of every limit that counts; 0 where the stress is not known."""
+    return {
+        (part, name): stresses.get(part, {}).get(name, 0.0) / limit.value
         for (part, name), limit in counting.items()
-    ]
-    most = max(shares, default=0.0)
-    return log(max(most, 1e-9))
+    }
+
+
+def excess(of: Mapping[tuple[str, str], float]) -> float:
+    """Return the logarithm of the largest share of a limit; positive where one is passed."""
+    return log(max(max(of.values(), default=0.0), 1e-9))
