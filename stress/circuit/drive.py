@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Collection, Iterable
 from dataclasses import dataclass
 
-from stress.circuit.graph import GROUND, Edge, Graph
+from stress.circuit.graph import GROUND, Graph
 
 SERIES_OHM = 1000.0  # surge resistors, winding resistances
 POLE_OHM = 100.0
@@ -31,6 +31,7 @@ class Drive:
             the rectified current comes back there.
         line_cores, switched_cores: Inductors of those cores, lower case.
         alternating: Whether the line is no direct voltage.
+        nodes: All driven nodes.
     """
 
     poles: tuple[tuple[frozenset[str], frozenset[str]], ...]
@@ -41,11 +42,7 @@ class Drive:
     line_cores: frozenset[str]
     switched_cores: frozenset[str]
     alternating: bool
-
-    @property
-    def nodes(self) -> frozenset[str]:
-        """All driven nodes."""
-        return (self.line | self.switched | self.pumped) - self.returns
+    nodes: frozenset[str]
 
     def origin(self, node: str) -> str:
         """Return "line", "switched" or "" for what drives a node."""
@@ -81,6 +78,7 @@ def find(graph: Graph, *, line: Iterable[str], gated: Collection[str]) -> Drive:
         line_cores=line_cores,
         switched_cores=switched_cores,
         alternating=alternating,
+        nodes=frozenset((line_nodes - {GROUND} | switched | pumped) - returns),
     )
 
 
@@ -91,11 +89,6 @@ def held(graph: Graph, node: str) -> bool:
         or (e.letter == "V" and graph.elements[e.name.lower()].wave is None)
         for e in graph.around(node)
     )
-
-
-def inductors(graph: Graph, node: str) -> tuple[Edge, ...]:
-    """Return the windings at a node."""
-    return tuple(e for e in graph.around(node) if e.letter == "L")
 
 
 def _poles(graph: Graph, plus: str, minus: str) -> tuple[frozenset[str], frozenset[str]]:
@@ -128,7 +121,7 @@ def _add_chokes(graph: Graph, poles: tuple[set[str], set[str]]) -> None:
     found: tuple[set[str], set[str]] = (set(), set())
     for own, other, new in zip(poles, poles[::-1], found, strict=True):
         for node in own:
-            for edge in inductors(graph, node):
+            for edge in graph.windings(node):
                 there = edge.other(node)
                 core = graph.windings_with(edge.name)
                 if there in own | other | {GROUND} or held(graph, there):
@@ -149,7 +142,7 @@ def _cores_at(graph: Graph, nodes: Collection[str]) -> frozenset[str]:
     """Return the inductors coupled to one that has an end among the nodes."""
     found: set[str] = set()
     for node in nodes:
-        for edge in inductors(graph, node):
+        for edge in graph.windings(node):
             core = graph.windings_with(edge.name)
             if len(core) > 1:
                 found |= set(core)

@@ -7,9 +7,9 @@ the group is ground where ground is among them, else the first in the netlist.
 from __future__ import annotations
 
 import heapq
-from collections.abc import Callable, Collection, Iterable, Mapping, Sequence
+from collections.abc import Callable, Collection, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cache, cached_property
 from itertools import pairwise
 from typing import Any
 
@@ -50,9 +50,7 @@ class Pin:
     @property
     def kind(self) -> str:
         """ "output", "input", "common", "screen", "diode", or "other" (heater, suppressor)."""
-        word = self.role.rstrip("0123456789_")
-        last = word.rpartition("_")[2]
-        return _KINDS.get(word) or _KINDS.get(last, "other")
+        return _kind(self.role)
 
     @property
     def text(self) -> str:
@@ -60,6 +58,12 @@ class Pin:
         word = self.role.rstrip("0123456789_")
         unit = self.role[len(word) :].strip("_")
         return f"{word} {unit} of {self.part}" if unit else f"{word} of {self.part}"
+
+
+@cache
+def _kind(role: str) -> str:
+    word = role.rstrip("0123456789_")
+    return _KINDS.get(word) or _KINDS.get(word.rpartition("_")[2], "other")
 
 
 @dataclass(frozen=True, slots=True)
@@ -141,6 +145,15 @@ class Graph:
                 around.setdefault(edge.a, []).append(edge)
                 around.setdefault(edge.b, []).append(edge)
         self._around = {node: tuple(found) for node, found in around.items()}
+        self._windings = {
+            node: windings
+            for node, found in around.items()
+            if (windings := tuple(e for e in found if e.letter == "L"))
+        }
+        self._junctions: dict[str, list[Junction]] = {}
+        for junction in self.junctions:
+            for node in {junction.anode, junction.cathode}:
+                self._junctions.setdefault(node, []).append(junction)
         self._pins = {node: tuple(found) for node, found in pins.items()}
         self.joints = _joints(netlist.elements)
 
@@ -160,6 +173,19 @@ class Graph:
     def around(self, node: str) -> tuple[Edge, ...]:
         """Return the edges at a group of nodes, those within the group left out."""
         return self._around.get(node, ())
+
+    def between(self, a: str, b: str) -> Iterator[Edge]:
+        """Yield the edges from one group to another."""
+        here, there = (a, b) if len(self.around(a)) <= len(self.around(b)) else (b, a)
+        return (edge for edge in self.around(here) if edge.other(here) == there)
+
+    def junctions_at(self, node: str) -> Sequence[Junction]:
+        """Return the rectifying paths at a group of nodes."""
+        return self._junctions.get(node, ())
+
+    def windings(self, node: str) -> tuple[Edge, ...]:
+        """Return the inductors at a group of nodes."""
+        return self._windings.get(node, ())
 
     def pins(self, node: str) -> tuple[Pin, ...]:
         """Return the pins of tubes and transistors at a group of nodes."""

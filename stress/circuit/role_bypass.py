@@ -43,7 +43,7 @@ def _is_regulated(s: Surroundings, pin: Pin) -> bool:
     part = s.graph.parts[pin.part]
     at = {Pin(part.name, role).kind: s.graph.at(node) for role, node in part.pins.items()}
     held = at.get("input", "")
-    clamped = any(j.cathode == held and not j.tube for j in s.graph.junctions)
+    clamped = any(j.cathode == held and not j.tube for j in s.graph.junctions_at(held))
     rail = at.get("output", "")
     fed = rail in s.supply.feeds and (s.is_held(rail) or rail in s.supply.outputs)
     return fed and held != GROUND and (s.still(held) or clamped)
@@ -91,9 +91,7 @@ def _is_detector(s: Surroundings, c: Edge, node: str) -> bool:
 def _at_detector(s: Surroundings, node: str) -> bool:
     """Say whether a signal rectifier is at a node, or behind the winding there."""
     return bool(_signal_junctions(s, node)) or any(
-        _signal_junctions(s, edge.other(node))
-        for edge in s.graph.around(node)
-        if edge.letter == "L"
+        _signal_junctions(s, edge.other(node)) for edge in s.graph.windings(node)
     )
 
 
@@ -101,16 +99,15 @@ def _signal_junctions(s: Surroundings, node: str) -> list[str]:
     driven = s.drive.nodes
     return [
         j.part
-        for j in s.graph.junctions
-        if node in (j.anode, j.cathode) and not {j.anode, j.cathode} & driven
+        for j in s.graph.junctions_at(node)
+        if j.anode not in driven and j.cathode not in driven
     ]
 
 
 def _detector(s: Surroundings, node: str) -> str:
     found = _signal_junctions(s, node)
-    for edge in s.graph.around(node):
-        if edge.letter == "L":
-            found += _signal_junctions(s, edge.other(node))
+    for edge in s.graph.windings(node):
+        found += _signal_junctions(s, edge.other(node))
     return f"load of {found[0]}" if found else s.words(node)
 
 
@@ -153,9 +150,8 @@ def _return_of(s: Surroundings, node: str) -> list[Near]:
     """Return the grids whose direct current returns through a node: through resistors, or
     through a winding and resistors."""
     found = list(s.near(node, "input", ohm=SIGNAL_OHM))
-    for edge in s.graph.around(node):
-        if edge.letter == "L":
-            found += s.near(edge.other(node), "input", ohm=SIGNAL_OHM)
+    for edge in s.graph.windings(node):
+        found += s.near(edge.other(node), "input", ohm=SIGNAL_OHM)
     reached = s.graph.reach(
         node,
         through=lambda x: x.letter in "RSW",
@@ -165,10 +161,9 @@ def _return_of(s: Surroundings, node: str) -> list[Near]:
     for there, ohm in reached.items():
         if there == node or s.still(there):
             continue
-        for edge in s.graph.around(there):
-            if edge.letter == "L":
-                far = s.direct(edge.other(there), "input")
-                found += [Near(p, ohm) for p in far if not s.still(edge.other(there))]
+        for edge in s.graph.windings(there):
+            far = s.direct(edge.other(there), "input")
+            found += [Near(p, ohm) for p in far if not s.still(edge.other(there))]
     return list({n.pin: n for n in sorted(found, key=lambda n: -n.ohm)}.values())
 
 

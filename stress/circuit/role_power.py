@@ -99,8 +99,8 @@ def _midpoints(s: Surroundings) -> dict[str, set[str]]:
     two rectifiers at one driven node lead to both ends of two large capacitors in series."""
     found: dict[str, set[str]] = {}
     for x in s.drive.nodes:
-        up = {j.cathode for j in s.graph.junctions if j.anode == x}
-        down = {j.anode for j in s.graph.junctions if j.cathode == x}
+        up = {j.cathode for j in s.graph.junctions_at(x) if j.anode == x}
+        down = {j.anode for j in s.graph.junctions_at(x) if j.cathode == x}
         for plus in up - down:
             for minus in down - up:
                 for middle in _held_to(s, plus) & _held_to(s, minus):
@@ -122,18 +122,15 @@ def snubber(s: Surroundings, c: Edge, e: Ends) -> Found:
     if (c.value or 0.0) >= HELD_F:
         return None
     driven = s.drive.nodes | s.drive.pumped
-    for node, far in ((e.a, e.b), (e.b, e.a)):
-        for other in s.graph.around(node):
-            if other.other(node) != far:
-                continue
-            if other.name.lower() in s.gated:
-                return Role.SNUBBER, f"snubber across {other.name}"
-            if other.letter in "SW" or other.name.lower() in s.graph.contacts:
-                return Role.SNUBBER, f"spark quencher across the switch {other.name}"
-            if other.letter == "L" and other.name.lower() in s.drive.switched_cores:
-                return Role.SNUBBER, f"snubber across the winding {other.name}"
-    for j in s.graph.junctions:
-        if {j.anode, j.cathode} == {e.a, e.b} and {e.a, e.b} & driven:
+    for other in s.graph.between(e.a, e.b):
+        if other.name.lower() in s.gated:
+            return Role.SNUBBER, f"snubber across {other.name}"
+        if other.letter in "SW" or other.name.lower() in s.graph.contacts:
+            return Role.SNUBBER, f"spark quencher across the switch {other.name}"
+        if other.letter == "L" and other.name.lower() in s.drive.switched_cores:
+            return Role.SNUBBER, f"snubber across the winding {other.name}"
+    for j in s.graph.junctions_at(e.a) if {e.a, e.b} & driven else ():
+        if e.b in (j.anode, j.cathode):
             return Role.SNUBBER, f"across the rectifier {j.part}"
     for node, far in ((e.a, e.b), (e.b, e.a)):
         if node in s.drive.switched and s.still(far) and node not in s.supply.outputs:
@@ -180,17 +177,18 @@ def _winding_between(s: Surroundings, a: str, b: str) -> Edge | None:
     """Return the winding that leads from one node to another, its copper and a second winding
     on its core passed."""
     for start, end in ((a, b), (b, a)):
-        for first in s.graph.around(start):
-            if first.letter != "L":
-                continue
-            reached = {first.other(start)}
-            for node in tuple(reached):
-                for second in s.graph.around(node):
-                    same = second.name.lower() in s.graph.windings_with(first.name)
-                    alone = len(s.graph.around(node)) == 2 and not s.graph.pins(node)
-                    copper = alone and second.letter == "R" and second.ohm <= COPPER_OHM
-                    if (second.letter == "L" and same and second is not first) or copper:
-                        reached.add(second.other(node))
+        for first in s.graph.windings(start):
+            middle = first.other(start)
+            core = s.graph.windings_with(first.name)
+            reached = {middle}
+            for second in s.graph.windings(middle):
+                if second is not first and second.name.lower() in core:
+                    reached.add(second.other(middle))
+            around = s.graph.around(middle)
+            if len(around) == 2 and not s.graph.pins(middle):
+                copper = around[0] if around[1] is first else around[1]
+                if copper.letter == "R" and copper.ohm <= COPPER_OHM:
+                    reached.add(copper.other(middle))
             if end in reached - {start}:
                 return first
     return None

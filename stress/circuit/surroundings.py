@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Collection, Iterator, Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 from functools import cached_property
 from math import pi
@@ -166,23 +166,32 @@ class Surroundings:
                     return True
         return False
 
-    def fed(self, node: str) -> Iterator[str]:
-        """Yield the nodes that get their direct current through this one."""
-        queue = list(self._children.get(node, ()))
-        while queue:
-            there = queue.pop()
-            yield there
-            queue += self._children.get(there, ())
+    @cached_property
+    def _loads(self) -> dict[str, frozenset[str]]:
+        """The kinds of pins fed from every node, from the ends of the feeds upwards."""
+        found: dict[str, frozenset[str]] = {}
+        order = [n for n, f in self.supply.feeds.items() if f.previous is None]
+        for node in order:  # grows while it is walked: every node after the one that feeds it
+            order += self._children.get(node, ())
+        for node in reversed(order):
+            kinds: set[str] = set()
+            for there in self._children.get(node, ()):
+                kinds |= found[there]
+                kinds |= {p.kind for p in self.graph.pins(there)}
+            found[node] = frozenset(kinds)
+        return found
 
     def loads(self, node: str) -> frozenset[str]:
         """Return the kinds of pins fed from a node, itself left out."""
-        return frozenset(p.kind for there in self.fed(node) for p in self.graph.pins(there))
+        return self._loads.get(node, frozenset())
 
     def larger(self, capacitor: Edge, factor: float = 20.0) -> str | None:
         """Return a capacitor in parallel that is many times larger."""
-        for edge in self.graph.around(capacitor.a):
-            parallel = edge.letter == "C" and edge.other(capacitor.a) == capacitor.b
-            if parallel and (edge.value or 0.0) >= factor * (capacitor.value or 0.0) > 0.0:
+        for edge in self.graph.between(capacitor.a, capacitor.b):
+            if (
+                edge.letter == "C"
+                and (edge.value or 0.0) >= factor * (capacitor.value or 0.0) > 0.0
+            ):
                 return edge.name
         return None
 
@@ -240,6 +249,8 @@ class Surroundings:
         stages = self.stages
         if earlier not in stages or later not in stages:
             return False
+        if stages.has_edge(later, earlier) and self._loops[earlier] != self._loops[later]:
+            return False
         seen, queue = {earlier}, [earlier]
         while queue:
             here = queue.pop()
@@ -253,9 +264,15 @@ class Surroundings:
                     queue.append(there)
         return False
 
+    @cached_property
+    def _loops(self) -> dict[str, int]:
+        """The number of the loop of stages each part is in; alone in its own where in none."""
+        loops = nx.strongly_connected_components(self.stages)
+        return {part: number for number, loop in enumerate(loops) for part in loop}
+
     def winding_at(self, node: str) -> Edge | None:
         """Return a winding at a node."""
-        return next((e for e in self.graph.around(node) if e.letter == "L"), None)
+        return next(iter(self.graph.windings(node)), None)
 
     def words(self, node: str) -> str:
         """Return a node in words: "ground", "plate of XU1", "supply b0", "grid of XU2"."""
