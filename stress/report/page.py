@@ -15,6 +15,7 @@ from markupsafe import Markup
 from stress.finding import Severity
 from stress.report import borne, tables, words
 from stress.report.card import Card, Fact, capacitance, cards
+from stress.report.circuit_map import circuit_map
 from stress.report.leak_curve import VERDICTS
 from stress.report.order import Step, order_of_work
 from stress.report.shopping import shopping_list
@@ -79,6 +80,7 @@ def page(review: Review) -> str:
     environment.filters |= {"fragment": _fragment, "tidy": words.tidy}
     script = (_TEMPLATES / "page.js").read_text(encoding="utf-8")
     shown = cards(review)
+    drawn = circuit_map(review)
     return environment.get_template("page.html").render(
         review=review,
         circuit=review.circuit,
@@ -86,7 +88,7 @@ def page(review: Review) -> str:
         glance=_glance(review),
         cards=shown,
         positions_named={each.name for each in review.circuit.positions},
-        map=None,
+        map=drawn,
         positions=tables.positions(review).place(PAGE),
         parts=tables.parts(review).place(PAGE),
         shopping=shopping_list(review).place(PAGE),
@@ -96,6 +98,7 @@ def page(review: Review) -> str:
         bench=_bench_card(review, shown),
         data={
             "verdicts": VERDICTS,
+            "said": drawn.said if drawn else {},
             "curves": {c.position.name: c.what_if.data for c in shown if c.what_if is not None},
         },
         script=Markup(script),

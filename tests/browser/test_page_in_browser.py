@@ -58,6 +58,28 @@ def test_the_slider_moves_the_numbers_to_those_of_the_document(visit, read):
     assert len(set(places)) == len(curve)
 
 
+def test_the_map_follows_a_fault_to_its_victim(visit):
+    page = visit.go()
+    chip = page.locator('.map .chip[data-position="C5"]')
+    chip.focus()
+    page.keyboard.press("Enter")
+    assert chip.get_attribute("aria-pressed") == "true"
+    assert page.locator(".map .device.lit .name").all_text_contents() == ["XU2"]
+    assert page.locator(".map .chip.lit .name").all_text_contents() == ["C5"]
+    assert (
+        page.locator("#go-said")
+        .inner_text()
+        .startswith(
+            "C5, coupling, plate of XU1 to grid of XU2: its faults would drive past a limit: XU2."
+        )
+    )
+    page.keyboard.press("Space")
+    assert page.locator(".map .lit").count() == 0
+    chip.click()
+    page.locator("#go-said a").click()
+    assert page.evaluate("document.activeElement.dataset.position") == "C5"
+
+
 def test_a_limit_that_is_passed_is_said_in_words(visit):
     page = visit.go()
     card = page.locator("article#C5")

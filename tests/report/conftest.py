@@ -9,7 +9,7 @@ import pytest
 from stress.circuit.circuit import Circuit, Kind, Line, Part, Position, Role
 from stress.engine.case import Proof
 from stress.finding import Finding, Severity
-from stress.netlist.flat import Netlist
+from stress.netlist.flat import Element, Netlist
 from stress.parts.limit import Limit, Rating
 from stress.parts.sheet import Sheet
 from stress.study.result import (
@@ -85,10 +85,21 @@ POSITIONS = (
              rated_V=None),
 )  # fmt: skip
 
+RESISTORS = (("Rp", "bplus", "p1"), ("Rg2", "g2", "0"), ("Rk2", "k2", "0"), ("R9", "bplus", "0"))
+ELEMENTS = (
+    *(
+        Element(name=p.name, letter="C", nodes=p.nodes, value=p.value_F, span=SPAN)
+        for p in POSITIONS
+    ),
+    *(Element(name=n, letter="R", nodes=(a, b), value=1e5, span=SPAN) for n, a, b in RESISTORS),
+)
+
 LIMIT_PLATE = Limit(value=12.0, source="RCA Receiving Tube Manual RC-19 (specimen of a source)")
 PARTS = (
-    Part(name="XU1", kind=Kind.TUBE, type="", span=SPAN),
+    Part(name="XU1", kind=Kind.TUBE, type="", span=SPAN,
+         pins={"plate": "p1", "grid": "avc", "cathode": "0"}),
     Part(name="XU2", kind=Kind.TUBE, type="6V6GT", span=SPAN,
+         pins={"plate": "bplus", "grid": "g2", "cathode": "k2"},
          limits={"plate_W": LIMIT_PLATE,
                  "cathode_A": Limit(value=0.1, source="sheet", rating=Rating.ABSOLUTE)}),
     Part(name="Rk2", kind=Kind.RESISTOR, value=270.0, span=SPAN,
@@ -290,7 +301,7 @@ EXPLANATIONS = {
 def written_by_hand():
     return Review(
         circuit=Circuit(
-            netlist=Netlist(path="lantern.cir", title="lantern", elements=()),
+            netlist=Netlist(path="lantern.cir", title="lantern", elements=ELEMENTS),
             sheet=Sheet(path="lantern.toml"),
             name="Lantern room monitor",
             positions=POSITIONS,

@@ -31,6 +31,34 @@
     show(); // a reload may keep the slider where it was
   }
 
+  // The map: what the faults of a selected position run through stands out.
+  const map = document.querySelector("svg.map");
+  const chips = map ? [...map.querySelectorAll(".chip")] : [];
+  const select = (chip) => {
+    const again = chip.getAttribute("aria-pressed") === "true";
+    for (const each of chips) each.setAttribute("aria-pressed", String(each === chip && !again));
+    map.classList.toggle("selected", !again);
+    const name = chip.dataset.position;
+    for (const each of map.querySelectorAll("[data-chain]")) {
+      each.classList.toggle("lit", !again && each.dataset.chain.split(" ").includes(name));
+    }
+    const said = at("go-said");
+    said.textContent = again ? "Nothing is selected." : `${data.said[name]} `;
+    if (again) return;
+    const link = document.createElement("a");
+    link.href = `#${encodeURIComponent(name)}`;
+    link.textContent = `Open the card of ${name}`;
+    said.append(link);
+  };
+  for (const chip of chips) {
+    chip.addEventListener("click", () => select(chip));
+    chip.addEventListener("keydown", (event) => {
+      if (event.key !== "Enter" && event.key !== " ") return;
+      event.preventDefault();
+      select(chip);
+    });
+  }
+
   // Sorting: numbers by their unrounded value, words after numbers.
   const order = (a, b) => {
     const [x, y] = [a, b].map((cell) => cell.dataset.value);
