@@ -53,7 +53,6 @@ def check(
     from stress.parts.models import subcircuit
     from stress.parts.sheet import Sheet
     from stress.report.inventory import inventory
-    from stress.report.words import encodable
     from stress.text.span import SourceError, SourceErrors
 
     with plain_errors():
@@ -70,8 +69,17 @@ def check(
         circuit, wrong = survey(netlist, known, types=own)
         errors += wrong
     width = shutil.get_terminal_size().columns
-    encoding = sys.stdout.encoding or "utf-8"
     for line in inventory(circuit, errors=errors, width=width):
-        click.echo(encodable(line, encoding))
+        click.echo(_spelt(line))
     if errors or netlist.obstacles:
         sys.exit(UNUSABLE)
+
+
+def _spelt(line: str) -> str:
+    """Return a line as the output can show it."""
+    encoding = (sys.stdout.encoding or "utf-8").lower()
+    if encoding.startswith("utf"):
+        return line
+    from stress.report.words import encodable  # loads much that is not needed else
+
+    return encodable(line, encoding)

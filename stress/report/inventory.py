@@ -7,7 +7,6 @@ from textwrap import wrap
 
 from stress.circuit.circuit import Circuit, Kind, Part, Position
 from stress.finding import Finding
-from stress.report.words import SEVERITIES, amount, plain
 from stress.text.figure import figure
 from stress.text.span import SourceError
 
@@ -39,17 +38,21 @@ def inventory(
     """
     width = max(width, LEAST_WIDTH)
     for line in _lines(circuit, errors, width):
-        yield line if "\n" not in line else plain_lines(line)
+        yield "\n".join(_clean(part) for part in line.split("\n"))
 
 
-def plain_lines(text: str) -> str:
-    """Return a text of several lines without other control characters."""
-    return "\n".join(plain(line) for line in text.split("\n"))
+def _clean(text: str) -> str:
+    """Return a text without what a terminal would obey; a name in a netlist may hold it."""
+    return "".join(c if c.isprintable() or c == "\t" else "�" for c in text)
+
+
+def _amount(value: float | None, unit: str, *, missing: str) -> str:
+    return missing if value is None else figure(value, unit)
 
 
 def _lines(circuit: Circuit, errors: Sequence[SourceError], width: int) -> Iterator[str]:
     netlist = circuit.netlist
-    yield from _item(plain(circuit.name), "", width, indent=0)
+    yield from _item(circuit.name, "", width, indent=0)
     sheet = f"part sheet {circuit.sheet.path}" if circuit.sheet.path else "no part sheet"
     yield from _item(f"{netlist.path}, dialect {netlist.dialect}; {sheet}", "", width, indent=0)
 
@@ -95,24 +98,24 @@ def _listed(title: str, items: Iterable[str], width: int) -> Iterator[str]:
 
 def _item(text: str, name: str, width: int, *, indent: int = 2) -> Iterator[str]:
     """Wrap a text behind a name, with the lines after the first set in."""
-    first = " " * indent + (f"{plain(name):<5} " if name else "")
+    first = " " * indent + (f"{name:<5} " if name else "")
     rest = " " * (indent + (6 if name else 2 if indent else 0))
     for line in wrap(
-        plain(text), width, initial_indent=first, subsequent_indent=rest, break_on_hyphens=False
+        text, width, initial_indent=first, subsequent_indent=rest, break_on_hyphens=False
     ) or [first]:
         yield line.rstrip()
 
 
 def _position(p: Position, width: int) -> Iterator[str]:
     yield from _item(f"{p.role_text}", p.name, width)
-    value = amount(p.value_F, "F", missing="value missing")
-    rated = amount(p.rated_V, "V", missing="rating not known")
+    value = _amount(p.value_F, "F", missing="value missing")
+    rated = _amount(p.rated_V, "V", missing="rating not known")
     plus = "" if p.plus is None or not p.style.polar else f", plus at {p.nodes[p.plus]}"
     source = "" if p.style_source == "sheet" else f" ({p.style_source})"
     can = f", section of {p.can}" if p.can else ""
     text = f"{p.role.value}: {value}, {rated}, {p.style.name}{source}{plus}{can}"
     text += f"; nodes {p.nodes[0]} and {p.nodes[1]}"
-    yield from wrap(plain(text), width, initial_indent=" " * 8, subsequent_indent=" " * 8)
+    yield from wrap(text, width, initial_indent=" " * 8, subsequent_indent=" " * 8)
 
 
 def _pins(part: Part) -> str:
@@ -131,8 +134,8 @@ def _pins(part: Part) -> str:
 def _plain_part(part: Part) -> str:
     shown = part.name
     if part.kind is Kind.WINDING:
-        copper = amount(part.resistance_ohm, "ohm", missing="no resistance drawn")
-        shown += f" {amount(part.value, 'H')}, {copper}"
+        copper = _amount(part.resistance_ohm, "ohm", missing="no resistance drawn")
+        shown += f" {_amount(part.value, 'H', missing='value missing')}, {copper}"
     elif part.value is not None:
         shown += f" {figure(part.value, 'ohm')}"
     return shown
@@ -189,7 +192,7 @@ def _notice(finding: Finding) -> str:
 
 
 def _finding(finding: Finding) -> str:
-    text = f"{finding.where}, {SEVERITIES[finding.severity]}: {finding.text}"
+    text = f"{finding.where}, {finding.severity.value.replace('-', ' ')}: {finding.text}"
     return text + (f" — {finding.action}" if finding.action else "")
 
 
