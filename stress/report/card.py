@@ -115,6 +115,8 @@ def _no_curve(leakage: Leakage | None) -> str:
         return "Its leakage was not studied."
     if not leakage.limited:
         return "Across an ideal source: not limited by the netlist, fuse or wiring decides."
+    if leakage.governing is None:
+        return "No curve: not one condition was solved."
     return "Its leakage drives no stress that has a known limit."
 
 

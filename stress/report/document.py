@@ -9,8 +9,7 @@ from pathlib import Path
 from typing import Any
 
 from stress.circuit.circuit import Part, Position
-from stress.report import borne
-from stress.report.words import NOT_LIMITED
+from stress.report import borne, words
 from stress.study.result import (
     Condition,
     CurvePoint,
@@ -72,7 +71,7 @@ def document(review: Review) -> dict[str, Any]:
                     "severity": each.severity.value,
                     "where": each.where,
                     "condition": each.condition,
-                    "text": f"{each.text} {each.action}".rstrip(),
+                    "text": words.joined(each.text, each.action),
                 }
                 for each in review.findings
             ],
@@ -193,7 +192,7 @@ def _leakage(of: Leakage | None) -> dict[str, Any] | None:
         "critical_A": governing.critical_A if governing else None,
         "assumed_critical_ohm": assumed,
         "functional_reason": governing.functional_reason if governing else None,
-        "reason": NOT_LIMITED if not of.limited else _reason(governing),
+        "reason": words.NOT_LIMITED if not of.limited else _reason(governing),
         "by_condition": {
             each.condition: {
                 **_leakage_in(each),
@@ -219,7 +218,7 @@ def _leakage_in(of: LeakageIn | None) -> dict[str, Any]:
 
 def _reason(of: LeakageIn | None) -> str | None:
     if of is None:
-        return None
+        return words.UNSOLVED  # no condition had an answer to start from
     if of.always:
         return "always"
     return of.unanswered[0].kind if of.critical_ohm is None and of.unanswered else None

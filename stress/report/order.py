@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from stress.finding import Severity
+from stress.report import words
 from stress.study.result import Review
 
 
@@ -44,7 +45,7 @@ def order_of_work(review: Review) -> tuple[Step, ...]:
             severity=each.severity,
             rank=ranks.get(each.where),
             where=each.where,
-            text=f"{each.text} {each.action}".rstrip(),
+            text=words.joined(each.text, each.action),
             rule=each.rule,
         )
         for each in review.findings

@@ -144,7 +144,7 @@ def _position(review: Review, of: Position) -> tuple[Cell, ...]:
     elif not leakage.limited:
         critical = functional = Cell("not limited")
     elif governing is None:
-        critical, functional = Cell(words.NO_DAMAGE), Cell(words.NO_EFFECT)
+        critical = functional = Cell(words.UNSOLVED)
     else:
         critical = Cell(words.critical(governing), governing.critical_ohm)
         functional = Cell(words.functional(governing), governing.functional_ohm)

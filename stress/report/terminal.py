@@ -13,6 +13,7 @@ from stress.finding import Severity
 from stress.report import borne, tables, words
 from stress.report.order import Step, order_of_work
 from stress.report.table import NARROW, WIDE, Table
+from stress.report.tables import NO_LIMIT, PAST, VERDICT, WITHIN
 from stress.report.words import plain
 from stress.study.conditions import INRUSH
 from stress.study.result import Review
@@ -112,8 +113,12 @@ def _steps(steps: list[Step], severity: Severity, out: _Out) -> None:
     if not steps:
         out.line("nothing", indent=2)
     hang = 7 + max((len(step.where) for step in steps), default=0)
+    said = ""
     for step in steps:
-        out.line(step.text, first=f"{step.mark:>4}  {step.where} ", indent=hang)
+        # A place with several findings is named once.
+        mark = "" if step.where == said else f"{step.mark:>4}  {step.where} "
+        out.line(step.text, first=mark, indent=hang)
+        said = step.where
 
 
 def _positions(review: Review, out: _Out) -> None:
@@ -143,11 +148,16 @@ def _explanations(review: Review, out: _Out) -> None:
 def _parts(review: Review, out: _Out) -> None:
     out.heading("Other parts with every capacitor healthy")
     table = tables.parts(review)
-    past = tuple(row for row in table.rows if row[tables.VERDICT].text == tables.PAST)
+    past = tuple(row for row in table.rows if row[VERDICT].text == PAST)
+    judged = [row for row in table.rows if row[VERDICT].text in (PAST, WITHIN)]
+    lost = [row for row in table.rows if row[VERDICT].text not in (PAST, WITHIN, NO_LIMIT)]
     if past:
         out.table(Table(table.name, table.columns, past))
-    else:
+    elif judged:
         out.line("none passes a limit that is known", indent=2)
+    if lost:
+        told = "stress is" if len(lost) == 1 else "stresses are"
+        out.line(f"{len(lost)} {told} not judged: no answer for the condition", indent=2)
     silent = [part.name for part in review.circuit.parts if not part.limits]
     if silent:
         out.line(

@@ -17,6 +17,7 @@ _SPELT = str.maketrans(
 )
 NOT_KNOWN = "not known"
 NOT_STUDIED = "not studied"
+UNSOLVED = "unsolved"
 NO_DAMAGE = "no damage"
 NO_EFFECT = "no effect"
 NOT_LIMITED = "not limited by the netlist"
@@ -121,6 +122,13 @@ def encodable(text: str, encoding: str) -> str:
 def tidy(text: str) -> str:
     """Return text for the page: as `plain`, and numbers stay on the line of their unit."""
     return _BEFORE_UNIT.sub("\u00a0", plain(text))
+
+
+def joined(text: str, action: str) -> str:
+    """Return what is the matter and what to do about it."""
+    if not action:
+        return text
+    return f"{text} {action}" if text.endswith((".", "!", "?")) else f"{text}; {action}"
 
 
 def missing_in(review: Review, condition: str) -> str:

@@ -231,6 +231,7 @@ NO_DAMAGE = LeakageIn(
     governs=True,
 )
 LEAKAGE = {
+    "C7": Leakage(position="C7", governing=None, by_condition=(), text="nothing settled"),
     "C2": Leakage(position="C2", governing=NO_DAMAGE, by_condition=(NO_DAMAGE,)),
     "C5": Leakage(position="C5", governing=LEAK_NOMINAL, by_condition=(LEAK_NOMINAL, LEAK_HIGH)),
     "X3.C9": Leakage(position="X3.C9", governing=None, by_condition=(), limited=False),
@@ -283,6 +284,8 @@ RISKS = (
 FINDINGS = (
     Finding(severity=Severity.REPLACE, where="C5", text="Below 3.91 MΩ XU2 passes its plate limit.",
             action="Fit 0.022 µF film, 630 V.", condition="nominal", rule="critical-leakage"),
+    Finding(severity=Severity.REPLACE, where="C5", text="it may be the first to go",
+            action="look at its wax"),
     Finding(severity=Severity.REPLACE, where="equipment", text="The chassis may be live.",
             action="Use an isolation transformer."),
     Finding(severity=Severity.WATCH, where="R9", text="R9 bears 1.1 W of its 1 W when healthy.",

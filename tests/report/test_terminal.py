@@ -38,6 +38,7 @@ Replace before any power
    -  equipment The chassis may be live. Use an isolation transformer.
   1.  C5        Below 3.91 MΩ XU2 passes its plate limit. Fit 0.022 µF film, 630
                 V.
+                it may be the first to go; look at its wax
   2.  X3.C9     it stands across the line
 
 Test before power
