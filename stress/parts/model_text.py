@@ -2,7 +2,8 @@
 
 Every model is one `.subckt` of behavioural sources and a few capacitors, in plain ngspice
 terms, with the parameter `emission` (0 to 1) that scales all its currents through the source
-`Vemission`, so that a cold tube needs no other model.
+`Vemission`, so that a cold tube needs no other model. Parts of a law stand in inner nodes:
+that halves the time, for a solver differentiates every law by every voltage in it.
 
 Laws, v against the cathode, softplus(x) = ln(1 + e^x):
 
@@ -65,32 +66,33 @@ def _gate(voltage: str, width_V: float) -> str:
     return f"{positive}*{positive}/({positive}*{positive}+{_number(width_V**2)})"
 
 
-def _capacitor(name: str, plus: str, minus: str, value_F: float) -> list[str]:
-    return [f"{name} {plus} {minus} {_number(value_F)}"] if value_F else []
+def _grid(unit: Unit, tag: str, grid: str, cathode: str) -> list[str]:
+    scale = _number(unit["GG"] * GRID_WIDTH_V**GRID_EXPONENT)
+    return [
+        f"By{tag} y{tag} 0 V=(V({grid},{cathode})+{_number(GRID_CONTACT_V)})/{_number(GRID_WIDTH_V)}",
+        f"Bgrid{tag} {grid} {cathode} I=V(em)*{scale}"
+        f"*pow({_softplus(f'V(y{tag})')},{_number(GRID_EXPONENT)})",
+    ]
 
 
-def _grid(unit: Unit, tag: str, grid: str, cathode: str) -> str:
-    x = f"(V({grid},{cathode})+{_number(GRID_CONTACT_V)})/{_number(GRID_WIDTH_V)}"
-    return (
-        f"Bgrid{tag} {grid} {cathode} I=V(em)*{_number(unit['GG'])}"
-        f"*pow({_number(GRID_WIDTH_V)}*{_softplus(x)},{_number(GRID_EXPONENT)})"
-    )
+def _capacitances(unit: Unit, tag: str, plate: str, grid: str, cathode: str) -> list[str]:
+    places = (("gk", grid, cathode), ("gp", grid, plate), ("pk", plate, cathode))
+    return [
+        f"C{name}{tag} {one} {other} {_number(unit['C' + name.upper()])}"
+        for name, one, other in places
+    ]
 
 
 def _triode(unit: Unit, tag: str) -> list[str]:
     plate, grid, cathode = unit.pins
-    vp = f"V({plate},{cathode})"
-    x = (
-        f"{_number(unit['KP'])}*({_number(1 / unit['MU'])}"
-        f"+V({grid},{cathode})/sqrt({_number(unit['KVB'])}+{vp}*{vp}))"
-    )
+    vp, x = f"V({plate},{cathode})", f"V(x{tag})"
     return [
+        f"Bx{tag} x{tag} 0 V={_number(unit['KP'])}*({_number(1 / unit['MU'])}"
+        f"+V({grid},{cathode})/sqrt({_number(unit['KVB'])}+{vp}*{vp}))",
         f"Bplate{tag} {plate} {cathode} I=V(em)*{_number(2 / unit['KG1'])}"
         f"*pow({_number(1 / unit['KP'])}*max({vp},0)*{_softplus(x)},{_number(unit['EX'])})",
-        _grid(unit, tag, grid, cathode),
-        *_capacitor(f"Cgk{tag}", grid, cathode, unit["CGK"]),
-        *_capacitor(f"Cgp{tag}", grid, plate, unit["CGP"]),
-        *_capacitor(f"Cpk{tag}", plate, cathode, unit["CPK"]),
+        *_grid(unit, tag, grid, cathode),
+        *_capacitances(unit, tag, plate, grid, cathode),
     ]
 
 
@@ -98,31 +100,28 @@ def _pentode(unit: Unit, tag: str) -> list[str]:
     plate, screen, grid, cathode = unit.pins[:4]
     control = unit.pins[4] if unit.form == "converter" else grid
     vp, vs = f"V({plate},{cathode})", f"V({screen},{cathode})"
-    space = f"space{tag}"
-    width = f"sqrt({vs}*{vs}+100)"
+    space, share, width, x = (f"{name}{tag}" for name in ("space", "share", "width", "x"))
     drive = f"V({control},{cathode})+{_number(1 / unit['MU'])}*{vs}+{_number(1 / unit['MUA'])}*{vp}"
-    x = f"{_number(unit['KP'])}*({drive})/{width}"
     positive = f"max({vp},0)"
     knee = f"atan({_number(1 / unit['KVB'])}*{positive}*{positive}/({positive}+1))"
-    share = f"{_number(unit['SHARE'] * 0.6366198)}*{knee}"
+    part = f"{_number(unit['SHARE'] * 0.6366198)}*{knee}"
     if unit.form == "converter":
-        share += f"/(1+exp(-({_number(1 / unit['S3'])})*min(V({grid},{cathode})-{_number(unit['V3'])},99)))"
+        signal = f"min(V({grid},{cathode})-{_number(unit['V3'])},99)"
+        part += f"/(1+exp(-({_number(1 / unit['S3'])})*{signal}))"
     lines = [
+        f"Bwidth{tag} {width} 0 V={_number(1 / unit['KP'])}*sqrt({vs}*{vs}+100)",
+        f"Bx{tag} {x} 0 V=({drive})/V({width})",
         # In milliamperes, so that the solver's tolerance for voltages fits it.
         f"Bspace{tag} {space} 0 V=V(em)*{_number(2000 / unit['KG1'])}"
-        f"*pow({_number(1 / unit['KP'])}*{width}*{_softplus(x)},{_number(unit['EX'])})",
-        f"Bplate{tag} {plate} {cathode} I=0.001*V({space})*{share}",
-        f"Bscreen{tag} {screen} {cathode} I=0.001*V({space})*(1-{share})*{_gate(vs, 2.0)}",
-        _grid(unit, tag, control, cathode),
+        f"*pow(V({width})*{_softplus(f'V({x})')},{_number(unit['EX'])})",
+        f"Bshare{tag} {share} 0 V={part}",
+        f"Bplate{tag} {plate} {cathode} I=0.001*V({space})*V({share})",
+        f"Bscreen{tag} {screen} {cathode} I=0.001*V({space})*(1-V({share}))*{_gate(vs, 2.0)}",
+        *_grid(unit, tag, control, cathode),
     ]
     if control != grid:
-        lines.append(_grid(unit, f"{tag}s", grid, cathode))
-    return [
-        *lines,
-        *_capacitor(f"Cgk{tag}", grid, cathode, unit["CGK"]),
-        *_capacitor(f"Cgp{tag}", grid, plate, unit["CGP"]),
-        *_capacitor(f"Cpk{tag}", plate, cathode, unit["CPK"]),
-    ]
+        lines += _grid(unit, f"{tag}s", grid, cathode)
+    return [*lines, *_capacitances(unit, tag, plate, grid, cathode)]
 
 
 def _rectifier(unit: Unit, tag: str) -> list[str]:
@@ -144,7 +143,7 @@ def _diode(unit: Unit, tag: str) -> list[str]:
     return [
         f"Bdiode{tag} {plate} {cathode} I=V(em)*{_number(unit['K'])}"
         f"*pow({_number(GRID_WIDTH_V)}*{_softplus(x)},1.5)",
-        *_capacitor(f"Cd{tag}", plate, cathode, unit["CD"]),
+        f"Cd{tag} {plate} {cathode} {_number(unit['CD'])}",
     ]
 
 
