@@ -93,6 +93,10 @@ class Assembly:
             )
         )
 
+    def holds(self, name: str) -> bool:
+        """Whether an element of that name is there."""
+        return name.lower() in self._seen
+
     def knows_model(self, scope: Scope, name: str) -> bool:
         """Whether a model of that name can be used here."""
         return self._find(scope, name.lower()) is not None

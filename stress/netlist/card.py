@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass
-from functools import cached_property
+from typing import NamedTuple
 
 from stress.netlist.source import MOST_COLUMNS, Source
 from stress.text.span import SourceError, Span
 
 _BLANK_COMMENT = re.compile(r"\s(?:\$|//)|^\s*//|^\$")
 _JOINED = re.compile(r"\\{1,2}\s*$")
+_PLAIN = re.compile(r"(?:[^{}'\"(]|(?<!-)\()*")  # no braces, quotes, nor "Net-(C1-Pad1)"
+_PIECE = re.compile(r"[^\s,=()]+|[=()]")
 _FIELD = re.compile(
     r"""(?P<blank>[\s,]+)
     |(?P<mark>[=()])
@@ -21,8 +22,7 @@ _FIELD = re.compile(
 )
 
 
-@dataclass(frozen=True, slots=True)
-class Field:
+class Field(NamedTuple):
     """A piece of a card.
 
     Attributes:
@@ -46,6 +46,7 @@ class Card:
     ) -> None:
         """Take the joined text; a piece is (offset in it, line index, column from 0)."""
         self.source, self.index, self.text, self.pieces = source, index, text, pieces
+        self._fields: tuple[Field, ...] | None = None
 
     def span(self, start: int, end: int, within: tuple[str, ...] = ()) -> Span:
         """Return the place of some of its characters, cut at the end of a line."""
@@ -88,14 +89,16 @@ class Card:
             start, end = at
         return SourceError(message, self.span(start, end, within), hint)
 
-    @cached_property
+    @property
     def fields(self) -> tuple[Field, ...]:
         """The fields in order.
 
         Raises:
             SourceError: A brace or quote that is never closed.
         """
-        return tuple(_fields(self))
+        if self._fields is None:
+            self._fields = tuple(_fields(self))
+        return self._fields
 
     @property
     def word(self) -> str:
@@ -190,6 +193,11 @@ def _too_long(source: Source, index: int, text: str) -> SourceError:
 
 def _fields(card: Card) -> list[Field]:
     text, found, at = card.text, [], 0
+    if _PLAIN.fullmatch(text):
+        return [
+            Field("mark" if match[0] in "=()" else "word", match[0], *match.span())
+            for match in _PIECE.finditer(text)
+        ]
     while at < len(text):
         match = _FIELD.match(text, at)
         assert match is not None  # the last alternative takes any character

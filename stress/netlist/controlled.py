@@ -57,7 +57,7 @@ def controlled(part: Part, into: Assembly) -> None:
     if len(part.words) < 3 + controls:
         _too_short(part)
     gain = part.quantity(part.words[2 + controls])
-    times = _times(part)
+    times = _multiplier(part)
     if by_current:
         control: Expression = Current(part.scope.element(part.words[2].text))
     else:
@@ -80,7 +80,12 @@ def controlled(part: Part, into: Assembly) -> None:
         into.add(part, part.letter, part.nodes(4), value)
 
 
-def _times(part: Part) -> float:
+def _times(a: Expression, b: Expression) -> Expression:
+    zero = Number(0.0)
+    return zero if zero in (a, b) else Binary("*", a, b)
+
+
+def _multiplier(part: Part) -> float:
     own = part.take("m")
     return part.scope.multiplier * (1.0 if own is None else own)
 
@@ -97,7 +102,7 @@ def _too_short(part: Part) -> None:
 
 def _behave(part: Part, into: Assembly, found: Expression) -> None:
     quantity = "V" if part.letter in "EH" else "I"
-    times = _times(part)
+    times = _multiplier(part)
     if quantity == "I" and times != 1:
         found = Binary("*", Number(times), found)
     into.add(part, "B", part.nodes(2), law=Law(quantity, found))
@@ -212,9 +217,10 @@ def polynomial(controls: Sequence[Expression], coefficients: Sequence[float]) ->
     if len(controls) == 1:
         found: Expression = Number(coefficients[-1])
         for coefficient in reversed(coefficients[:-1]):
-            found = Binary("*", controls[0], found)
+            found = _times(controls[0], found)
             if coefficient:
-                found = Binary("+", Number(coefficient), found)
+                constant = Number(coefficient)
+                found = constant if found == Number(0.0) else Binary("+", constant, found)
         return found
     terms: list[Expression] = []
     left = list(coefficients)
@@ -227,8 +233,9 @@ def polynomial(controls: Sequence[Expression], coefficients: Sequence[float]) ->
             if coefficient:
                 term: Expression = Number(coefficient)
                 for which in chosen:
-                    term = Binary("*", term, controls[which])
-                terms.append(term)
+                    term = _times(term, controls[which])
+                if term != Number(0.0):
+                    terms.append(term)
         degree += 1
     return _sum(terms)
 

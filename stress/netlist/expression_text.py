@@ -23,8 +23,9 @@ _SAME = frozenset(
     {"abs", "sgn", "exp", "sin", "cos", "tan", "atan", "sinh", "cosh", "tanh", "floor", "ceil"}
     | {"min", "max", "ddt"}
 )
-_NAMED = {"round": "nint", "step": "u", "ramp": "uramp"}
+_NAMED = {"round": "nint", "ramp": "uramp"}
 _SMALL = "1e-30"  # stands for a base of 0 where the slope of the power is infinite
+_LEAST = "1e-300"  # the logarithm of less is out of range
 
 
 def expression_text(expression: Expression) -> str:
@@ -48,17 +49,12 @@ def _text(part: Expression) -> str:
         return f"i({part.element})"
     if isinstance(part, Unary):
         if part.operator == "!":
-            return f"({_text(part.operand)} != 0 ? 0 : 1)"
+            return f"(({_text(part.operand)} != 0.0) ? 0.0 : 1.0)"
         return f"(-{_text(part.operand)})"
     if isinstance(part, Conditional):
-        return f"({_truth(part.test)} ? {_text(part.yes)} : {_text(part.no)})"
+        return f"({_text(part.test)} ? {_text(part.yes)} : {_text(part.no)})"
     assert isinstance(part, Name)
     return part.name
-
-
-def _truth(part: Expression) -> str:
-    """Return a test; ngspice counts whatever is not 0 as true."""
-    return _text(part)
 
 
 def _operation(part: Binary) -> str:
@@ -77,10 +73,12 @@ def _call(part: Call) -> str:
     if name in ("pow", "pows", "power"):
         return _raised(name, arguments[0], arguments[1])
     x = texts[0]
+    if name == "step":  # u() of ngspice is a half at 0
+        return f"(({x} > 0.0) ? 1.0 : 0.0)"
     if name == "sqrt":
-        return f"sqrt(max({x},0.0))" if _steady(arguments[0]) else f"sqrt(max({x},{_SMALL}))"
+        return f"sqrt({_at_least(arguments[0], _SMALL)})"
     if name in ("ln", "log10"):
-        return f"{'log' if name == 'log10' else 'ln'}{'10' if name == 'log10' else ''}(max({x},1e-300))"
+        return f"{name}({_at_least(arguments[0], _LEAST)})"
     if name in ("asin", "acos"):
         return f"{name}(min(max({x},-1.0),1.0))"
     if name == "limit":
@@ -91,25 +89,35 @@ def _call(part: Call) -> str:
     return _angle(texts[0], texts[1])
 
 
-def _steady(part: Expression) -> bool:
-    return isinstance(part, Number)
+def _at_least(part: Expression, least: str) -> str:
+    """Return the text of a part that ngspice never sees below a bound."""
+    return _text(part) if _bounded(part, float(least)) else f"max({_text(part)},{least})"
+
+
+def _bounded(part: Expression, least: float) -> bool:
+    """Whether a part is by its form never below a bound, so that a guard is there already."""
+    if isinstance(part, Number):
+        return part.value >= least
+    if isinstance(part, Call) and part.function == "max":
+        return any(_bounded(argument, least) for argument in part.arguments)
+    return isinstance(part, Call) and part.function in ("abs", "sqrt") and least <= 0
 
 
 def _raised(name: str, base: Expression, power: Expression) -> str:
     x, y = _text(base), _text(power)
     number = power.value if isinstance(power, Number) else None
-    size = f"abs({x})" if number is not None and number >= 1 else f"max(abs({x}),{_SMALL})"
+    size = x if _bounded(base, 0.0) else f"abs({x})"
+    if (number is None or number < 1) and not _bounded(base, float(_SMALL)):
+        size = f"max({size},{_SMALL})"
     raised = f"pow({size},{y})"
-    if name == "pow":
+    if name == "pow" or _bounded(base, 0.0):
         return raised
     if name == "pows":
         return f"(sgn({x})*{raised})"
-    if isinstance(base, Number) and base.value > 0:
-        return f"pow({x},{y})"
     if number is not None and number == int(number):
         return raised if number % 2 == 0 else f"(sgn({x})*{raised})"
     if number is not None:
-        return f"({x} > 0 ? {raised} : 0)"
+        return f"(({x} > 0.0) ? {raised} : 0.0)"
     odd = f"(floor({y}/2)*2 == {y} ? {raised} : (-{raised}))"
     return f"({x} >= 0 ? {raised} : (floor({y}) == {y} ? {odd} : 0))"
 

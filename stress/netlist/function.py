@@ -146,6 +146,9 @@ NAMED: dict[str, tuple[int, int, Callable[..., Expression]]] = {
 
 def _extended(x: Expression, *points: Expression) -> Expression:
     """A table whose ends go on with their last slopes, as pwl() of ngspice does (measured)."""
+    held_x = _held(x, points)
+    if held_x is not None:
+        return call("table", held_x, *points)
     held = call("table", x, *points)
     if len(points) < 4:
         return held
@@ -156,6 +159,15 @@ def _extended(x: Expression, *points: Expression) -> Expression:
     low = Binary("*", before, call("ramp", Binary("-", x1, x)))
     high = Binary("*", after, call("ramp", Binary("-", x, v2)))
     return Binary("+", Binary("-", held, low), high)
+
+
+def _held(x: Expression, points: Arguments) -> Expression | None:
+    """Return y where x is min(max(y, first), last): a table as `expression_text` writes it."""
+    if isinstance(x, Call) and x.function == "min" and x.arguments[1] == points[-2]:
+        inner = x.arguments[0]
+        if isinstance(inner, Call) and inner.function == "max" and inner.arguments[1] == points[0]:
+            return inner.arguments[0]
+    return None
 
 
 def _square(x: Expression) -> Expression:

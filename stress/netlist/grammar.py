@@ -11,6 +11,7 @@ from stress.netlist.controlled import behavioural, controlled
 from stress.netlist.magnetic import coupling, inductor
 from stress.netlist.part import Part
 from stress.netlist.passive import resistor
+from stress.netlist.problem import Obstacle
 from stress.netlist.semiconductor import coupled_lines, line, semiconductor, switch
 from stress.netlist.stimulus import source
 
@@ -56,6 +57,17 @@ NO_DEVICE = {
 }
 
 
+# What of a card that cannot be simulated still goes into the inventory: so many nodes.
+_CONNECTS = {"R": 2, "C": 2, "L": 2, "V": 2, "I": 2, "D": 2, "Q": 3, "J": 3, "Z": 3, "M": 3}
+
+
+def _remains(part: Part, into: Assembly) -> None:
+    """Keep the element with its nodes alone, so that the graph is whole."""
+    nodes = _CONNECTS.get(part.letter, 0)
+    if nodes and len(part.words) >= nodes and not into.holds(part.full):
+        into.add(part, part.letter, part.nodes(nodes))
+
+
 def read_element(part: Part, into: Assembly) -> None:
     """Read one element card.
 
@@ -64,7 +76,11 @@ def read_element(part: Part, into: Assembly) -> None:
     """
     row = GRAMMAR.get(part.letter)
     if row is not None:
-        row.read(part, into)
+        try:
+            row.read(part, into)
+        except Obstacle:
+            _remains(part, into)
+            raise
         return
     if part.letter in NO_DEVICE:
         raise part.obstacle(

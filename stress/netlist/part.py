@@ -47,7 +47,7 @@ class Part:
             )
         self.head = fields[0]
         self.name = self.head.text
-        self.full = scope.prefix + self.name
+        self.full = scope.element(self.name)
         self.letter = self.name[0].upper()
         self.fields = fields[1:]
         self.words: list[Field] = []

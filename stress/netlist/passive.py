@@ -21,7 +21,9 @@ _UNITS = {
 
 def kept(part: Part) -> dict[str, float]:
     """Take the parameters that go with the element as they are."""
-    found = {}
+    found: dict[str, float] = {}
+    if not part.given:
+        return found
     tc = part.given.pop("tc", None)
     if tc is not None:
         at = part.card.text.find(",", tc.end - 1)
@@ -83,6 +85,8 @@ def value_word_of(part: Part, letter: str) -> Field | None:
     """Return the word that should be the value, two of them joined where they belong together."""
     if len(part.words) < 3:
         return None
+    if len(part.words) == 3:
+        return part.words[2]
     for joined in (_comma(part, 2), _unit_apart(part, letter, 2)):
         if joined is not None:
             del part.words[3]

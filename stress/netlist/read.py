@@ -10,6 +10,7 @@ from stress.netlist.control import initial, options, transient, unknown
 from stress.netlist.dialect import DIALECTS, recognise
 from stress.netlist.expand import Expansion
 from stress.netlist.flat import Netlist
+from stress.netlist.flattened import FlatScope, is_flattened, tagged
 from stress.netlist.outline import Outline
 from stress.netlist.problem import Problems
 from stress.netlist.resolve import resolve
@@ -88,12 +89,15 @@ def _read(
 
     outline = Outline(files, problems, into.dollar, control)
     top = Block("", None, source)
-    scope = Scope(top, world=world)
+    flattened = is_flattened(source.lines)
+    scope = FlatScope(top, world=world) if flattened else Scope(top, world=world)
     outline.fill(top, Lines(source, 1, len(source.lines)), scope)
     expansion = Expansion(outline, into, problems, world, built_in)
     _later(top, scope, into, settings, problems)
     expansion.block(scope)
     elements = resolve(into, problems)
+    if flattened:
+        elements = tagged(elements, source.lines)
     if len(problems.errors) > 2 and not elements and not into.instances:
         first = problems.sorted_errors()[:3]
         what = SourceError(

@@ -19,9 +19,7 @@ from stress.netlist.expression import (
 )
 from stress.netlist.expression_text import expression_text
 from stress.netlist.flat import Element, Model, Netlist, Wave
-
-MARK = "* flat netlist: every name stands behind its letter and a dot"
-TAGS = "* tags "
+from stress.netlist.flattened import MARK, TAGS
 
 
 def write(netlist: Netlist) -> str:
@@ -33,8 +31,8 @@ def write(netlist: Netlist) -> str:
     """
     lines = [f"* {netlist.title}", MARK]
     letters = {element.name.lower(): element.letter for element in netlist.elements}
-    for model in netlist.models.values():
-        lines.append(_model(model))
+    used = {element.model for element in netlist.elements}
+    lines += [_model(model) for key, model in netlist.models.items() if key in used]
     for element in netlist.elements:
         lines.append(_card(element, letters))
         tags = _tags(element)
