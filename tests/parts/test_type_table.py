@@ -88,7 +88,14 @@ SPOT = [
     ("83", "reverse_V", 1550.0, "GE ET-T464 2-47"),
     ("5R4GY", "average_A", 0.250, "tubeofile.com page 5R4"),
     ("6X4", "reverse_V", 1250.0, "RCA RC-19"),
-    ("KT66", "screen_W", 3.5, "GEC KT66 4-63"),
+    ("KT66", "screen_W", 3.5, "TDSL list"),
+    ("KT66", "plate_W", 25.0, "TDSL list"),
+    ("EL34", "screen_W", 8.0, "TDSL list"),
+    ("EL84", "cathode_A", 0.065, "TDSL list"),
+    ("6SJ7", "screen_W", 0.7, "TDSL list"),
+    ("6AQ5", "plate_W", 12.0, "TDSL list"),
+    ("12AX7", "plate_W", 1.0, "TDSL list"),
+    ("6AC7", "plate_V", 300.0, "RCA 6AC7 as listed"),
     ("6973", "screen_V", 330.0, "RCA 6973 10-60"),
 ]
 
