@@ -2,20 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
-from stress.netlist.expression import (
-    Binary,
-    Call,
-    Conditional,
-    Current,
-    Expression,
-    Name,
-    Number,
-    Unary,
-    Voltage,
-)
+from stress.engine.tree import everything, inner, rebuilt
+from stress.netlist.expression import Current, Expression, Voltage
 from stress.netlist.expression_text import expression_text
 from stress.netlist.flat import Element, Model, Wave
 
@@ -57,7 +48,7 @@ def name_all(elements: Iterable[Element], models: Mapping[str, Model]) -> Names:
         devices[element.name.lower()] = f"{_letter(element)}{len(devices) + 1}"
         read: list[str] = []
         if element.law is not None:
-            for each in parts(element.law.expression):
+            for each in everything(element.law.expression):
                 if isinstance(each, Voltage):
                     read += [each.plus, each.minus]
         for node in (*element.nodes, *read):
@@ -75,7 +66,7 @@ def sensed(elements: Iterable[Element]) -> frozenset[str]:
         if element.law is not None:
             found.update(
                 each.element.lower()
-                for each in parts(element.law.expression)
+                for each in everything(element.law.expression)
                 if isinstance(each, Current)
             )
     return frozenset(found)
@@ -187,35 +178,5 @@ def _renamed(expression: Expression, names: Names) -> Expression:
             return Voltage(names.node(plus), names.node(minus))
         case Current(element):
             return Current(names.device(element))
-        case Call(function, arguments):
-            return Call(function, tuple(_renamed(each, names) for each in arguments))
-        case Unary(operator, operand):
-            return Unary(operator, _renamed(operand, names))
-        case Binary(operator, left, right):
-            return Binary(operator, _renamed(left, names), _renamed(right, names))
-        case Conditional(test, yes, no):
-            return Conditional(_renamed(test, names), _renamed(yes, names), _renamed(no, names))
-        case Name() | Number():
-            return expression
-
-
-def parts(expression: Expression) -> Iterator[Expression]:
-    """Yield an expression and everything in it."""
-    yield expression
-    inner: tuple[Expression, ...] = ()
-    match expression:
-        case Call(_, arguments):
-            inner = arguments
-        case Unary(_, operand):
-            inner = (operand,)
-        case Binary(_, left, right):
-            inner = (left, right)
-        case Conditional(test, yes, no):
-            inner = (test, yes, no)
-    for each in inner:
-        yield from parts(each)
-
-
-def reads_time(expression: Expression) -> bool:
-    """Whether an expression depends on time by itself."""
-    return any(isinstance(each, Name) and each.name.lower() == "time" for each in parts(expression))
+        case _:
+            return rebuilt(expression, [_renamed(part, names) for part in inner(expression)])

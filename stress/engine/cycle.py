@@ -35,7 +35,7 @@ class Grid:
         more: Further options.
     """
 
-    points: int = 170
+    points: int = 240
     reltol: float = FINE
     more: str = ""
 

@@ -8,8 +8,10 @@ from dataclasses import dataclass, field, replace
 
 from stress.engine import card
 from stress.engine.case import Twin
+from stress.engine.ease import NODE, eased
 from stress.engine.periodic import has_amplitude, scaled, settled, shifted
 from stress.engine.topology import gaps
+from stress.engine.tree import reads_time
 from stress.netlist.flat import Element, Wave
 from stress.text.unit import unit
 
@@ -29,6 +31,7 @@ class State:
         device: Name in the deck.
         plus, minus: Nodes of the deck, of a capacitor; of an inductor `plus` is its vector.
         size: Farad or henry.
+        start: Volts or amperes that the card gives to start from, or None.
     """
 
     element: str
@@ -37,6 +40,7 @@ class State:
     plus: str
     minus: str
     size: float
+    start: float | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -96,18 +100,21 @@ class Draft:
         twin: The circuit.
         removed: Elements that are left out; what couples or senses them goes with them.
         forever: Whether sources are taken in the form that they settle to.
+        easy: Whether laws are written as ngspice computes them fastest.
 
     Raises:
         LoopOfSources: Where voltage sources form a loop.
     """
 
-    def __init__(self, twin: Twin, removed: frozenset[str], *, forever: bool) -> None:
+    def __init__(
+        self, twin: Twin, removed: frozenset[str], *, forever: bool, easy: bool = True
+    ) -> None:
         self.twin = twin
         self._forever = forever
         self._notices: list[str] = []
         kept = _without(twin.elements, frozenset(name.lower() for name in removed))
         kept = tuple(element for element in kept if not _is_nothing(element))
-        kept = self._metered(kept)
+        kept = self._metered(eased(kept) if easy else kept)
         found = gaps(kept)
         self._floating, self._stiff = found.floating, frozenset(n.lower() for n in found.stiff)
         self.names = card.name_all(kept, twin.models)
@@ -148,7 +155,7 @@ class Draft:
         )
         moving = any(e.wave is not None and has_amplitude(e.wave) for e in entries.values())
         moving = moving or any(
-            e.element.law is not None and card.reads_time(e.element.law.expression)
+            e.element.law is not None and reads_time(e.element.law.expression)
             for e in entries.values()
         )
         probes = self._probes(frozenset(name.lower() for name in keep))
@@ -249,17 +256,17 @@ class Draft:
         if element.letter not in "CL" or (element.law is not None and entry.value is None):
             return None
         device = self.names.device(element.name)
-        size = abs(entry.value or 0.0)
+        size, start = abs(entry.value or 0.0), element.parameters.get("ic")
         if element.letter == "L":
-            return State(element.name, device, "L", f"{device}#branch", "", size)
+            return State(element.name, device, "L", f"{device}#branch", "", size, start)
         plus, minus = (self.names.node(node) for node in element.nodes[:2])
-        return State(element.name, device, "C", plus, minus, size)
+        return State(element.name, device, "C", plus, minus, size, start)
 
     def _probes(self, keep: frozenset[str]) -> tuple[Probe, ...]:
         rows = [
             Probe(f"v({node})", deck)
             for node, deck in self.names.nodes.items()
-            if deck != "0" and not node.endswith("#sense")
+            if deck != "0" and not node.endswith("#sense") and not node.startswith(NODE)
         ]
         wanted = {name.lower() for name in self.twin.currents}
         for key, entry in self._entries.items():

@@ -70,10 +70,13 @@ def translated(deck: Deck, memory: Memory) -> dict[str, float]:
 
 
 def start_from(deck: Deck, node_V: Mapping[str, float]) -> Floats:
-    """Return the state that node voltages of a deck mean, currents at 0; shape (n,)."""
-    return np.array(
-        [
-            node_V.get(state.plus, 0.0) - node_V.get(state.minus, 0.0) if state.kind == "C" else 0.0
-            for state in deck.states
-        ]
-    )
+    """Return the state that the cards and node voltages of a deck mean, else 0; shape (n,)."""
+    found = []
+    for state in deck.states:
+        if state.start is not None:
+            found.append(state.start)
+        elif state.kind == "C":
+            found.append(node_V.get(state.plus, 0.0) - node_V.get(state.minus, 0.0))
+        else:
+            found.append(0.0)
+    return np.array(found, dtype=np.float64)

@@ -11,21 +11,21 @@ import numpy as np
 from stress.engine.case import Answer, Floats, Proof, Settled, Wandering, Waves
 from stress.engine.cycle import CycleMap, Grid, end_state
 from stress.engine.deck import Deck
-from stress.engine.fixed_point import Point, approach, jacobian, mix, spectral_radius
+from stress.engine.fixed_point import Point, approach, jacobian, spectral_radius
 from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
 from stress.engine.ngspice import Ngspice, RunFailed
 from stress.engine.plain import CHUNK, MOST_PERIODS, Course, departs, follow, follow_from_rest, told
 from stress.engine.refine import alike
 
 DISTANCE = 3e-5  # accepted distance to the fixed point, in yardsticks
-NEAR = 1e-2  # where mixing hands over to Newton's method
-MIXED_CYCLES = 40
+PLAIN_PERIODS = 8  # from rest, before the first Jacobian
+MORE_PERIODS = 3  # before each further one
+TURNS, TURN_CYCLES = 8, 12
+COARSE_TURNS = 2  # before the grid is made finer
 WARM_CYCLES = 14
-NEUTRAL = 0.99  # a multiplier above this: nothing loads the supply
 UNSTABLE = 1.01
 FAST_F = 2e-7  # farad per second of period: smaller capacitors are tested in groups
 FAST_H = 0.1  # henry per second of period, likewise
-BELOW_ROUNDS, BELOW_CYCLES = 8, 6
 AFAR = 1e-3  # the same for what can only be run from rest
 FINEST = 2720  # points a period
 
@@ -82,38 +82,39 @@ class Search:
             else:
                 y = self.counted(phi, x)
             matrix = self.jacobian(phi, x, y)
-            if spectral_radius(matrix) <= NEUTRAL:
-                point = self.near(phi, x, matrix, most=WARM_CYCLES)
-                if point.found:
-                    return phi, point
+            point = self.near(phi, x, matrix, most=WARM_CYCLES, after=y)
+            if point.found:
+                return phi, point
         except RunFailed:
             pass  # from rest it may still be reached
         return self.from_rest(grid)
 
     def from_rest(self, grid: Grid) -> tuple[CycleMap, Point]:
-        """Search from rest, or from `.ic`."""
-        phi = self.map(grid, self.deck.initial_V)
-        start = start_from(self.deck, self.deck.initial_V)
-        x, y = self.mixed(phi, start)
-        matrix = self.jacobian(phi, x, y)
-        if spectral_radius(matrix) <= NEUTRAL:
-            point = self.near(phi, y, matrix, most=WARM_CYCLES)
-            if point.found:
-                return phi, point
-        phi = self.map(grid, self.deck.initial_V)
-        return phi, self.from_below(phi, start)
+        """Search from rest, or from `.ic`, with a Jacobian of its own every few cycles.
 
-    def from_below(self, phi: CycleMap, start: Floats) -> Point:
-        """Search from rest with a fresh Jacobian every few steps."""
-        x = start
-        for _ in range(BELOW_ROUNDS):
+        Raises:
+            RunFailed: Where not even the plain transient runs.
+        """
+        phi = self.map(grid, self.deck.initial_V)
+        x = start_from(self.deck, self.deck.initial_V)
+        x = self.counted(phi, x, periods=PLAIN_PERIODS)
+        for turn in range(TURNS):
             y = self.counted(phi, x)
-            matrix = self.jacobian(phi, x, y)
-            point = self.near(phi, x, matrix, most=BELOW_CYCLES)
-            if point.found:
-                break
-            x = point.x
-        return point
+            try:
+                matrix = self.jacobian(phi, x, y)
+                point = self.near(phi, x, matrix, most=TURN_CYCLES, after=y)
+                if point.found:
+                    break
+                y = point.y
+            except RunFailed:
+                phi.put_nodes({})  # a step led to where nothing can be solved
+                point = Point.lost(x, y)
+            x = self.counted(phi, y, periods=MORE_PERIODS)
+            if turn >= COARSE_TURNS and phi.grid.points < FINEST:
+                # Where the step is too coarse for an edge the map is not smooth.
+                finer = replace(phi.grid, points=2 * phi.grid.points)
+                phi = self.map(finer, phi.node_V)
+        return phi, point
 
     def refined(self, phi: CycleMap, point: Point) -> tuple[CycleMap, Point]:
         """Halve the steps until the stresses hold still; keep the coarser of the last two."""
@@ -261,21 +262,10 @@ class Search:
         """Return the cycle map on a grid."""
         return CycleMap(self.ngspice, self.deck, grid=grid, node_V=node_V)
 
-    def counted(self, phi: CycleMap, x: Floats) -> Floats:
-        """Return the state after one period."""
-        self.cycles += 1
-        return phi(x)
-
-    def mixed(self, phi: CycleMap, start: Floats) -> tuple[Floats, Floats]:
-        """Return a state somewhere near the fixed point, and the one after it."""
-        x, y, _ = mix(
-            lambda x: self.counted(phi, x),
-            start,
-            yardstick=phi.scale,
-            tolerance=NEAR,
-            most=MIXED_CYCLES,
-        )
-        return x, y
+    def counted(self, phi: CycleMap, x: Floats, *, periods: int = 1) -> Floats:
+        """Return the state after some periods, which count."""
+        self.cycles += periods
+        return phi(x, periods=periods)
 
     def jacobian(self, phi: CycleMap, x: Floats, y: Floats) -> Floats:
         """Return the Jacobian at x, its cycles counted apart."""
@@ -290,12 +280,21 @@ class Search:
         self.jacobian_cycles += phi.cycles - before
         return matrix
 
-    def near(self, phi: CycleMap, x: Floats, matrix: Floats, *, most: int) -> Point:
+    def near(
+        self,
+        phi: CycleMap,
+        x: Floats,
+        matrix: Floats,
+        *,
+        most: int,
+        after: Floats | None = None,
+    ) -> Point:
         """Search from a state near the fixed point."""
         return approach(
             lambda x: self.counted(phi, x),
             x,
             matrix,
+            after=after,
             yardstick=phi.scale,
             tolerance=DISTANCE,
             most=most,

@@ -82,7 +82,7 @@ class _Process:
     def __init__(self) -> None:
         self._ngspice: Ngspice | None = None
         self._twins: OrderedDict[str, Twin] = OrderedDict()
-        self._drafts: OrderedDict[tuple[str, frozenset[str], bool], Draft] = OrderedDict()
+        self._drafts: OrderedDict[tuple[str, frozenset[str], bool, bool], Draft] = OrderedDict()
 
     @property
     def ngspice(self) -> Ngspice:
@@ -90,11 +90,11 @@ class _Process:
             self._ngspice = Ngspice()
         return self._ngspice
 
-    def draft(self, job: Job, *, forever: bool) -> Draft:
-        key = (job.twin, job.removed, forever)
+    def draft(self, job: Job, *, forever: bool, easy: bool = True) -> Draft:
+        key = (job.twin, job.removed, forever, easy)
         draft = self._drafts.get(key)
         if draft is None:
-            draft = Draft(self._twin(job.twin), job.removed, forever=forever)
+            draft = Draft(self._twin(job.twin), job.removed, forever=forever, easy=easy)
             self._drafts[key] = draft
             if len(self._drafts) > KEPT_DRAFTS:
                 self._drafts.popitem(last=False)
@@ -177,6 +177,7 @@ def _steady(job: Job) -> Outcome:
     try:
         return search.run(job.memory)
     except RunFailed as error:
+        deck = _PROCESS.draft(job, forever=True, easy=False).deck(job.values)
         again = Search(_PROCESS.ngspice, deck, case=job.case)
         try:
             outcome = again.run(None, grid=CAREFUL)
