@@ -234,7 +234,9 @@ def _leakage(
         highest = max(row.at_V or 0.0 for row in taken)
         why = f"{figure(highest, 'V')} proves nothing about {figure(bench.test_V, 'V')}"
     else:
-        why = "its leakage was not measured, and a good capacitance says nothing of it"
+        why = "its leakage was not measured"
+        if any(row.capacitance_F is not None for row in rows):
+            why += ", and a good capacitance says nothing of it"
     return [*points, Point(Advice.AGAIN, why)], bench.test_V
 
 

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Mapping
 from dataclasses import replace
 from math import inf, isfinite, pi
 
 from stress.circuit.circuit import Circuit, Kind, Position
+from stress.engine.case import Twin
+from stress.engine.solver import Solver
 from stress.study.bench_esr import TESTER_HZ
 from stress.study.in_place import (
     ELECTROLYTIC_HZ,
@@ -15,7 +17,9 @@ from stress.study.in_place import (
     QUIET_V,
     SMALL_OPEN_HZ,
     Around,
+    plan,
 )
+from stress.study.plan import run
 from stress.study.result import Bench
 from stress.text.figure import figure
 
@@ -27,20 +31,28 @@ TOLD_APART = 3.0  # times: an open part from a good one, a good one from a short
 SHORT_OHM = 10.0  # less than this reads as a short on an ohmmeter
 
 
-def placed_all(
-    benches: Mapping[str, Bench], arounds: Iterable[Around], *, circuit: Circuit
+def survey(
+    benches: Mapping[str, Bench], *, circuit: Circuit, twin: Twin, solver: Solver
 ) -> Mapping[str, Bench]:
-    """Return the bench limits with what each test is worth in place, by position name."""
-    found = dict(benches)
-    for around in arounds:
-        if around.position in found:
-            found[around.position] = placed(
-                found[around.position],
-                around=around,
-                position=circuit.position(around.position),
-                circuit=circuit,
-            )
-    return found
+    """Return the bench limits with what each test is worth in place, by position name.
+
+    Args:
+        benches: From `stress.study.bench`.
+        circuit: The healthy circuit.
+        twin: Its twin, as for the working stress.
+        solver: Answers three small cases a position, none of them with a period.
+    """
+    asked = [circuit.position(name) for name in benches]
+    plans = [
+        plan(position, circuit=circuit, twin=twin, test_V=benches[position.name].test_V or QUIET_V)
+        for position in asked
+    ]
+    return {
+        position.name: placed(
+            benches[position.name], around=around, position=position, circuit=circuit
+        )
+        for position, around in zip(asked, run(plans, solver=solver), strict=True)
+    }
 
 
 def placed(bench: Bench, *, around: Around, position: Position, circuit: Circuit) -> Bench:

@@ -7,15 +7,17 @@ value that is to be fitted.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 
 from stress.circuit.circuit import Circuit, Kind, Part, Position, Role
 from stress.engine.case import Case, Ran, Settled, Transient
+from stress.engine.solver import Solver
 from stress.parts import types
+from stress.parts.series import next_down, next_up
 from stress.study.measure import part_stresses
-from stress.study.plan import Plan
-from stress.study.result import Unanswered
+from stress.study.plan import Plan, run
+from stress.study.result import Replacement, Unanswered
 from stress.study.working import unanswered
 from stress.text.figure import figure
 from stress.text.unit import unit
@@ -90,7 +92,12 @@ def table_limit(parts: Sequence[Part]) -> tuple[float | None, str]:
 
 
 def plan(
-    position: Position, *, circuit: Circuit, base: Case, candidates_F: Sequence[float]
+    position: Position,
+    *,
+    circuit: Circuit,
+    base: Case,
+    fit_F: float,
+    candidates_F: Sequence[float],
 ) -> Plan[Reservoir]:
     """Ask for the rectifier's stress with every candidate in place; see `stress.study.plan`.
 
@@ -98,25 +105,17 @@ def plan(
         position: A reservoir.
         circuit: With its rectifiers.
         base: The healthy case at high line, answered before.
-        candidates_F: Rising; the smallest of them is the value that is to be fitted.
+        fit_F: The value that is to be fitted, for the switch-on.
+        candidates_F: Rising.
     """
     parts = rectifiers_of(position, circuit=circuit)
-    cases = [
-        replace(
-            base,
-            name=f"{base.name} / {position.name} {figure(value, 'F', digits=6)}",
-            parent=base.name,
-            fault=f"{position.name} {figure(value, 'F')}",
-            values={**base.values, position.name: value},
-        )
-        for value in candidates_F
-    ]
+    cases = [_with(base, position, value) for value in candidates_F]
     period_s = base.twin.period_s
-    if period_s is not None and candidates_F:
+    if period_s is not None:
         cases.append(
             replace(
-                cases[0],
-                name=f"switched on / {position.name} {figure(candidates_F[0], 'F', digits=6)}",
+                _with(base, position, fit_F),
+                name=f"switched on / {position.name} {figure(fit_F, 'F', digits=6)}",
                 parent=None,
                 analysis=Transient(stop_s=INRUSH_PERIODS * period_s, phase_deg=90.0),
             )
@@ -146,6 +145,75 @@ def plan(
         inrush = max(surges, default=None)
     return judged(
         position, parts=parts, tried=tuple(tried), inrush_A=inrush, missing=tuple(missing)
+    )
+
+
+def _with(base: Case, position: Position, value_F: float) -> Case:
+    """Return the case with another capacitance in a position."""
+    return replace(
+        base,
+        name=f"{base.name} / {position.name} {figure(value_F, 'F', digits=6)}",
+        parent=base.name,
+        fault=f"{position.name} {figure(value_F, 'F')}",
+        values={**base.values, position.name: value_F},
+    )
+
+
+def checked(
+    replacements: Mapping[str, Replacement], *, circuit: Circuit, base: Case, solver: Solver
+) -> Mapping[str, Replacement]:
+    """Return the replacements with every reservoir tried in place at high line.
+
+    A value at which a rectifier passes its peak current is brought down to the next of E12 at
+    or below the original; the note says what was simulated.
+
+    Args:
+        replacements: By position name.
+        circuit: With its rectifiers.
+        base: The healthy case at high line, answered before by the same solver.
+        solver: Answers a few cases for each reservoir.
+    """
+    tried = {
+        position.name: position
+        for position in circuit.positions
+        if position.name in replacements and rectifiers_of(position, circuit=circuit)
+    }
+    plans = []
+    for name, position in tried.items():
+        fit_F, least_F = replacements[name].value_F, next_down(position.value_F or 0.0, "E12")
+        above = next_up(fit_F * 1.01, "E6")
+        candidates = sorted({least_F, fit_F, above, next_up(above * 1.01, "E6")})
+        plans.append(
+            plan(position, circuit=circuit, base=base, fit_F=fit_F, candidates_F=candidates)
+        )
+    found = run(plans, solver=solver)
+    return {
+        **replacements,
+        **{
+            name: limited(replacements[name], by=result, original_F=tried[name].value_F or 0.0)
+            for name, result in zip(tried, found, strict=True)
+        },
+    }
+
+
+def limited(chosen: Replacement, *, by: Reservoir, original_F: float) -> Replacement:
+    """Return a replacement within what its rectifier bears, with a note of what was tried."""
+    notes = tuple(note for note in (by.text,) if note)
+    value_F, reason = chosen.value_F, chosen.reason
+    peak_A = next((row.peak_A for row in by.tried if row.value_F == chosen.value_F), None)
+    if peak_A is not None and by.limit_A is not None and peak_A > by.limit_A:
+        value_F = min(chosen.value_F, next_down(original_F, "E12"))
+        reason += (
+            f"; {figure(value_F, 'F')} because the rectifier would pass {figure(peak_A, 'A')}, "
+            f"limit {figure(by.limit_A, 'A')}, with {figure(chosen.value_F, 'F')}"
+        )
+    known = [most for most in (by.value_max_F, chosen.value_max_F) if most is not None]
+    return replace(
+        chosen,
+        value_F=value_F,
+        reason=reason,
+        notes=chosen.notes + notes,
+        value_max_F=min(known, default=None),
     )
 
 

@@ -9,6 +9,7 @@ from stress.circuit.circuit import Kind, Part, Role
 from stress.engine.case import Case, Proof, Ran, Settled, Twin, Unsolved, Waves
 from stress.parts.limit import Limit
 from stress.study import reservoir
+from stress.study.result import Replacement
 
 PROOF = Proof(
     distance=0.0,
@@ -86,7 +87,7 @@ def run(supply, candidates, answer):
         values={"V1": 1.08},
     )
     plan = reservoir.plan(
-        circuit.position("C1"), circuit=circuit, base=base, candidates_F=candidates
+        circuit.position("C1"), circuit=circuit, base=base, fit_F=47e-6, candidates_F=candidates
     )
     cases = next(plan)
     with pytest.raises(StopIteration) as stop:
@@ -124,3 +125,43 @@ def test_the_smaller_of_table_and_peak_counts(supply):
     tried = (reservoir.Tried(value_F=47e-6, peak_A=0.5),)
     found = reservoir.judged(supply.position("C1"), parts=supply.parts, tried=tried)
     assert found.value_max_F == pytest.approx(20e-6)
+
+
+def chosen(value_F):
+    return Replacement(
+        position="C1",
+        value_F=value_F,
+        rated_V=450.0,
+        style="aluminium",
+        ripple_rms_A=None,
+        reason="next of E6",
+    )
+
+
+class ByHand:
+    """A solver of the rectifier of `solved_by_hand`."""
+
+    def solve(self, cases):
+        return iter([solved_by_hand(case) for case in cases])
+
+
+@pytest.mark.parametrize(
+    ("value_F", "fitted_F", "said"),
+    [
+        (47e-6, 47e-6, ""),
+        # 150 µF would draw 1.5 A through a rectifier of 1 A: back to the 39 µF below 40 µF.
+        (150e-6, 39e-6, "the rectifier would pass 1.5 A, limit 1 A, with 150 µF"),
+    ],
+)
+def test_replacements_are_tried_in_place(supply, value_F, fitted_F, said):
+    circuit = replace(supply, parts=supply.parts[:1])
+    base = Case(
+        name="high", twin=Twin(elements=supply.netlist.elements, models={}, period_s=1 / 60)
+    )
+    found = reservoir.checked(
+        {"C1": chosen(value_F), "C2": chosen(22e-6)}, circuit=circuit, base=base, solver=ByHand()
+    )
+    assert found["C1"].value_F == pytest.approx(fitted_F)
+    assert said in found["C1"].reason
+    assert "rectifier peak" in " ".join(found["C1"].notes)
+    assert found["C2"] == chosen(22e-6)  # no rectifier charges it
