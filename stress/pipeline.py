@@ -9,6 +9,7 @@ from time import monotonic
 from typing import TypeAlias
 
 from stress.circuit.build import build
+from stress.circuit.chain import Chains
 from stress.circuit.circuit import Circuit
 from stress.engine.pool import Pool
 from stress.judge.cautions import cautions
@@ -149,7 +150,7 @@ def review_circuit(
         stage = "failures"
         failed = failures(circuit, studied, healthy=healthy, leakage=leaks, solver=pool)
         versions, totals = pool.versions(), pool.totals
-    working = healthy.working
+    working, chains = healthy.working, Chains(circuit)
     worsts = worst(circuit, working=working)
     order = risks(circuit, worst=worsts, leakage=leaks, failures=failed)
     fitted = {
@@ -191,7 +192,7 @@ def review_circuit(
         explanations={
             p.name: explain(
                 p,
-                circuit=circuit,
+                chains=chains,
                 working=working,
                 worst=worsts.get(p.name),
                 leakage=leaks.get(p.name),

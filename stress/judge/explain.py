@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 from math import log
 
-from stress.circuit.circuit import Circuit, Kind, Part, Position
+from stress.circuit.chain import Chains, Step
+from stress.circuit.circuit import Position
 from stress.finding import Severity
 from stress.study import conditions as stock
 from stress.study.failures import describe
@@ -23,6 +24,7 @@ from stress.study.result import (
 )
 from stress.text.figure import figure
 
+NO_VOLTAGE_V = 1e-3  # less is none to a technician
 DO = {
     Severity.REPLACE: "replace before any power",
     Severity.TEST: "test before power",
@@ -34,7 +36,7 @@ DO = {
 def explain(
     position: Position,
     *,
-    circuit: Circuit,
+    chains: Chains,
     working: Working,
     worst: Worst | None,
     leakage: Leakage | None,
@@ -49,7 +51,7 @@ def explain(
         f"{DO[risk.severity]}: {risk.reason}",
     ]
     if leakage is not None:
-        paragraphs += _leak(position, circuit=circuit, working=working, leakage=leakage)
+        paragraphs += _leak(position, chains=chains, working=working, leakage=leakage)
     paragraphs += [
         failure.text for failure in failures if failure.dangerous or failure.consequences
     ]
@@ -71,6 +73,8 @@ def bears(
     if nominal is None or worst is None:
         return "what it bears is not known: " + _why_not(working, stock.NOMINAL)
     text = f"bears {figure(abs(nominal.dc_V), 'V')}"
+    if abs(nominal.dc_V) < NO_VOLTAGE_V:
+        text = "bears no direct voltage"
     if nominal.peak_V - abs(nominal.dc_V) > max(0.05 * abs(nominal.dc_V), 0.5):
         text += f" with peaks of {figure(nominal.peak_V, 'V')}"
     if worst.worst_V > 1.03 * nominal.peak_V:
@@ -118,7 +122,7 @@ def _why_not(working: Working, condition: str) -> str:
     return "the condition was not solved"
 
 
-def _leak(position: Position, *, circuit: Circuit, working: Working, leakage: Leakage) -> list[str]:
+def _leak(position: Position, *, chains: Chains, working: Working, leakage: Leakage) -> list[str]:
     if not leakage.limited:
         return [leakage.text]
     found = leakage.governing
@@ -126,7 +130,7 @@ def _leak(position: Position, *, circuit: Circuit, working: Working, leakage: Le
         return [leakage.text]
     paragraphs = []
     if found.critical_ohm is not None:
-        chain = leak_chain(position, circuit=circuit, working=working, found=found)
+        chain = leak_chain(position, chains=chains, working=working, found=found)
         paragraphs.append(f"at {figure(found.critical_ohm, 'ohm')} of leakage: {chain}")
     elif found.assumed_critical_ohm is not None and found.assumed_victim is not None:
         victim = found.assumed_victim
@@ -144,48 +148,46 @@ def _leak(position: Position, *, circuit: Circuit, working: Working, leakage: Le
     return paragraphs
 
 
-def leak_chain(position: Position, *, circuit: Circuit, working: Working, found: LeakageIn) -> str:
+def leak_chain(position: Position, *, chains: Chains, working: Working, found: LeakageIn) -> str:
     """Return the way from the leak to its victim in one sentence.
 
-    "C5 leaks -> grid of XU2 rises by 15 V -> cathode current 116 mA, limit 100 mA".
+    "C5 leaks 2.1 µA -> grid of XU2 rises by 15 V -> XU2 cathode current 48 mA to 116 mA, limit
+    100 mA". What a step does is read from the solved case next to the crossing.
     """
     victim, point = found.victim, nearest(found, found.critical_ohm)
     if victim is None or point is None:
         return f"{position.name} leaks"
-    links = [f"{position.name} leaks {figure(point.leak_A, 'A')}"]
     healthy = {
         node: volts[found.condition]
         for node, volts in working.nodes.items()
         if found.condition in volts
     }
-    part = _part(circuit, victim.part)
-    if part is not None:
-        links += _moved_pins(part, point, healthy)
-    links.append(describe(victim))
+    links = [f"{position.name} leaks {figure(point.leak_A, 'A')}"]
+    for step in chains.steps(position.name, victim.part)[1:-1]:
+        if step.kind == "node" and not step.text.startswith("node "):
+            links.append(_node(step, point, healthy))
+        elif step.kind == "part":
+            was = working.parts.get(step.name, {}).get(found.condition, {}).get("cathode_A")
+            now = point.stresses.get(step.name, {}).get("cathode_A")
+            if was is not None and now is not None:
+                links.append(
+                    f"{step.name} cathode current {figure(was, 'A')} to {figure(now, 'A')}"
+                )
+    if victim.healthy is not None and victim.quantity in ("cathode_A", "plate_W", "screen_W"):
+        unit = victim.quantity.rpartition("_")[2]
+        links.append(f"{describe(victim)}, healthy {figure(victim.healthy, unit)}")
+    else:
+        links.append(describe(victim))
     return " -> ".join(links)
 
 
-def _part(circuit: Circuit, name: str) -> Part | None:
-    try:
-        return circuit.part(name)
-    except KeyError:
-        return None
-
-
-def _moved_pins(part: Part, point: CurvePoint, healthy: Mapping[str, float]) -> list[str]:
-    """Return the pins of a tube or transistor whose voltage the leak has moved."""
-    if part.kind not in (Kind.TUBE, Kind.TRANSISTOR):
-        return []
-    links = []
-    for pin in ("grid", "base", "gate", "screen", "grid2"):
-        node = part.pins.get(pin)
-        if node is None or node not in point.nodes or node not in healthy:
-            continue
-        change = point.nodes[node] - healthy[node]
-        if abs(change) > 0.02 * max(abs(healthy[node]), 1.0):
-            way = "rises" if change > 0 else "falls"
-            links.append(f"{pin} of {part.name} {way} by {figure(abs(change), 'V')}")
-    return links
+def _node(step: Step, point: CurvePoint, healthy: Mapping[str, float]) -> str:
+    """Return a place on the way and how its voltage has moved, where it has."""
+    was, now = healthy.get(step.name), point.nodes.get(step.name)
+    if was is None or now is None or abs(now - was) < 0.02 * max(abs(was), 1.0):
+        return step.text
+    way = "rises" if now > was else "falls"
+    return f"{step.text} {way} by {figure(abs(now - was), 'V')} to {figure(now, 'V')}"
 
 
 def nearest(found: LeakageIn, ohm: float | None) -> CurvePoint | None:

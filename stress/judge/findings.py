@@ -167,8 +167,11 @@ def without_number(results: Results) -> Iterator[Finding]:
 
 
 def seen_without_solving(results: Results) -> Iterator[Finding]:
-    """What the graph and the reader have to say."""
-    yield from results.circuit.findings
+    """What the graph and the reader have to say, but for what is the reason of a rank already."""
+    told = {(risk.position, risk.reason) for risk in results.risks}
+    for finding in results.circuit.findings:
+        if (finding.where, finding.text) not in told:
+            yield finding
     yield from results.circuit.netlist.notices
 
 

@@ -12,7 +12,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from math import log2, log10
 
-from stress.circuit.circuit import Circuit, Kind, Position, Role
+from stress.circuit.circuit import Circuit, Kind, Position
 from stress.finding import Severity
 from stress.study.failures import NOT_LIMITED, describe
 from stress.study.result import Failure, Leakage, Risk, Victim, Worst
@@ -40,8 +40,7 @@ ONLY_FUNCTION = 0.5
 LIKELY = 0.3  # share of parts from which a leak must be taken as given
 POSSIBLE = 0.02
 SURE_OHM = 1e5  # a leak that needs less resistance than this is a short, not a leak
-LINE_ROLES = frozenset({Role.LINE_ACROSS, Role.LINE_CHASSIS})
-SAFE_STYLES = frozenset({"line-X", "line-Y"})
+TOUCHABLE_RULE = "class-y"  # of stress.circuit.hazards
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -70,7 +69,7 @@ def risks(
     judged = []
     for position in circuit.positions:
         threats = [
-            *_line(circuit, position),
+            *_seen(circuit, position),
             *_rating(position, worst.get(position.name)),
             *_leak(circuit, position, leakage.get(position.name)),
             *_failures(circuit, position, failures.get(position.name, ())),
@@ -112,20 +111,19 @@ def _share(circuit: Circuit, position: Position, fault: str) -> float:
     return min(max(position.style.fault_share(fault, years=years), 1e-3) * weight, 1.0)
 
 
-def _line(circuit: Circuit, position: Position) -> Iterator[Threat]:
-    touched = circuit.touchable & set(position.nodes)
-    if position.role not in LINE_ROLES or position.style.name in SAFE_STYLES:
-        return
+def _seen(circuit: Circuit, position: Position) -> Iterator[Threat]:
+    """What the circuit shows without solving: a plain part at the line, one fitted backwards."""
     share = max(_share(circuit, position, "leaky"), _share(circuit, position, "short"))
-    if position.role is Role.LINE_CHASSIS or touched:
-        text = (
-            "it joins the line to metal that can be touched: only a class Y part may stand here "
-            "(IEC 60384-14)"
+    for finding in circuit.findings:
+        if finding.where != position.name or finding.severity.rank > Severity.TEST.rank:
+            continue
+        person = finding.rule == TOUCHABLE_RULE
+        yield Threat(
+            text=finding.text,
+            consequence=PERSON if person else FIRE,
+            likelihood=share,
+            severity=finding.severity,
         )
-        yield Threat(text=text, consequence=PERSON, likelihood=share, severity=Severity.REPLACE)
-    else:
-        text = "it lies across the line: only a class X part may stand here (IEC 60384-14)"
-        yield Threat(text=text, consequence=FIRE, likelihood=share, severity=Severity.REPLACE)
 
 
 def _rating(position: Position, worst: Worst | None) -> Iterator[Threat]:

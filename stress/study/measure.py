@@ -115,7 +115,8 @@ def part_stresses(
 
 
 def _across(part: Part, waves: Waves) -> Floats:
-    return waves.voltage(part.pins["plus"], part.pins["minus"])
+    plus, minus = list(part.pins.values())[:2]
+    return waves.voltage(plus, minus)
 
 
 def _resistance(part: Part, waves: Waves) -> Mapping[str, float]:

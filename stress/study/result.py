@@ -11,6 +11,7 @@ from dataclasses import dataclass
 
 from stress.circuit.circuit import Circuit
 from stress.engine.case import Floats, Proof
+from stress.engine.solver import Versions
 from stress.finding import Finding, Severity
 from stress.netlist.flat import NOTHING
 from stress.parts.limit import Limit
@@ -263,15 +264,6 @@ class Run:
     unsolved: int
     cycles: int
     wall_s: float
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Versions:
-    """What simulated it."""
-
-    ngspice: str
-    pyspice: str
-    library: str = ""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -8,6 +8,7 @@ import pytest
 
 from stress.circuit.circuit import Circuit, Kind, Line, Part, Position, Role
 from stress.engine.case import Proof
+from stress.engine.solver import Versions
 from stress.finding import Finding, Severity
 from stress.netlist.flat import Element, Netlist
 from stress.parts.limit import Limit, Rating
@@ -27,7 +28,6 @@ from stress.study.result import (
     Surge,
     Trace,
     Unanswered,
-    Versions,
     Victim,
     Working,
     Worst,
