@@ -52,7 +52,10 @@ PARAMETERS: Mapping[str, Mapping[str, str]] = {
     "rectifier": {"K": "A/V^1.5"},
     "arc": {"VARC": "V", "WARC": "V", "RARC": "ohm"},
     "diode": {"K": "A/V^1.5", "CD": "F"},
+    "junction": {"IS": "A", "N": "1", "RS": "ohm"},
 }
+
+JUNCTIONS = ("silicon rectifier", "selenium stack", "silicon diode", "germanium diode")
 
 
 @dataclass(frozen=True, slots=True)
@@ -107,6 +110,8 @@ def layout(entry: TypeEntry) -> Layout:
         "double diode": (("diode", ("plate", "cathode")),),
         "rectifier": plates,
     }
+    if entry.family in JUNCTIONS and entry.drop_V is not None:
+        return (("junction", ("anode", "cathode")),)
     return layouts.get(entry.family, ())
 
 

@@ -23,6 +23,8 @@ Laws, v against the cathode, softplus(x) = ln(1 + e^x):
   practice: -0.7 to -1 V).
 * Rectifier: Child's law, K v^1.5; mercury vapour: a steady drop with a small resistance.
 * Signal diode: Child's law, smooth as the grid, displaced by its contact potential.
+* Semiconductor and selenium rectifiers: the junction of SPICE (Shockley with series resistance)
+  through the drop of the type table; ideality and resistance by class, common practice.
 """
 
 from __future__ import annotations
@@ -44,11 +46,20 @@ def subcircuit_text(name: str, *, pins: Sequence[str], units: Sequence[Unit]) ->
         pins: Roles in the order of the X card.
         units: What it is made of; each names its own pins.
     """
+    if units[0].form == "junction":
+        card = junction_card("junction", units[0])
+        return f".subckt {name} {' '.join(pins)}\nD1 anode cathode junction\n{card}.ends {name}\n"
     lines = [f".subckt {name} {' '.join(pins)} emission=1", "Vemission em 0 {emission}"]
     for index, unit in enumerate(units):
         lines += _LAWS[unit.form](unit, "" if index == 0 else str(index + 1))
     lines.append(f".ends {name}")
     return "\n".join(lines) + "\n"
+
+
+def junction_card(name: str, unit: Unit) -> str:
+    """Return the `.model` card of a semiconductor or selenium rectifier."""
+    told = " ".join(f"{key.lower()}={_number(unit[key])}" for key in ("IS", "N", "RS"))
+    return f".model {name} d({told})\n"
 
 
 def _number(value: float) -> str:

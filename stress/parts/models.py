@@ -10,7 +10,7 @@ from typing import Any
 
 from stress.parts import types, wound
 from stress.parts.model import Unit
-from stress.parts.model_text import subcircuit_text
+from stress.parts.model_text import junction_card, subcircuit_text
 from stress.parts.type import TypeEntry
 
 TABLE = Path(__file__).parent / "model_table"
@@ -33,7 +33,19 @@ def subcircuit(name: str, *, extra: Sequence[TypeEntry] = ()) -> str | None:
     if entry is None:
         return None
     found = units(entry)
-    return subcircuit_text(name, pins=entry.pins, units=found) if found else None
+    return subcircuit_text("_".join(name.split()), pins=entry.pins, units=found) if found else None
+
+
+def device_model(name: str, *, extra: Sequence[TypeEntry] = ()) -> str | None:
+    """Return the `.model` card of a diode or rectifier of the table, or None.
+
+    For a D whose model the netlist does not bring, such as `D1 a k 1N4007`.
+    """
+    entry = types.find(name, extra=extra)
+    found = units(entry) if entry else ()
+    if not found or found[0].form != "junction":
+        return None
+    return junction_card("_".join(name.split()), found[0])
 
 
 def units(entry: TypeEntry) -> tuple[Unit, ...]:

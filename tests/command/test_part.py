@@ -61,9 +61,9 @@ def test_the_model_can_be_printed():
     result = run("ECC83", "--model")
     assert result.exit_code == 0
     assert result.output.startswith(".subckt ECC83 plate grid cathode emission=1\n")
-    none = run("1N4007", "--model")
+    none = run("2N3055", "--model")
     assert none.exit_code == 2
-    assert none.stderr == "1N4007 has no built-in model\n"
+    assert none.stderr == "2N3055 has no built-in model\n"
 
 
 def test_a_users_own_table_is_read_and_its_faults_are_shown(tmp_path):

@@ -131,6 +131,12 @@ def fit(entry: TypeEntry, form: str, rows, recipe):
     return values(best.x)
 
 
+JUNCTIONS = {  # ideality, and the share of the stated drop that is ohmic; common practice
+    "silicon rectifier": (1.9, 0.1),
+    "silicon diode": (1.9, 0.1),
+    "germanium diode": (1.6, 0.6),
+    "selenium stack": (12.0, 0.5),  # half a dozen plates in series
+}
 CAPACITANCES_F = {  # order of magnitude of the class, common practice
     "triode": (2e-12, 2e-12, 1e-12),
     "pentode": (6e-12, 0.01e-12, 7e-12),
@@ -178,6 +184,11 @@ def unit_lines(entry: TypeEntry, number: int, form: str, pins, recipe) -> tuple[
         start_V = entry.drop_V - 0.3 * np.log(np.expm1(0.4 / 0.3))
         resistance = f"RARC = {0.4 / entry.drop_A:.4g}"
         return [f"VARC = {start_V:.5g}", "WARC = 0.3", resistance], {}
+    if form == "junction":
+        ideality, ohmic = JUNCTIONS[entry.family]
+        volts = entry.drop_V * (1 - ohmic) / (ideality * 0.025865)
+        saturation, ohms = entry.drop_A / np.expm1(volts), ohmic * entry.drop_V / entry.drop_A
+        return [f"IS = {saturation:.5g}", f"N = {ideality}", f"RS = {ohms:.4g}"], {}
     if form == "diode":  # 2 mA at 10 V for those inside amplifiers: from memory, to be confirmed
         k = entry.drop_A / entry.drop_V**1.5 if entry.drop_V else 2e-3 / 10**1.5
         return [f"K = {k:.4g}", "CD = 2e-12"], {}
