@@ -123,12 +123,6 @@ class CycleMap:
         return Waves(time_s[rising], self._names, self._rows(rising))
 
     @property
-    def points(self) -> int:
-        """Steps of the last period."""
-        time_s = self._ngspice.vector("time")
-        return int(np.sum(time_s > time_s[-1] - self.period_s * (1.0 + 1e-9)))
-
-    @property
     def _names(self) -> tuple[str, ...]:
         return tuple(probe.name for probe in self.deck.probes)
 

@@ -102,6 +102,23 @@ def jacobian(
     return result
 
 
+def directional(
+    phi: Map, x: Floats, y: Floats, matrix: Floats, *, along: Floats, yardstick: Yardstick
+) -> Floats:
+    """Return a Jacobian corrected by what the map does in one direction.
+
+    Args:
+        phi: The map.
+        x, y: Shape (n,): a state and what the map makes of it.
+        matrix: Shape (n, n): the Jacobian to correct.
+        along: Shape (n,): the direction.
+        yardstick: Gives what a deviation of each state is measured against, from a state.
+    """
+    scale = yardstick(x)
+    moved = along * PERTURBATION / max(_length(along, scale), 1e-300)
+    return _corrected(matrix, moved, phi(x + moved) - y, scale)
+
+
 def approach(
     phi: Map,
     start: Floats,

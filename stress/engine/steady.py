@@ -11,7 +11,7 @@ import numpy as np
 from stress.engine.case import Answer, Floats, Proof, Settled, Wandering, Waves
 from stress.engine.cycle import CycleMap, Grid, end_state
 from stress.engine.deck import Deck
-from stress.engine.fixed_point import Point, approach, jacobian, spectral_radius
+from stress.engine.fixed_point import Point, approach, directional, jacobian, spectral_radius
 from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
 from stress.engine.ngspice import Ngspice, RunFailed
 from stress.engine.plain import CHUNK, MOST_PERIODS, Course, departs, follow, follow_from_rest, told
@@ -24,6 +24,7 @@ TURNS, TURN_CYCLES = 8, 12
 COARSE_TURNS = 2  # before the grid is made finer
 WARM_CYCLES = 14
 UNSTABLE = 1.01
+REFUTATIONS = 3  # of a multiplier that looks unstable, before a whole Jacobian
 FAST_F = 2e-7  # farad per second of period: smaller capacitors are tested in groups
 FAST_H = 0.1  # henry per second of period, likewise
 AFAR = 1e-3  # the same for what can only be run from rest
@@ -60,11 +61,13 @@ class Search:
         if grid is None:
             grid = Grid() if memory is None else memory.grid
         phi, point = self.search(grid, memory)
-        if memory is None and point.found:
-            phi, point = self.refined(phi, point)
         if not point.found:
             return self.plainly(phi, point.x)
-        return self.stable(phi, point)
+        if memory is None:
+            phi, point, waves = self.refined(phi, point)
+        else:
+            waves = phi.waves()
+        return self.stable(phi, point, waves)
 
     def search(self, grid: Grid, memory: Memory | None) -> tuple[CycleMap, Point]:
         """Search near a relative's state where that leads anywhere, else from rest."""
@@ -116,41 +119,63 @@ class Search:
                 phi = self.map(finer, phi.node_V)
         return phi, point
 
-    def refined(self, phi: CycleMap, point: Point) -> tuple[CycleMap, Point]:
+    def refined(self, phi: CycleMap, point: Point) -> tuple[CycleMap, Point, Waves]:
         """Halve the steps until the stresses hold still; keep the coarser of the last two."""
+        waves = phi.waves()
         while phi.grid.points < FINEST:
-            waves = phi.waves()
             finer = self.map(replace(phi.grid, points=2 * phi.grid.points), phi.node_V)
             better = self.near(finer, point.x, point.jacobian, most=WARM_CYCLES)
             if not better.found:
                 break
-            if alike(waves, finer.waves()):
+            found = finer.waves()
+            if alike(waves, found):
                 break
-            phi, point = finer, better
-        self.counted(phi, point.x)
-        return phi, point
+            phi, point, waves = finer, better, found
+        return phi, point, waves
 
-    def stable(self, phi: CycleMap, point: Point) -> Outcome:
+    def stable(self, phi: CycleMap, point: Point, waves: Waves) -> Outcome:
         """Return a point that was found, unless the circuit leaves it by itself."""
-        growth = spectral_radius(point.jacobian)
-        if growth <= UNSTABLE:
-            return self.settled(phi, point, growth)
-        matrix = self.jacobian(phi, point.x, point.y)
-        values, vectors = np.linalg.eig(matrix)
-        fastest = int(np.argmax(np.abs(values)))
-        growth = float(np.abs(values[fastest]))
+        matrix, growth, along = self.growth(phi, point)
         if growth > UNSTABLE:
-            along = np.real(vectors[:, fastest])
             periods = int(np.clip(math.log(1e4) / math.log(growth), CHUNK, MOST_PERIODS))
             trial = self.map(phi.grid, phi.node_V)
             course = departs(trial, point.x, along=along, periods=periods)
             self.cycles += trial.cycles
             if course is not None:
                 return self.wandering(course, unstable=True)
-        self.counted(phi, point.x)
-        return self.settled(phi, replace(point, jacobian=matrix), growth)
+        return self.settled(phi, replace(point, jacobian=matrix), waves, growth)
 
-    def settled(self, phi: CycleMap, point: Point, growth: float) -> Outcome:
+    def growth(self, phi: CycleMap, point: Point) -> tuple[Floats, float, Floats]:
+        """Return a Jacobian, its largest multiplier and the direction of it.
+
+        Broyden's corrections are made for the next step, not for the multipliers: one that
+        looks unstable is tried in its own direction before a whole Jacobian is paid for.
+        """
+        matrix, node_V = point.jacobian, phi.node_V
+        for trial in range(REFUTATIONS + 1):
+            growth = spectral_radius(matrix)
+            if growth <= UNSTABLE:
+                return matrix, growth, np.zeros_like(point.x)
+            if trial == REFUTATIONS:
+                matrix = self.jacobian(phi, point.x, point.y)
+            values, vectors = np.linalg.eig(matrix)
+            fastest = int(np.argmax(np.abs(values)))
+            along = np.real(vectors[:, fastest])
+            if trial == REFUTATIONS:
+                return matrix, float(np.abs(values[fastest])), along
+            phi.put_nodes(node_V)
+            matrix = directional(
+                lambda x: self.tried(phi, x),
+                point.x,
+                point.y,
+                matrix,
+                along=along,
+                yardstick=phi.scale,
+            )
+            phi.put_nodes(node_V)
+        raise AssertionError("the last turn returns")
+
+    def settled(self, phi: CycleMap, point: Point, waves: Waves, growth: float) -> Outcome:
         """Return the answer of a point that was found."""
         proof = Proof(
             distance=point.distance,
@@ -158,10 +183,10 @@ class Search:
             cycles=self.cycles,
             jacobian_cycles=self.jacobian_cycles,
             multiplier=growth,
-            points=phi.points,
+            points=waves.time_s.size - 1,
             method="cycle map",
         )
-        answer = Settled(case=self.case, waves=phi.waves(), proof=proof, notices=self.deck.notices)
+        answer = Settled(case=self.case, waves=waves, proof=proof, notices=self.deck.notices)
         return self.outcome(answer, self.memory(phi, point.best, point.jacobian))
 
     def standing(self, grid: Grid) -> Outcome:
@@ -221,7 +246,7 @@ class Search:
             cycles=self.cycles,
             jacobian_cycles=self.jacobian_cycles,
             multiplier=None,
-            points=phi.points,
+            points=course.waves.time_s.size - 1,
             method="plain transient",
         )
         answer = Settled(
@@ -267,17 +292,21 @@ class Search:
         self.cycles += periods
         return phi(x, periods=periods)
 
+    def tried(self, phi: CycleMap, x: Floats) -> Floats:
+        """Return the state after one period, counted with those for Jacobians."""
+        self.jacobian_cycles += 1
+        return phi(x)
+
     def jacobian(self, phi: CycleMap, x: Floats, y: Floats) -> Floats:
         """Return the Jacobian at x, its cycles counted apart."""
-        before, node_V = phi.cycles, phi.node_V
+        node_V = phi.node_V
 
         def step(x: Floats) -> Floats:
             phi.put_nodes(node_V)
-            return phi(x)
+            return self.tried(phi, x)
 
         matrix = jacobian(step, x, y, yardstick=phi.scale, groups=self.groups)
         phi.put_nodes(node_V)
-        self.jacobian_cycles += phi.cycles - before
         return matrix
 
     def near(
