@@ -154,8 +154,11 @@ def _line(feeding: Sequence[Element], entry: LineEntry) -> Line:
     if not entry.sources:
         assumed.append("line: " + ", ".join(e.name for e in feeding) + " (by frequency and load)")
     nominal = entry.nominal_V
+    if not any(rms_of(e) for e in feeding):
+        names = ", ".join(e.name for e in feeding)
+        return Line(assumed=(f"{names} has no voltage, so there is no line",))
     if nominal is None:
-        nominal = rms_of(feeding[0])
+        nominal = max(rms_of(e) for e in feeding)
         assumed.append(f"nominal line {figure(nominal, 'V')}, from the netlist")
     high, low = entry.high_V, entry.low_V
     if high is None:

@@ -8,6 +8,7 @@ from stress.circuit.chain import Chains
 from stress.circuit.circuit import Role
 from stress.circuit.map import layout
 from stress.circuit.skeleton import skeleton
+from stress.netlist.expression import Voltage
 from stress.netlist.flat import Element, Instance, Law, Netlist, Wave
 from stress.parts.read_sheet import read_text
 from stress.parts.sheet import EquipmentEntry, LineEntry, Sheet
@@ -58,7 +59,7 @@ def netlists(draw):
                 nodes=nodes,
                 value=draw(VALUES),
                 wave=draw(WAVES) if letter in "VI" else None,
-                law=Law(draw(st.sampled_from("VI")), None) if letter == "B" else None,
+                law=Law(draw(st.sampled_from("VI")), Voltage("a", "b")) if letter == "B" else None,
                 controls=controls,
                 inside=draw(st.sampled_from(["", "", "X1"])),
                 span=SPAN,
