@@ -111,21 +111,20 @@ def print_change(before: Review, after: Review, console: Console, *, title: str)
     """
     out = _Out(console)
     out.line(title, bold=True)
-    places = {risk.position: risk for risk in before.risks}
-    for risk in after.risks:
+    places = {risk.position: (risk.rank, risk.severity) for risk in before.risks}
+    moved = [
+        risk for risk in after.risks if places.get(risk.position) != (risk.rank, risk.severity)
+    ]
+    if not moved:
+        out.line("the order of work stays as it was", indent=INDENT)
+    for risk in moved:
         old = places.get(risk.position)
-        if old is not None and old.rank == risk.rank and old.severity is risk.severity:
-            continue
-        was = f"was {old.rank} ({old.severity})" if old is not None else "was not ranked"
+        was = f"was {old[0]} ({old[1]})" if old is not None else "was not ranked"
         out.line(
             f"now {risk.rank} ({risk.severity}), {was}: {risk.reason}",
             first=f"{risk.position:<4} ",
             indent=INDENT,
         )
-    if all(
-        risk.position in places and places[risk.position].rank == risk.rank for risk in after.risks
-    ):
-        out.line("the order of work stays as it was", indent=INDENT)
     _findings(before, after, out)
 
 

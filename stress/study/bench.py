@@ -90,15 +90,13 @@ def bench(
     value = position.value_F
     if leak is not None:
         notes += _leakage_notes(position, leak)
-    if esr is not None:
+    if esr is not None and position.style.electrolytic:
         notes.append(
             f"on a {figure(TESTER_HZ, 'Hz')} meter that ESR reads {figure(esr.tester_ohm, 'ohm')};"
             f" a new part reads {figure(_new_at_tester(esr), 'ohm')}"
         )
     if value:
-        notes.append(
-            f"capacitance {figure(low * value, 'F')} to {figure(high * value, 'F')}: {why}"
-        )
+        notes.append(f"capacitance: {why}")
     return Bench(
         position=position.name,
         test_V=volts,
