@@ -5,6 +5,7 @@ from __future__ import annotations
 from stress.netlist.assembly import Assembly
 from stress.netlist.card import Field
 from stress.netlist.charge import slope
+from stress.netlist.controlled import polynomial
 from stress.netlist.expression import Binary, Expression, Name, Number, Voltage
 from stress.netlist.flat import Tags
 from stress.netlist.marking import is_placeholder, read_marking, style_of
@@ -187,7 +188,7 @@ def _placeholder(part: Part, word: Field | None) -> None:
 
 def _polynomial(part: Part, across: Expression) -> Expression:
     """`C1 a b POLY c0 c1 …`: c0 + c1 v + c2 v²."""
-    found: Expression = Number(0.0)
-    for word in reversed(part.words[3:]):
-        found = Binary("+", Number(part.number(word)), Binary("*", across, found))
-    return found
+    coefficients = [part.number(word) for word in part.words[3:]]
+    if not coefficients:
+        raise part.error("POLY needs at least one coefficient", part.words[2])
+    return polynomial([across], coefficients)

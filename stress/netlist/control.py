@@ -227,8 +227,8 @@ def transient(card: Card, scope: Scope) -> tuple[float, float] | None:
     """Return step and stop of a `.tran` card; one number alone is the stop (lt)."""
     numbers: list[float] = []
     for field in card.fields[1:]:
-        if field.kind == "mark" or (field.kind == "word" and field.text[:1].isalpha()):
-            break
+        if field.kind == "mark":
+            continue
         try:
             numbers.append(_number(card, scope, field))
         except NumberError:

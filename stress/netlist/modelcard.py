@@ -167,7 +167,11 @@ def _parameter(
             at += 1
         numbers[low] = " ".join(repr(read_number(text).value) for text in row)
         return at
-    if low in VENDOR or (low.startswith(("dev/", "lot/"))):
+    if (
+        low in VENDOR
+        or (kind in TYPES_WITH_TAG_RON and low == "ron")
+        or (low.startswith(("dev/", "lot/")))
+    ):
         return at
     if value.kind == "string":
         return at

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass, field
+from typing import TypeVar
 
 from stress.finding import Finding, Severity
 from stress.netlist.flat import Ignored
@@ -17,6 +19,17 @@ class Obstacle(SourceError):
 
 class Limit(SourceErrors):
     """A bound was passed: reading stops here."""
+
+
+_Told = TypeVar("_Told", SourceError, Finding, Ignored)
+
+
+def in_order(told: Iterable[_Told]) -> list[_Told]:
+    """Return what points into texts in the order of the text, file by file."""
+    kept = [(entry, entry.span) for entry in told if entry.span is not None]
+    files = {file: at for at, file in enumerate(dict.fromkeys(span.file for _, span in kept))}
+    kept.sort(key=lambda pair: (files[pair[1].file], pair[1].line, pair[1].column))
+    return [entry for entry, _ in kept]
 
 
 @dataclass(slots=True)
@@ -56,11 +69,7 @@ class Problems:
 
     def sorted_errors(self) -> list[SourceError]:
         """Return the errors in the order of the text, file by file."""
-        files = list(dict.fromkeys(error.span.file for error in self.errors))
-        return sorted(
-            self.errors,
-            key=lambda error: (files.index(error.span.file), error.span.line, error.span.column),
-        )
+        return in_order(self.errors)
 
     def stop(self, message: str, span: Span, hint: str = "") -> None:
         """Give up on the whole netlist.

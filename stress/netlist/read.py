@@ -12,7 +12,7 @@ from stress.netlist.expand import Expansion
 from stress.netlist.flat import Netlist
 from stress.netlist.flattened import FlatScope, is_flattened, tagged
 from stress.netlist.outline import Outline
-from stress.netlist.problem import Problems
+from stress.netlist.problem import Problems, in_order
 from stress.netlist.resolve import resolve
 from stress.netlist.scan import Entry, Lines
 from stress.netlist.scope import Block, Scope, World
@@ -118,9 +118,9 @@ def _read(
         initial_V=into.initial_V,
         options=settings,
         temperature_degC=world.temperature_degC,
-        ignored=tuple(problems.ignored),
-        notices=tuple(problems.notices),
-        obstacles=tuple(problems.obstacles),
+        ignored=tuple(in_order(problems.ignored)),
+        notices=tuple(in_order(problems.notices)),
+        obstacles=tuple(in_order(problems.obstacles)),
     )
 
 
@@ -142,7 +142,9 @@ def _control(
     elif word == ".end":
         if not scope.name and not entry.source.within and into.problems.end is None:
             into.problems.end = (entry.source.file, entry.index + 1)
-    elif word in (".title", ".endl"):
+    elif word == ".title":
+        into.problems.ignore(".title: the first line is the title", card.whole(scope.within))
+    elif word == ".endl":
         pass
     else:
         unknown(card, word, scope, into.problems)

@@ -67,7 +67,8 @@ def semiconductor(part: Part, into: Assembly) -> None:
     if times != 1:
         parameters["m"] = times
     model = into.models[key]
-    nodes = part.nodes(at)
+    # The lt dialect puts the substrate into brackets.
+    nodes = tuple(part.scope.node(node.text.strip("[]")) for node in part.words[:at])
     if part.letter == "D" and is_ideal(model):
         law = ideal_diode(model, Voltage(*nodes[:2]), parameters)
         into.add(part, "B", nodes[:2], law=Law("I", law))
@@ -111,6 +112,12 @@ def switch(part: Part, into: Assembly) -> None:
     key = into.model(part, part.words[2 + controls], KINDS[part.letter])
     if not key:
         return
+    if into.models[key].kind in ("vswitch", "iswitch"):
+        part.notice(
+            "gradual-switch",
+            f"{part.full} closes gradually in the ps dialect; here it closes and opens at the "
+            "same two levels",
+        )
     key = switch_model(into.models, key)
     parameters = {}
     for extra in part.words[3 + controls :]:
