@@ -15,6 +15,7 @@ from typing import Any
 
 import networkx as nx
 
+from stress.circuit.behaviour import conduction
 from stress.circuit.circuit import Kind, Part
 from stress.netlist.flat import Element, Netlist
 
@@ -72,7 +73,7 @@ class Edge:
 
     Attributes:
         name: Of the element or the tube.
-        letter: Of the element, "X" for a tube.
+        letter: Of the element, "X" for a tube and for what a formula makes of it.
         a, b: The groups it joins, in the order of its card.
         value: As the element's.
         conducts: Whether direct current can flow.
@@ -254,7 +255,12 @@ class Graph:
         letter = element.letter
         conducts = letter in CONDUCTORS
         if letter == "B" and element.law is not None:
-            conducts = element.law.quantity in ("V", "R")
+            way = conduction(element)
+            if way:  # a rectifier as a formula, such as Child's law
+                return [Edge(element.name, "D", n[::way][0], n[::way][1], element.value, True)]
+            if way == 0:
+                letter = "X"
+            conducts = element.law.quantity == "V" or way == 0
         pairs: list[tuple[str, str]] = []
         if letter == "T" and len(n) >= 4:
             pairs = [(n[0], n[2]), (n[1], n[3])]

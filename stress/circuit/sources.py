@@ -7,17 +7,9 @@ from dataclasses import dataclass
 from fractions import Fraction
 from math import lcm, sqrt
 
+from stress.circuit.behaviour import nodes_in
 from stress.circuit.circuit import Kind, Line
 from stress.circuit.graph import GROUND, Graph
-from stress.netlist.expression import (
-    Binary,
-    Call,
-    Conditional,
-    Current,
-    Expression,
-    Unary,
-    Voltage,
-)
 from stress.netlist.flat import Element, Netlist
 from stress.parts.sheet import LineEntry
 from stress.text.figure import figure
@@ -281,25 +273,8 @@ def _behind(
             elif edge.letter in "EG":
                 queue += [graph.at(n) for n in element.nodes[2:]]
             elif edge.letter == "B" and element.law is not None:
-                queue += [graph.at(n) for n in _nodes_in(element.law.expression)]
+                queue += [graph.at(n) for n in nodes_in(element.law.expression)]
     return found
-
-
-def _nodes_in(expression: Expression) -> set[str]:
-    """Return the nodes an expression looks at."""
-    match expression:
-        case Voltage(plus, minus):
-            return {plus, minus}
-        case Call(_, arguments):
-            return {n for a in arguments for n in _nodes_in(a)}
-        case Unary(_, operand):
-            return _nodes_in(operand)
-        case Binary(_, left, right):
-            return _nodes_in(left) | _nodes_in(right)
-        case Conditional(test, yes, no):
-            return _nodes_in(test) | _nodes_in(yes) | _nodes_in(no)
-        case Current() | _:
-            return set()
 
 
 def periodic(netlist: Netlist, names: Iterable[str]) -> float | None:

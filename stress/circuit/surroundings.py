@@ -9,6 +9,7 @@ from math import pi
 
 import networkx as nx
 
+from stress.circuit.behaviour import conduction
 from stress.circuit.circuit import Kind, Part
 from stress.circuit.drive import HELD_F, Drive
 from stress.circuit.graph import GROUND, Edge, Graph, Pin
@@ -205,7 +206,7 @@ class Surroundings:
                 continue
             if e.letter == "S" and e.name.lower() in self.gated:
                 found |= {self.graph.at(n) for n in e.nodes[2:4]}
-            elif e.letter in "EG" or (e.letter == "B" and e.law is not None):
+            elif e.letter in "EG" or (e.letter == "B" and conduction(e) is None):
                 found |= {self.graph.at(n) for n in e.nodes}
         return frozenset(found - set(self.supply.outputs) - {GROUND})
 
