@@ -2,40 +2,23 @@
 
 from __future__ import annotations
 
-import re
-import tomllib
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field, replace
 from functools import partial
-from pathlib import Path
+from pathlib import Path as FilePath
 from types import MappingProxyType
-from typing import Any
+from typing import Any, TypeVar
 
+from stress.parts import type_cell as cells
 from stress.parts.limit import STRESSES, Limit, Rating
 from stress.parts.model import layout, pins_of
-from stress.parts.type import MARKS, Operation, Source, TypeEntry
+from stress.parts.toml_source import Document, Path, decode, parse
+from stress.parts.type import Operation, Source, TypeEntry
 from stress.text.quantity import quantity
-from stress.text.span import SourceError, SourceErrors, Span
+from stress.text.span import SourceError, SourceErrors
 
-FAMILIES = (
-    "triode",
-    "double triode",
-    "pentode",
-    "beam tube",
-    "converter",
-    "diode-triode",
-    "diode-pentode",
-    "triode-pentode",
-    "triode-converter",
-    "double diode",
-    "rectifier",
-    "silicon rectifier",
-    "selenium stack",
-    "silicon diode",
-    "germanium diode",
-    "germanium transistor",
-    "silicon transistor",
-)
+_T = TypeVar("_T")
+
 # Key of the file -> stress name.
 LIMITS = {
     "plate_voltage": "plate_V",
@@ -77,24 +60,10 @@ LINE = {
     "transconductance": ("gm_S", "A"),
     "plate_resistance": ("plate_ohm", "ohm"),
 }
-FLAGS = ("directly_heated", "slow", "contact", "remote")
-WORDS = ("family", "gas", "note", "warm_up")
-_MARKED = re.compile(r"(?P<text>.*?)\s*\[(?P<mark>[^\][]+)\]\s*\Z", re.DOTALL)
-
-
-def _conductance(text: str, unit: str) -> float:
-    """Return a transconductance such as "4.1 mA/V" without waking pint up.
-
-    Raises:
-        ValueError: When it is none.
-    """
-    if not text.endswith("/V"):
-        raise ValueError(f'"{text}" is no transconductance: write 4.1 mA/V')
-    return quantity(text.removesuffix("/V"), unit)
 
 
 def read(
-    path: Path, *, known: Mapping[str, TypeEntry] = MappingProxyType({})
+    path: FilePath, *, known: Mapping[str, TypeEntry] = MappingProxyType({})
 ) -> tuple[TypeEntry, ...]:
     """Return the entries of a file, in its order.
 
@@ -104,29 +73,20 @@ def read(
 
     Raises:
         SourceErrors: Everything that is wrong with it.
+        OSError: It cannot be read.
     """
-    text = path.read_text(encoding="utf-8")
-    try:
-        tables = tomllib.loads(text)
-    except tomllib.TOMLDecodeError as error:
-        where = re.search(r"line (\d+)", str(error))
-        line = int(where[1]) if where else 1
-        rows = text.splitlines() or [""]
-        at = Span(str(path), line, 1, 1, rows[min(line, len(rows)) - 1])
-        raise SourceErrors([SourceError(f"no TOML: {error}", at)]) from error
-    reader = _Reader(str(path), text)
+    file = str(path)
+    reader = _Reader(parse(decode(path.read_bytes(), file=file), file=file))
     entries = dict(known)
     own = []
-    for name, row in tables.items():
-        if not isinstance(row, dict):
-            reader.fault(name, name, "a type is a table, [NAME]")
-            continue
-        entry = reader.entry(name, row, entries)
+    for name in reader.document.values:
+        entry = reader.entry(name, entries)
         if entry is not None:
             entries[name] = entry
             own.append(entry)
     if reader.errors:
-        raise SourceErrors(sorted(reader.errors, key=lambda error: error.span.line))
+        order = sorted(reader.errors, key=lambda error: (error.span.line, error.span.column))
+        raise SourceErrors(order)
     return tuple(own)
 
 
@@ -134,146 +94,153 @@ def read(
 class _Reader:
     """One file being read; collects what is wrong instead of stopping at the first."""
 
-    file: str
-    text: str
+    document: Document
     errors: list[SourceError] = field(default_factory=list)
 
-    def fault(self, name: str, key: str, message: str, hint: str = "") -> None:
-        """Note an error at a key of a type."""
-        lines = self.text.splitlines()
-        heads = [i for i, row in enumerate(lines) if row.strip().strip("[]\"' ") == name]
-        start = heads[0] if heads else 0
-        for index in range(start, len(lines)):
-            column = lines[index].find(key)
-            if column >= 0:
-                span = Span(self.file, index + 1, column + 1, max(len(key), 1), lines[index])
-                break
-        else:
-            span = Span(self.file, 0, 0, 1, "")
-        self.errors.append(SourceError(message, span, hint))
+    def fault(self, path: Path, message: str, hint: str = "") -> None:
+        """Note an error at a value, or at what holds it."""
+        self.errors.append(SourceError(message, self.document.place(path), hint))
 
-    def attempt(self, name: str, key: str, get: Callable[[], Any]) -> Any:
+    def unknown(self, path: Path, known: Iterable[str]) -> None:
+        """Note a key that means nothing."""
+        hint = "keys: " + " ".join(sorted(known))
+        self.errors.append(SourceError(f'unknown key "{path[-1]}"', self.document.key(path), hint))
+
+    def attempt(self, path: Path, get: Callable[[], _T]) -> _T | None:
         """Return what `get` gives, or None after noting why it fails."""
         try:
             return get()
-        except (ValueError, TypeError) as error:
-            self.fault(name, key, str(error))
+        except ValueError as error:
+            self.fault(path, str(error), getattr(error, "hint", ""))
             return None
 
-    def entry(
-        self, name: str, row: dict[str, Any], known: Mapping[str, TypeEntry]
-    ) -> TypeEntry | None:
-        row = dict(row)
+    def entry(self, name: str, known: Mapping[str, TypeEntry]) -> TypeEntry | None:
+        row = self.document.values[name]
+        if not isinstance(row, dict):
+            self.fault((name,), "a type is a table, [NAME]")
+            return None
         base = None
         if "like" in row:
-            like = row.pop("like")
-            base = known.get(like)
+            base = known.get(row["like"]) if isinstance(row["like"], str) else None
             if base is None:
-                self.fault(name, "like", f'"{like}" stands nowhere above')
+                self.fault((name, "like"), f"{row['like']!r}: no type of that name stands above")
                 return None
-        default = self._source(name, row.pop("source", None), base)
-        rating = self.attempt(name, "rating", lambda: Rating(row.pop("rating", "design-centre")))
-        sources: dict[str, Source] = dict(base.sources) if base else {}
-        limits: dict[str, Limit] = dict(base.limits) if base else {}
-        changes: dict[str, Any] = {"name": name, "aliases": tuple(row.pop("aliases", ()))}
-        for key in list(row):
-            if key not in LIMITS and key not in NUMBERS:
-                continue
-            found = self.attempt(name, key, partial(_parts, row[key], default, rating))
-            del row[key]
-            if found is None:
-                continue
-            words, source, system = found
-            if key in NUMBERS:
-                attribute, unit = NUMBERS[key]
-                changes[attribute] = self.attempt(name, key, partial(quantity, words, unit))
-                sources[attribute] = source
-            if key in LIMITS:
-                stress = LIMITS[key]
-                value = self.attempt(name, key, partial(quantity, words, STRESSES[stress]))
-                if value is not None:
-                    limits[stress] = Limit(value=abs(value), source=str(source), rating=system)
-                    sources[f"limits.{stress}"] = source
-        for key in WORDS + FLAGS + ("plates", "diodes"):
-            if key in row:
-                changes[key] = row.pop(key)
-        lines = [self._line(name, line, default) for line in row.pop("operation", ())]
-        if lines:
-            changes["operation"] = tuple(line for line in lines if line is not None)
+        told = {
+            key: self.attempt((name, key), partial(kind, row[key]))
+            for key, kind in WORDS.items()
+            if key in row
+        }
+        words: dict[str, Any] = {key: word for key, word in told.items() if word is not None}
+        default = words.pop("source", None)
+        rating: Rating = words.pop("rating", Rating.DESIGN_CENTRE)
+        changes = {"name": name, "note": "", **words, **self._numbers(name, base, default, rating)}
+        lines = row.get("operation", [])
+        if not isinstance(lines, list):
+            self.fault((name, "operation"), "operation is a list of tables, [{plate = …}]")
+        elif lines:
+            found = [
+                self._line((name, "operation", k), lines[k], default) for k in range(len(lines))
+            ]
+            changes["operation"] = tuple(line for line in found if line is not None)
         for key in row:
-            self.fault(
-                name, key, f'unknown key "{key}"', "keys: " + " ".join(sorted({*LIMITS, *NUMBERS}))
-            )
-        changes |= {"limits": MappingProxyType(limits), "sources": MappingProxyType(sources)}
-        changes.setdefault("note", "")
+            if key not in KEYS:
+                self.unknown((name, key), KEYS)
         if base is not None:
-            return _finish(replace(base, **changes))
-        if changes.get("family") not in FAMILIES:
-            self.fault(name, "family", f"{name} needs a family", "one of: " + ", ".join(FAMILIES))
+            return _finish(replace(base, **{"aliases": (), **changes}))
+        if "family" not in changes:
+            if "family" not in row:
+                self.fault(
+                    (name,), f"{name} needs a family", "one of: " + ", ".join(cells.FAMILIES)
+                )
             return None
         return _finish(TypeEntry(**changes))
 
-    def _source(self, name: str, text: str | None, base: TypeEntry | None) -> Source | None:
-        if text is None:
-            return None
-        return self.attempt(name, "source", lambda: marked(text))  # type: ignore[no-any-return]
-
-    def _line(self, name: str, row: dict[str, Any], default: Source | None) -> Operation | None:
-        row = dict(row)
-        source = default
-        if "source" in row:
-            words = row.pop("source")
-            source = self.attempt(name, "operation", lambda: marked(words))
-        if source is None:
-            self.fault(name, "operation", f"a line of {name} without a source")
-            return None
-        values: dict[str, Any] = {
-            "mu": row.pop("amplification", None),
-            "cutoff": row.pop("cutoff", False),
-            "unit": row.pop("unit", 1),
-        }
-        for key, words in row.items():
-            if key not in LINE:
-                self.fault(name, "operation", f'unknown key "{key}"', "keys: " + " ".join(LINE))
+    def _numbers(
+        self, name: str, base: TypeEntry | None, default: Source | None, rating: Rating
+    ) -> dict[str, Any]:
+        """Return the fields with a unit, the limits, and the sources of all."""
+        row = self.document.values[name]
+        sources: dict[str, Source] = dict(base.sources) if base else {}
+        limits: dict[str, Limit] = dict(base.limits) if base else {}
+        changes: dict[str, Any] = {}
+        for key in row:
+            if key not in LIMITS and key not in NUMBERS:
                 continue
-            attribute, unit = LINE[key]
-            get = _conductance if key == "transconductance" else quantity
-            values[attribute] = self.attempt(name, key, partial(get, words, unit))
-        if values.get("plate_V") is None:
-            self.fault(name, "operation", f"a line of {name} without plate voltage")
+            path = (name, key)
+            found = self.attempt(path, partial(cells.parts, row[key], default, rating))
+            if found is None:
+                continue
+            words, source, system = found
+            attribute, unit = NUMBERS.get(key) or (LIMITS[key], STRESSES[LIMITS[key]])
+            value = self.attempt(path, partial(cells.positive, words, unit))
+            if value is None:
+                continue
+            if key in NUMBERS:
+                changes[attribute] = value
+                sources[attribute] = source
+            if key in LIMITS:
+                limits[LIMITS[key]] = Limit(value=value, source=str(source), rating=system)
+                sources[f"limits.{LIMITS[key]}"] = source
+        changes["limits"] = MappingProxyType(limits)
+        changes["sources"] = MappingProxyType(sources)
+        return changes
+
+    def _line(self, path: Path, row: Any, default: Source | None) -> Operation | None:
+        if not isinstance(row, dict):
+            self.fault(path, "a line of operation is a table, {plate = …}")
             return None
-        return Operation(**values, source=source)
+        values: dict[str, Any] = {"source": default}
+        for key, cell in row.items():
+            if key in LINE_WORDS:
+                attribute, kind = LINE_WORDS[key]
+                value = self.attempt((*path, key), partial(kind, cell))
+            elif key in LINE:
+                attribute, unit = LINE[key]
+                get = cells.conductance if key == "transconductance" else quantity
+                value = self.attempt((*path, key), partial(get, cells.text(cell), unit))
+            else:
+                self.unknown((*path, key), {*LINE, *LINE_WORDS})
+                continue
+            if value is None:
+                return None
+            values[attribute] = value
+        if values["source"] is None:
+            self.fault(path, "this line has no source, nor has its entry")
+            return None
+        if values.get("plate_V") is None:
+            self.fault(path, "this line has no plate voltage")
+            return None
+        return Operation(**values)
 
 
-def marked(text: str) -> Source:
-    """Split "RCA RC-19 [memory H]".
-
-    Raises:
-        ValueError: When the mark is missing or unknown.
-    """
-    match = _MARKED.match(text)
-    if match is None or match["mark"] not in MARKS:
-        raise ValueError(f'"{text}" does not end in a mark: [' + "] [".join(MARKS) + "]")
-    return Source(match["text"], match["mark"])
-
-
-def _parts(cell: Any, default: Source | None, rating: Rating) -> tuple[str, Source, Rating]:
-    """Return quantity, source and rating system of a cell: "5 V" or ["5 V", source, rating]."""
-    cells = [cell] if isinstance(cell, str) else list(cell)
-    if not cells or not all(isinstance(part, str) for part in cells) or len(cells) > 3:
-        raise ValueError(f'{cell!r} is neither "5 V" nor ["5 V", "source [mark]", "rating system"]')
-    source = marked(cells[1]) if len(cells) > 1 else default
-    if source is None:
-        raise ValueError(f'"{cells[0]}" has no source, nor has its entry')
-    return cells[0], source, Rating(cells[2]) if len(cells) > 2 else rating
+WORDS: Mapping[str, Callable[[Any], Any]] = {
+    "family": cells.family,
+    "source": cells.source_of,
+    "rating": cells.rating_system,
+    "aliases": cells.strings,
+    "gas": cells.string,
+    "note": cells.string,
+    "directly_heated": cells.flag,
+    "slow": cells.flag,
+    "contact": cells.flag,
+    "remote": cells.flag,
+    "plates": cells.count,
+    "diodes": cells.count,
+}
+LINE_WORDS: Mapping[str, tuple[str, Callable[[Any], Any]]] = {
+    "amplification": ("mu", cells.ratio),
+    "cutoff": ("cutoff", cells.flag),
+    "unit": ("unit", cells.count),
+    "source": ("source", cells.source_of),
+}
+KEYS = frozenset({*LIMITS, *NUMBERS, *WORDS, "like", "operation"})
 
 
 def _finish(entry: TypeEntry) -> TypeEntry:
     """Fill in what follows from the rest."""
-    warm_up = entry.warm_up
-    if entry.heater_V is not None and warm_up == "instant":
+    warm_up = "instant"
+    if entry.heater_V is not None:
         warm_up = "filament" if entry.directly_heated else "cathode"
     pins = pins_of(layout(entry))
-    return replace(
-        entry, warm_up=warm_up, pins=pins, model=entry.model or (entry.name if pins else "")
-    )
+    model = entry.model or (entry.name if pins else "")
+    return replace(entry, warm_up=warm_up, pins=pins, model=model)

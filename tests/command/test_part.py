@@ -78,4 +78,4 @@ def test_a_users_own_table_is_read_and_its_faults_are_shown(tmp_path):
     own.write_text('[6Q99]\nfamily = "triode"\nplate_voltage = "9 kg"\n', encoding="utf-8")
     result = run("6q99", "--types", str(own))
     assert result.exit_code == 2
-    assert "own.toml:3:1: " in result.stderr
+    assert "own.toml:3:17: " in result.stderr

@@ -1,5 +1,6 @@
 """The type table: nothing without a source, spot checks, names, and users' own tables."""
 
+import re
 from dataclasses import fields
 from pathlib import Path
 
@@ -7,9 +8,9 @@ import pytest
 
 from stress.parts import models, types
 from stress.parts.limit import STRESSES, Rating
-from stress.parts.read_type import FAMILIES
 from stress.parts.recognise import plain
 from stress.parts.type import MARKS, TypeEntry
+from stress.parts.type_cell import FAMILIES
 from stress.text.span import SourceErrors
 
 ALL = types.all_types()
@@ -195,15 +196,63 @@ def test_every_fault_of_a_table_is_reported_with_its_place(tmp_path):
     assert [line for line, _ in told] == [3, 4, 6, 9, 13, 14]
     assert "no source" in told[0][1]
     assert "does not end in a mark" in told[1][1]
-    assert "needs a family" in told[2][1]
-    assert '"nothing" stands nowhere above' in told[3][1]
+    assert "'magic' is no family" in told[2][1]
+    assert told[3][1] == "'nothing': no type of that name stands above"
     assert 'unknown key "plate_woltage"' in told[4][1]
+
+
+GOOD = """\
+[Q]
+family = "pentode"
+aliases = ["Q1"]
+source = "x [read]"
+rating = "absolute"
+directly_heated = true
+contact = false
+diodes = 1
+gas = ""
+note = "n"
+heater_voltage = "6.3 V"
+heater_current = ["0.3 A", "y [computed]", "design-centre"]
+plate_voltage = "300 V"
+peak_inverse = "1 kV"
+operation = [{plate = "250 V", grid = "-2 V", plate_current = "1 mA", amplification = 9.5, unit = 1, cutoff = false, transconductance = "1 mA/V", source = "z [read]"}]
+"""
+LEFT = [line.split(" = ")[0] for line in GOOD.splitlines() if " = " in line]
+INNER = ["plate", "grid", "plate_current", "amplification", "unit", "cutoff", "transconductance"]
+ODD = ["5", "-1.5", "true", '""', '"x"', "[]", "[[]]", "{}", "1979-05-27", "nan", '"1 mA"', '["a"]']
+
+
+def faults_of(path):
+    try:
+        types.load(path)
+    except SourceErrors as caught:
+        return caught.errors
+    return ()
+
+
+@pytest.mark.parametrize("value", ODD)
+def test_odd_values_are_faults_and_never_crash(tmp_path, value):
+    """Any key with any value either reads or is reported with a place."""
+    path = tmp_path / "odd.toml"
+    path.write_text(GOOD, encoding="utf-8")
+    assert len(types.load(path)) == 1
+    texts = [re.sub(rf"(?m)^{key} = .*$", f"{key} = {value}", GOOD) for key in LEFT]
+    texts += [re.sub(rf"\b{key} = [^,}}]+", f"{key} = {value}", GOOD) for key in INNER]
+    texts += [f"Q = {value}\n", f"[Q]\nlike = {value}\n"]
+    faults = 0
+    for text in texts:
+        path.write_text(text, encoding="utf-8")
+        found = faults_of(path)
+        faults += bool(found)
+        assert all(error.span.line > 0 and str(error) for error in found)
+    assert faults > len(texts) // 2
 
 
 def test_text_that_is_no_toml_is_reported(tmp_path):
     path = tmp_path / "no.toml"
     path.write_text("a = = 1\n", encoding="utf-8")
-    with pytest.raises(SourceErrors, match="no TOML"):
+    with pytest.raises(SourceErrors, match=r"no\.toml:1:"):
         types.load(path)
     with pytest.raises(OSError, match="missing"):
         types.load(Path("missing.toml"))
