@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import sys
+from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -32,11 +33,14 @@ def bench(given: Given, readings: Path | None, jobs: int | None, form: bool) -> 
     from rich.console import Console
 
     from stress import pipeline
+    from stress.engine.pool import Pool
+    from stress.judge.measured import moved, order, past
     from stress.judge.verdict import verdicts
     from stress.parts import reading
-    from stress.report.bench_text import print_bench, print_change, print_verdicts
+    from stress.report.bench_text import print_bench, print_measured, print_verdicts
     from stress.report.progress import progress
     from stress.study.as_measured import as_measured
+    from stress.study.working import work
 
     console = Console()
     with plain_errors():
@@ -55,18 +59,29 @@ def bench(given: Given, readings: Path | None, jobs: int | None, form: bool) -> 
         ripple = {
             name: limits.esr_Hz for name, limits in drawn.bench.items() if limits.esr_Hz is not None
         }
-        with progress() as report:
-            measured = pipeline.review_circuit(
-                as_measured(circuit, found.used, ripple_Hz=ripple), jobs=jobs, progress=report
-            )
+        measured = as_measured(circuit, found.used, ripple_Hz=ripple)
+        with progress() as report, Pool(jobs=jobs, progress=_told(report)) as pool:
+            healthy = work(measured, solver=pool)
         console.print()
-        print_change(drawn, measured, console, title="The equipment as measured")
+        print_measured(
+            drawn,
+            console,
+            order=order(drawn.risks, found.verdicts),
+            stressed=past(measured, drawn=drawn.working, measured=healthy.working),
+            moved=moved(circuit, drawn=drawn.working, measured=healthy.working),
+            unanswered=healthy.working.unanswered,
+        )
     for problem in found.problems:
         click.echo(str(problem), err=True)
     if found.problems:
         sys.exit(UNUSABLE)
-    if drawn.run.unsolved or measured.run.unsolved:
+    lost = [case for case in healthy.working.unanswered if case.kind == "unsolved"]
+    if drawn.run.unsolved or lost:
         sys.exit(UNSOLVED)
+
+
+def _told(report: Callable[[str, int, int], None]) -> Callable[[int, int], None]:
+    return lambda done, asked: report("as measured", done, asked)
 
 
 def _measurable(circuit: Circuit) -> tuple[str, ...]:

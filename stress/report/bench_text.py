@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from rich.console import Console
 from rich.text import Text
 
 from stress.circuit.circuit import Position
+from stress.judge.measured import Moved, Past
 from stress.judge.verdict import Advice, Verdicts
 from stress.report.order import order_of_work
-from stress.report.words import amount, encodable, marked, plain
-from stress.study.result import Bench, Review
+from stress.report.words import amount, encodable, marked, plain, unit_of, victim
+from stress.study.result import Bench, Review, Risk, Unanswered
 from stress.text.figure import figure
 
 INDENT = 5
@@ -101,31 +104,83 @@ def print_verdicts(found: Verdicts, console: Console) -> None:
             out.line(str(drift), indent=INDENT)
 
 
+def print_measured(
+    drawn: Review,
+    console: Console,
+    *,
+    order: Sequence[Risk],
+    stressed: Sequence[Past],
+    moved: Sequence[Moved],
+    unanswered: Sequence[Unanswered] = (),
+) -> None:
+    """Print the equipment as measured beside the equipment as drawn.
+
+    Args:
+        drawn: The review of the equipment as drawn.
+        console: Where.
+        order: The order of work with what the readings tell.
+        stressed: What is past a limit as measured, with nothing else wrong.
+        moved: Voltages that are others as measured.
+        unanswered: Conditions that have no number as measured.
+    """
+    out = _Out(console)
+    out.line("The equipment as measured", bold=True)
+    _order(drawn.risks, order, out)
+    out.line()
+    out.line("Past a limit as measured, nothing else being wrong", bold=True)
+    if not stressed:
+        out.line("nothing", indent=INDENT)
+    for one in stressed:
+        was = ""
+        if one.victim.healthy is not None:
+            was = f"; as drawn {figure(one.victim.healthy, unit_of(one.victim.quantity))}"
+        known = ", past it already" if one.drawn else ""
+        out.line(f"{one.condition}: {victim(one.victim)}{was}{known}", indent=INDENT)
+    for case in unanswered:
+        out.line(f"{case.kind}: {case.text}", first=f"{case.case} ", indent=_hang(case.case))
+    if moved:
+        out.line()
+        out.line("Voltages that moved", bold=True)
+    for change in moved:
+        out.line(
+            f"{figure(change.drawn_V, 'V')} as drawn, {figure(change.measured_V, 'V')} as "
+            f"measured ({change.condition})",
+            first=f"{change.position} ",
+            indent=_hang(change.position),
+        )
+
+
+def _hang(name: str) -> int:
+    return max(INDENT, len(name) + 1)
+
+
 def print_change(before: Review, after: Review, console: Console, *, title: str) -> None:
     """Print how the order of work and the findings change from one review to the other.
 
     Args:
-        before: As drawn.
-        after: With readings, or with the parts that were chosen.
+        before: As found.
+        after: With the parts that were chosen.
         title: What the second one is.
     """
     out = _Out(console)
     out.line(title, bold=True)
-    places = {risk.position: (risk.rank, risk.severity) for risk in before.risks}
-    moved = [
-        risk for risk in after.risks if places.get(risk.position) != (risk.rank, risk.severity)
-    ]
-    if not moved:
+    _order(before.risks, after.risks, out)
+    _findings(before, after, out)
+
+
+def _order(before: Sequence[Risk], after: Sequence[Risk], out: _Out) -> None:
+    places = {risk.position: (risk.rank, risk.severity) for risk in before}
+    changed = [risk for risk in after if places.get(risk.position) != (risk.rank, risk.severity)]
+    if not changed:
         out.line("the order of work stays as it was", indent=INDENT)
-    for risk in moved:
+    for risk in changed:
         old = places.get(risk.position)
         was = f"was {old[0]} ({old[1]})" if old is not None else "was not ranked"
         out.line(
             f"now {risk.rank} ({risk.severity}), {was}: {risk.reason}",
-            first=f"{risk.position:<4} ",
-            indent=INDENT,
+            first=f"{risk.position} ",
+            indent=_hang(risk.position),
         )
-    _findings(before, after, out)
 
 
 def _findings(before: Review, after: Review, out: _Out) -> None:
@@ -141,4 +196,4 @@ def _findings(before: Review, after: Review, out: _Out) -> None:
         out.line()
         out.line(heading, bold=True)
         for step in steps:
-            out.line(step.text, first=f"{step.where:<4} ", indent=max(INDENT, len(step.where) + 1))
+            out.line(step.text, first=f"{step.where} ", indent=_hang(step.where))
