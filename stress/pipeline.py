@@ -192,6 +192,7 @@ def review_circuit(
         explanations={
             p.name: explain(
                 p,
+                circuit=circuit,
                 chains=chains,
                 working=working,
                 worst=worsts.get(p.name),

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from math import log
 
 from stress.circuit.chain import Chains, Step
-from stress.circuit.circuit import Position
+from stress.circuit.circuit import Circuit, Position
 from stress.finding import Severity
+from stress.judge.curve import nearest
+from stress.judge.grid_reading import grid_reading
 from stress.study import conditions as stock
 from stress.study.failures import describe
 from stress.study.result import (
@@ -36,6 +37,7 @@ DO = {
 def explain(
     position: Position,
     *,
+    circuit: Circuit,
     chains: Chains,
     working: Working,
     worst: Worst | None,
@@ -52,12 +54,22 @@ def explain(
     ]
     if leakage is not None:
         paragraphs += _leak(position, chains=chains, working=working, leakage=leakage)
+        if leakage.governing is not None:
+            paragraphs.append(
+                grid_reading(
+                    position,
+                    circuit=circuit,
+                    chains=chains,
+                    nodes=working.nodes,
+                    found=leakage.governing,
+                )
+            )
     paragraphs += [
         failure.text for failure in failures if failure.dangerous or failure.consequences
     ]
-    if bench is not None and (line := bench_line(bench)):
-        paragraphs.append(line)
-    return tuple(paragraphs)
+    if bench is not None:
+        paragraphs.append(bench_line(bench))
+    return tuple(paragraph for paragraph in paragraphs if paragraph)
 
 
 def bears(
@@ -188,14 +200,6 @@ def _node(step: Step, point: CurvePoint, healthy: Mapping[str, float]) -> str:
         return step.text
     way = "rises" if now > was else "falls"
     return f"{step.text} {way} by {figure(abs(now - was), 'V')} to {figure(now, 'V')}"
-
-
-def nearest(found: LeakageIn, ohm: float | None) -> CurvePoint | None:
-    """Return the solved point of a curve that lies nearest to a resistance, by its logarithm."""
-    solved = [point for point in found.curve if point.unanswered is None]
-    if ohm is None or not solved:
-        return None
-    return min(solved, key=lambda point: abs(log(point.ohm / ohm)))
 
 
 def bench_line(bench: Bench) -> str:

@@ -11,6 +11,7 @@ from stress.engine.solver import Solver
 from stress.study import conditions as stock
 from stress.study.damage_time import timed
 from stress.study.fault import Fault, across_ideal_source, values
+from stress.study.gain import GainLoss, gain_losses
 from stress.study.leak_reading import Scene, open_scene
 from stress.study.limits import all_stresses, over
 from stress.study.result import Failure, Leakage, Unanswered, Victim
@@ -19,6 +20,7 @@ from stress.text.figure import figure
 
 JUDGED = (stock.NOMINAL, stock.HIGH)
 KINDS = ("short", "open", "dried", "low", "reversed")
+AUDIBLE_V = 1e-3  # rms at a loudspeaker of a few ohm (common practice)
 HUM_RATIO = 1.5  # a ripple that grows by half is heard (common practice)
 NOT_LIMITED = "not limited by the netlist: fuse or wiring"
 
@@ -75,11 +77,13 @@ def failures(
         Try(scene=scene, fault=fault, answer=answer)
         for (scene, fault), answer in zip(wanted, solver.solve(cases), strict=True)
     ]
+    gains = gain_losses(circuit, studied, healthy=healthy, solver=solver)
     results = {}
     for position in studied:
         if position.value_F:
             own = [t for t in tries if t.fault.position == position.name]
-            results[position.name] = tuple(_failures_of(circuit, position, own))
+            losses = gains.get(position.name, ())
+            results[position.name] = tuple(_failures_of(circuit, position, own, losses))
     return results
 
 
@@ -102,13 +106,15 @@ def _case(scene: Scene, fault: Fault, leakage: Leakage | None) -> Case:
     )
 
 
-def _failures_of(circuit: Circuit, position: Position, tries: Sequence[Try]) -> list[Failure]:
+def _failures_of(
+    circuit: Circuit, position: Position, tries: Sequence[Try], losses: Sequence[GainLoss]
+) -> list[Failure]:
     found = []
     for kind in kinds_of(position):
         like = "short" if kind == "reversed" else kind
         own = [t for t in tries if t.fault.kind == like]
         if own:
-            found.append(_failure(circuit, position, kind, own))
+            found.append(_failure(circuit, position, kind, own, losses))
         elif like == "short":
             found.append(
                 Failure(
@@ -128,12 +134,19 @@ def _failures_of(circuit: Circuit, position: Position, tries: Sequence[Try]) -> 
     return found
 
 
-def _failure(circuit: Circuit, position: Position, kind: str, tries: Sequence[Try]) -> Failure:
+def _failure(
+    circuit: Circuit,
+    position: Position,
+    kind: str,
+    tries: Sequence[Try],
+    losses: Sequence[GainLoss],
+) -> Failure:
     """Return the failure in the condition with the worst victim, nominal where none has one."""
     judged = [(t, _victims(t)) for t in tries]
     worst, victims = max(judged, key=lambda pair: _severity(pair[1]))
     why = next((u for t in tries if (u := unanswered(t.answer, _name(t))) is not None), None)
-    consequences = () if kind == "reversed" else _consequences(circuit, worst)
+    lost = tuple(str(loss) for loss in losses if loss.fault == kind)
+    consequences = () if kind == "reversed" else (*lost, *_consequences(circuit, worst))
     return Failure(
         position=position.name,
         fault=kind,
@@ -185,6 +198,11 @@ def _consequences(circuit: Circuit, one: Try) -> tuple[str, ...]:
                 f"ripple at {position.name} {figure(was, 'V')} to {figure(now, 'V')} peak to peak"
             )
     for part in circuit.parts:
+        if part.kind is Kind.LOUDSPEAKER:
+            nodes = (part.pins["plus"], part.pins["minus"])
+            was, now = healthy.rms(healthy.voltage(*nodes)), faulty.rms(faulty.voltage(*nodes))
+            if was > 1e-6 and now > max(HUM_RATIO * was, AUDIBLE_V):
+                found.append(f"hum at the loudspeaker {figure(was, 'V')} to {figure(now, 'V')} rms")
         if part.kind is Kind.TUBE:
             was = one.scene.stresses.get(part.name, {}).get("cathode_A", 0.0)
             stresses = all_stresses(circuit, faulty, removed=one.scene.removed)
