@@ -2,20 +2,21 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from markupsafe import Markup
 
 from stress.parts.limit import Limit
 from stress.report import words
+from stress.report.course import MOST_STRESSES, Course, courses, nodes, points_of
 from stress.report.drawing import Scale, axis_bottom, axis_left, line, polyline, svg, tag, text
-from stress.study.result import CurvePoint, Leakage, LeakageIn, Review
+from stress.study.result import CurvePoint, Leakage, Review
 from stress.text.figure import figure
 
 _WIDTH, _PANEL, _HEAD, _FOOT = 400.0, 118.0, 26.0, 46.0
 _LEFT, _RIGHT = 66.0, 388.0
-PAST, WITHIN, NO_LIMIT = "past its limit", "within", "no limit known"
+PAST, WITHIN, NO_LIMIT = "past its limit", "within", "not judged"
 VERDICTS = (PAST, WITHIN, NO_LIMIT, words.NOT_KNOWN)
 _MOST_PANELS = 3
 _HEADROOM = 2.0  # times the limit; what goes higher leaves the picture at its top
@@ -63,49 +64,33 @@ class WhatIf:
 
 def what_if(review: Review, leakage: Leakage) -> WhatIf | None:
     """Return the curve of the governing condition, or None where fewer than two points exist."""
-    points = _points(leakage.governing)
+    points = points_of(leakage.governing)
     if leakage.governing is None or len(points) < 2:
         return None
-    stresses = dict.fromkeys(
-        (part, stress) for point in points for part in point.stresses for stress in
-        point.stresses[part]
-    )  # fmt: skip
-    rows = []
-    for part, stress in stresses:
-        limit = _limits(review, part).get(stress)
-        unit = words.unit_of(stress)
-        held = [point.stresses.get(part, {}).get(stress) for point in points]
-        rows.append(
-            Row(
-                part=part,
-                what=words.quantity(stress),
-                limit=figure(limit.value, unit) if limit else words.NOT_KNOWN,
-                values=_shown(points, held, unit),
-                verdicts=tuple(_verdict(value, limit) for value in held),
-            )
-        )
-    for node in dict.fromkeys(node for point in points for node in point.nodes):
-        held = [point.nodes.get(node) for point in points]
-        values = _shown(points, held, "V")
-        rows.append(
-            Row(part=f"node {node}", what="voltage", limit="none", values=values,
-                verdicts=(NO_LIMIT,) * len(points))
-        )  # fmt: skip
+    found = courses(review, leakage.governing)[:MOST_STRESSES]
+    found += nodes(review.circuit, leakage.governing, position=leakage.position, shown=found)
     x = _scale(points)
     return WhatIf(
         condition=leakage.governing.condition,
         ohm=tuple(figure(point.ohm, "ohm") for point in points),
         leak=_shown(points, [point.leak_A for point in points], "A"),
         x=tuple(x.at(point.ohm) for point in points),
-        rows=tuple(rows),
+        rows=tuple(_row(points, each) for each in found),
     )
 
 
-def _points(of: LeakageIn | None) -> list[CurvePoint]:
-    return sorted(of.curve, key=lambda point: -point.ohm) if of else []
+def _row(points: list[CurvePoint], of: Course) -> Row:
+    limit = of.limit
+    return Row(
+        part=of.part,
+        what=of.words,
+        limit=words.amount(limit.value if limit else None, of.unit, missing=NO_LIMIT),
+        values=_shown(points, of.values, of.unit),
+        verdicts=tuple(_verdict(value, limit) for value in of.values),
+    )
 
 
-def _shown(points: list[CurvePoint], held: list[float | None], unit: str) -> tuple[str, ...]:
+def _shown(points: list[CurvePoint], held: Sequence[float | None], unit: str) -> tuple[str, ...]:
     return tuple(
         point.unanswered.kind if point.unanswered else words.amount(value, unit)
         for point, value in zip(points, held, strict=True)
@@ -120,13 +105,6 @@ def _verdict(value: float | None, limit: Limit | None) -> str:
     return PAST if value > limit.value else WITHIN
 
 
-def _limits(review: Review, part: str) -> Mapping[str, Limit]:
-    try:
-        return review.circuit.part(part).limits
-    except KeyError:  # another position
-        return {}
-
-
 def _scale(points: list[CurvePoint]) -> Scale:
     return Scale(points[0].ohm, points[-1].ohm, _LEFT, _RIGHT, decades=True)
 
@@ -137,19 +115,20 @@ def leak_curve(review: Review, leakage: Leakage) -> Markup | None:
     Limits, the critical and the functional leakage and the bench limit are drawn in.
     """
     governing = leakage.governing
-    points = _points(governing)
+    points = points_of(governing)
     solved = [point for point in points if point.unanswered is None]
     if governing is None or len(solved) < 2:
         return None
-    chosen = _chosen(review, governing, solved)
+    bounded = [each for each in courses(review, governing) if each.limit is not None]
+    chosen = [each for i, each in enumerate(bounded) if i == 0 or each.passes is not None]
+    chosen = chosen[:_MOST_PANELS]
     if not chosen:
         return None
     x = _scale(points)
     bottom = _HEAD + _PANEL * len(chosen)
     drawn: list[Markup] = []
-    for i, (part, stress) in enumerate(chosen):
-        limit = _limits(review, part).get(stress)
-        drawn += _panel(x, solved, part, stress, limit, top=_HEAD + _PANEL * i)
+    for i, course in enumerate(chosen):
+        drawn += _panel(x, points, course, top=_HEAD + _PANEL * i)
     drawn += axis_bottom(x, "ohm", y=bottom - 14, count=5)
     drawn.append(
         text(_RIGHT, bottom + 20, "leakage resistance; leakier to the right", anchor="end",
@@ -162,43 +141,19 @@ def leak_curve(review: Review, leakage: Leakage) -> Markup | None:
         if point.unanswered
     ]
     drawn.append(line(x.start, _HEAD - 8, x.start, bottom - 14, "now", data_now=leakage.position))
-    names = ", ".join(f"{part} {words.quantity(stress)}" for part, stress in chosen)
+    names = ", ".join(f"{each.part} {each.words}" for each in chosen)
     title = f"{leakage.position}: {names} against leakage resistance, in {governing.condition}"
     return svg(
         *drawn, width=_WIDTH, height=bottom + _FOOT - 18, title=title, class_="leak-curve"
     )  # fmt: skip
 
 
-def _chosen(
-    review: Review, governing: LeakageIn, solved: list[CurvePoint]
-) -> list[tuple[str, str]]:
-    """Return the stresses worth a panel: the first victim, others by where they pass."""
-    first = governing.victim or governing.assumed_victim
-    passed: dict[tuple[str, str], float] = {}
-    bounded: list[tuple[str, str]] = []
-    for point in solved:
-        for part, stresses in point.stresses.items():
-            for stress, value in stresses.items():
-                limit = _limits(review, part).get(stress)
-                if limit is None:
-                    continue
-                bounded.append((part, stress))
-                if value > limit.value:
-                    passed.setdefault((part, stress), point.ohm)
-    ordered = sorted(passed, key=lambda each: -passed[each])
-    if first is not None and (first.part, first.quantity) in bounded:
-        ordered.insert(0, (first.part, first.quantity))
-    return list(dict.fromkeys([*ordered, *bounded]))[: _MOST_PANELS if ordered else 1]
-
-
-def _panel(
-    x: Scale, solved: list[CurvePoint], part: str, stress: str, limit: Limit | None, *, top: float
-) -> list[Markup]:
-    unit = words.unit_of(stress)
+def _panel(x: Scale, points: list[CurvePoint], course: Course, *, top: float) -> list[Markup]:
+    unit, limit = course.unit, course.limit
     held = [
-        (point.ohm, point.stresses[part][stress])
-        for point in solved
-        if stress in point.stresses.get(part, {})
+        (point.ohm, value)
+        for point, value in zip(points, course.values, strict=True)
+        if value is not None
     ]
     most = max(value for _, value in held)
     if limit is not None:
@@ -211,7 +166,7 @@ def _panel(
         tag("rect", x=_LEFT, y=top + 16, width=_RIGHT - _LEFT, height=_PANEL - 30, class_="frame"),
         polyline([(x.at(ohm), y.at(value)) for ohm, value in held], "trace voltage"),
         *(tag("circle", cx=x.at(ohm), cy=y.at(v), r=2, class_="solved") for ohm, v in held),
-        text(_LEFT, top + 11, f"{part} {words.quantity(stress)}", class_="side"),
+        text(_LEFT, top + 11, f"{course.part} {course.words}", class_="side"),
     ]
     if limit is not None:
         place = y.at(limit.value)

@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import csv
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Mapping
 from pathlib import Path
 
 from stress.circuit.circuit import Part, Position
-from stress.parts.limit import Limit, Rating
+from stress.parts.limit import Limit
 from stress.report import borne, words
+from stress.report.course import judged_in
 from stress.report.shopping import shopping_list
 from stress.report.table import (
     BROAD,
@@ -220,13 +221,13 @@ def _part(review: Review, of: Part) -> Iterator[tuple[Cell, ...]]:
     names = dict.fromkeys([*of.limits, *(name for each in held.values() for name in each)])
     for stress in names:
         limit = of.limits.get(stress)
+        unit = words.unit_of(stress)
         by_condition = {
             condition: values[stress] for condition, values in held.items() if stress in values
         }
-        condition = _judged_in(review, limit)
+        condition = _judged_in(review, of.name, stress, by_condition)
         judged = by_condition.get(condition)
         largest = max(by_condition, key=lambda each: by_condition[each], default=None)
-        unit = words.unit_of(stress)
         if limit is None:
             verdict = NO_LIMIT
         elif judged is None:
@@ -248,11 +249,17 @@ def _part(review: Review, of: Part) -> Iterator[tuple[Cell, ...]]:
         )
 
 
-def _judged_in(review: Review, limit: Limit | None) -> str:
-    """Return the condition a limit holds in: design-centre ones already allow for the line."""
-    high = any(each.name == "high" for each in review.working.conditions)
-    design_centre = limit is None or limit.rating is Rating.DESIGN_CENTRE
-    return "high" if high and not design_centre else "nominal"
+def _judged_in(review: Review, part: str, stress: str, by_condition: Mapping[str, float]) -> str:
+    """Return the lasting condition, of those its limit is judged in, where a stress is largest."""
+    judging = [
+        each.name
+        for each in review.working.conditions
+        if each.lasts and stress in judged_in(review, each.name).get(part, {})
+    ]
+    known = [name for name in judging if name in by_condition]
+    if known:
+        return max(known, key=lambda name: by_condition[name])
+    return judging[0] if judging else "nominal"
 
 
 def _source(limit: Limit | None) -> str:
@@ -277,6 +284,7 @@ def failure_rows(of: Iterable[Failure]) -> tuple[tuple[Cell, ...], ...]:
 
 
 def _failure(of: Failure) -> tuple[Cell, ...]:
+    more = [each for each in of.consequences if each not in of.text]
     victims = "; ".join(words.victim(each) for each in of.victims)
     if of.unanswered:
         victims = of.unanswered.kind
@@ -286,7 +294,7 @@ def _failure(of: Failure) -> tuple[Cell, ...]:
         Cell(of.condition),
         Cell("yes" if of.dangerous else "no"),
         Cell(victims or "nothing"),
-        Cell(" ".join((of.text, *of.consequences)) or "nothing to tell"),
+        Cell(" ".join((of.text, *more)) or "nothing to tell"),
     )
 
 

@@ -20,7 +20,7 @@ from stress.study.result import Review
 from stress.text.figure import figure
 
 WIDE_FROM = 132  # characters; what the wide table of positions needs
-_MIN_WIDTHS = {"role": 9, "fit": 13}  # their longest word, and a value with its unit
+_MIN_WIDTHS = {"role": 9, "fit": 13, "do": 7}  # their longest word, and a value with its unit
 _HEADINGS = {
     Severity.REPLACE: "Replace before any power",
     Severity.TEST: "Test before power",

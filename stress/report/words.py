@@ -49,7 +49,7 @@ QUANTITIES = {
 
 
 # Less than this is noise of the simulation and is not spelt out.
-_FLOORS = {"V": 1e-6, "A": 1e-12, "W": 1e-9}
+_FLOORS = {"V": 1e-3, "A": 1e-9, "W": 1e-6}
 
 
 def amount(value: float | None, unit: str, *, missing: str = NOT_KNOWN) -> str:
