@@ -11,7 +11,7 @@ from stress.command.options import UNUSABLE, plain_errors
 
 
 @click.command("part")
-@click.argument("type_name", metavar="TYPE")
+@click.argument("type_name", metavar="[TYPE]", required=False)
 @click.option(
     "--types",
     "type_files",
@@ -20,13 +20,23 @@ from stress.command.options import UNUSABLE, plain_errors
     help="Your own table of types; can be given again.",
 )
 @click.option("--model", is_flag=True, help="Print the built-in model as SPICE text instead.")
-def part(type_name: str, type_files: tuple[Path, ...], model: bool) -> None:
-    """Print what is known of a tube, rectifier or semiconductor TYPE, with the sources."""
+def part(type_name: str | None, type_files: tuple[Path, ...], model: bool) -> None:
+    """Print what is known of a tube, rectifier or semiconductor TYPE, with the sources.
+
+    Without TYPE: all designations. TYPE may also be a built-in transformer or choke.
+    """
     from stress.parts import models, types
-    from stress.parts.describe import description
+    from stress.parts.describe import description, listing, wound_description
 
     with plain_errors():
         extra = tuple(entry for path in type_files for entry in types.load(path))
+    if type_name is None:
+        click.echo(listing())
+        return
+    wound = wound_description(type_name)
+    if wound is not None:
+        click.echo(models.subcircuit(type_name) if model else wound, nl=not model)
+        return
     entry = types.find(type_name, extra=extra)
     if entry is None:
         near = types.near(type_name)
@@ -36,7 +46,7 @@ def part(type_name: str, type_files: tuple[Path, ...], model: bool) -> None:
     if not model:
         click.echo(description(entry))
         return
-    text = models.subcircuit(type_name)
+    text = models.subcircuit(type_name, extra=extra)
     if text is None:
         click.echo(f"{entry.name} has no built-in model", err=True)
         sys.exit(UNUSABLE)

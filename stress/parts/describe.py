@@ -7,6 +7,8 @@ from collections.abc import Iterator
 from stress.parts.limit import STRESSES
 from stress.parts.models import fit_error, units
 from stress.parts.type import Operation, Source, TypeEntry
+from stress.parts.types import all_types
+from stress.parts.wound import MEANINGS, SUBCIRCUITS
 from stress.text.figure import figure
 
 _WORDS = {
@@ -38,6 +40,31 @@ _NUMBERS = (
 def description(entry: TypeEntry) -> str:
     """Return an entry as lines of text for people."""
     return "\n".join([*_head(entry), *_limits(entry), *_operation(entry), *_model(entry)])
+
+
+def wound_description(name: str) -> str | None:
+    """Return what a built-in transformer or choke is called with, as text, or None."""
+    found = SUBCIRCUITS.get(name.lower())
+    if found is None:
+        return None
+    pins, parameters, _ = found
+    shown = [
+        f"{name.lower()}: built-in subcircuit, as coupled inductors",
+        f"  XT1 {pins} {name.lower()} {parameters}",
+        "  pins and parameters with their defaults; state what you measure:",
+    ]
+    told = {word.split("=")[0] for word in parameters.split()}
+    shown += [f"  {key:5} {MEANINGS[key]}" for key in MEANINGS if key in told]
+    return "\n".join(shown)
+
+
+def listing() -> str:
+    """Return the designations of the whole table by family, and the wound parts."""
+    families: dict[str, list[str]] = {}
+    for entry in all_types():
+        families.setdefault(entry.family, []).append(entry.name)
+    families["transformers and chokes"] = list(SUBCIRCUITS)
+    return "\n".join(f"{family}: {', '.join(names)}" for family, names in families.items())
 
 
 def _row(words: str, value: str, note: object = "") -> str:

@@ -70,17 +70,24 @@ SUBCIRCUITS = {
     ),
 }
 
+MEANINGS = {
+    "vp": "primary voltage, rms",
+    "vs": "secondary voltage, rms, unloaded; of each half with a centre tap",
+    "zp": "matched primary impedance, ohm; from plate to plate with a centre tap",
+    "zs": "matched load, ohm",
+    "rp": "resistance of the primary, ohm; end to end",
+    "rs": "resistance of the secondary, ohm; of each half with a centre tap",
+    "im": "magnetising current at vp and f, A; about a tenth of the rated one (common practice)",
+    "f": "frequency for im, Hz",
+    "k": "coupling",
+    "l": "inductance, H; of the whole primary of an output transformer, 10 H is usual",
+    "leak": "leakage inductance over l; 0.005 is usual (common practice)",
+    "r": "resistance, ohm",
+}
+
 
 def subcircuit(name: str) -> str | None:
-    """Return the `.subckt` of a built-in wound part, or None.
-
-    Parameters of `power_transformer` and `power_transformer_ct`: `vp` and `vs` rms unloaded
-    (`vs` of each half), `rp` and `rs` the winding resistances (`rs` of each half), `im` the
-    magnetising current at `vp` and `f`, `k` the coupling. Of the output transformers: `zp`, `zs`
-    the matched impedances (`zp` from plate to plate), `rp`, `rs` the resistances (`rp` from
-    plate to plate), `l` the primary inductance (plate to plate), `leak` the leakage share. Of
-    `choke`: `l`, `r`.
-    """
+    """Return the `.subckt` of a built-in wound part, or None; `MEANINGS` tells its parameters."""
     found = SUBCIRCUITS.get(name.lower())
     if found is None:
         return None

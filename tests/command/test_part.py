@@ -79,3 +79,20 @@ def test_a_users_own_table_is_read_and_its_faults_are_shown(tmp_path):
     result = run("6q99", "--types", str(own))
     assert result.exit_code == 2
     assert "own.toml:3:17: " in result.stderr
+
+
+def test_without_a_type_all_are_listed():
+    result = run()
+    assert result.exit_code == 0
+    (triodes,) = [row for row in result.output.splitlines() if row.startswith("double triode: ")]
+    assert "12AX7" in triodes.split(": ")[1].split(", ")
+
+
+def test_a_transformer_is_told_by_its_parameters():
+    result = run("power_transformer_ct")
+    assert result.exit_code == 0
+    call = "XT1 p1 p2 s1 ct s2 power_transformer_ct vp=117 vs=350 rp=5 rs=60 im=0.1 f=60 k=0.999"
+    assert call in result.output
+    assert "vs    secondary voltage, rms, unloaded; of each half" in result.output
+    text = run("Choke", "--model").output
+    assert text.startswith(".subckt Choke in out l=10 r=200\n")
