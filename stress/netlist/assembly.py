@@ -13,6 +13,7 @@ from stress.netlist.part import Part
 from stress.netlist.problem import Problems
 from stress.netlist.scan import Entry
 from stress.netlist.scope import Scope, did_you_mean, place
+from stress.netlist.source import Source
 from stress.text.span import SourceError, Span
 
 _NAMES = re.compile(r"=\s*[^\W\d]|[{']|ako", re.IGNORECASE)
@@ -39,6 +40,7 @@ class Assembly:
     dollar: bool = True
     _seen: dict[str, Span] = field(default_factory=dict)
     _made: dict[tuple[Entry, Scope | None], str] = field(default_factory=dict)
+    _hidden: dict[Source, dict[str, Entry]] = field(default_factory=dict)
     _same: dict[tuple[object, ...], str] = field(default_factory=dict)
 
     def add(
@@ -112,7 +114,7 @@ class Assembly:
             SourceError: The model is of another kind, or its card is wrong.
         """
         name = word.text.lower()
-        found = self._find(part.scope, name)
+        found = self._find(part.scope, name) or self._elsewhere(part, word)
         if found is None:
             known = {known for block in part.scope.block.outward() for known in block.models}
             mend = did_you_mean(name, known) or (
@@ -153,6 +155,30 @@ class Assembly:
             holder = holder.caller
         return None
 
+    def _elsewhere(self, part: Part, word: Field) -> tuple[Scope, Entry] | None:
+        """Look into the other subcircuits of the same files: old libraries share models so."""
+        scope, name = part.scope, word.text.lower()
+        sources = [block.source for block in scope.block.outward()]
+        sources += [
+            definition.source
+            for block in scope.block.outward()
+            for definition in block.subcircuits.values()
+        ]
+        for source in dict.fromkeys(sources):
+            held = self._hidden.get(source)
+            if held is None:
+                held = self._hidden[source] = _models_in(source)
+            if name in held:
+                while scope.caller is not None:
+                    scope = scope.caller
+                part.notice(
+                    "model-elsewhere",
+                    f'the model "{word.text}" stands inside another subcircuit and is used here',
+                    word,
+                )
+                return scope, held[name]
+        return None
+
     def _key(self, name: str, scope: Scope, entry: Entry) -> str:
         """Return the key of a model, reading its card at the first use."""
         card = entry.card(dollar=self.dollar)
@@ -187,3 +213,14 @@ class Assembly:
             return None
         key = self._key(name.lower(), *found)
         return self.models.get(key)
+
+
+def _models_in(source: Source) -> dict[str, Entry]:
+    """Return every model of a file, whatever it stands in; the first of each name."""
+    found: dict[str, Entry] = {}
+    for index, line in enumerate(source.lines):
+        if line.lstrip()[:6].lower() == ".model":
+            words = line.split(None, 2)
+            if len(words) > 1:
+                found.setdefault(words[1].lower(), Entry(source, index, ".model"))
+    return found

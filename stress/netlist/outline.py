@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from stress.netlist.card import Card
 from stress.netlist.control import PARAMETERS, assigned, function, macros
-from stress.netlist.problem import Problems
+from stress.netlist.problem import Obstacle, Problems
 from stress.netlist.scan import Entry, Lines, scan, section, sections
 from stress.netlist.scope import Block, Scope, did_you_mean, place
 from stress.netlist.source import Files, Refused, Source
@@ -166,6 +166,9 @@ class Outline:
         try:
             source = self.files.include(name, asked_by=entry.source, call=call, part=part)
         except Refused as refusal:
+            if refusal.missing and entry.word == ".lib":
+                self.problems.missing.append(Obstacle(refusal.message, span, refusal.hint))
+                return
             if refusal.missing:
                 self.problems.obstacle(refusal.message, span, refusal.hint)
                 return
@@ -194,7 +197,8 @@ def _named(card: Card) -> tuple[str, str, tuple[int, int]]:
         return rest[1:end].strip(), rest[end + 1 :].strip().strip("\"'"), (start, start + end + 1)
     if card.word.lower() == ".lib":
         words = rest.split()
-        if len(words) == 2:
+        # A second word with a slash in it is the rest of a path with a blank.
+        if len(words) == 2 and not any(mark in words[1] for mark in "\\/"):
             return words[0], words[1].strip("\"'"), (start, start + len(words[0]))
     return rest, "", (start, start + max(len(rest), 1))
 

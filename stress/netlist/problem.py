@@ -39,6 +39,7 @@ class Problems:
     Attributes:
         end: File and line of the `.end` card: ngspice reads on behind it, but what is wrong
             there is no error.
+        missing: Libraries that are not there; they only matter where something is missing.
     """
 
     errors: list[SourceError] = field(default_factory=list)
@@ -46,6 +47,7 @@ class Problems:
     notices: list[Finding] = field(default_factory=list)
     ignored: list[Ignored] = field(default_factory=list)
     end: tuple[str, int] | None = None
+    missing: list[Obstacle] = field(default_factory=list)
     _told: set[tuple[object, ...]] = field(default_factory=set)
 
     def error(self, error: SourceError) -> None:
@@ -70,6 +72,15 @@ class Problems:
     def sorted_errors(self) -> list[SourceError]:
         """Return the errors in the order of the text, file by file."""
         return in_order(self.errors)
+
+    def settle_missing(self) -> None:
+        """Make the missing libraries obstacles, or notices where everything was found anyway."""
+        for error in self.missing:
+            if self.obstacles or self.errors:
+                self.obstacle(error.message, error.span, error.hint)
+            else:
+                text = f"{error.message}; all models and subcircuits were found without it"
+                self.notice("missing-library", "equipment", text, error.span)
 
     def stop(self, message: str, span: Span, hint: str = "") -> None:
         """Give up on the whole netlist.

@@ -98,6 +98,7 @@ def _read(
     elements = resolve(into, problems)
     if flattened:
         elements = tagged(elements, source.lines)
+    problems.settle_missing()
     if len(problems.errors) > 2 and not elements and not into.instances:
         first = problems.sorted_errors()[:3]
         what = SourceError(
