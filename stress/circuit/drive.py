@@ -15,6 +15,7 @@ SERIES_OHM = 1000.0  # surge resistors, winding resistances
 POLE_OHM = 100.0
 POLE_F = 5e-6  # no capacitor across the line is that large
 HELD_F = 0.47e-6  # a capacitor from this size holds a node still
+CHARGED_F = 0.04e-6  # from here on no detector of radio frequency
 HASH_F = 0.05e-6  # up to this size a capacitor at a rectifier only quiets it
 
 
@@ -221,15 +222,21 @@ def _switched(
 
 
 def _converts(graph: Graph, core: Collection[str]) -> bool:
+    """Say whether a plate or collector drives a core and a rectifier on it charges a large
+    capacitor to ground or to the core's other ends."""
+    all_ends = {graph.at(n) for c in core for n in graph.elements[c].nodes}
     ends = {n for n in _ends(graph, core) if not held(graph, n)}
     driven = {n for n in ends if any(p.kind == "output" for p in graph.pins(n))}
     rectified = {
         (j.anode if there == j.cathode else j.cathode)
-        for j in graph.junctions
-        for there in (j.anode, j.cathode)
-        if there in ends - driven
-    }
-    return bool(driven) and any(n != GROUND and held(graph, n) for n in rectified)
+        for there in ends - driven
+        for j in graph.junctions_at(there)
+    } - {GROUND}
+    return bool(driven) and any(
+        e.letter == "C" and (e.value or 0.0) >= CHARGED_F and e.other(n) in all_ends | {GROUND}
+        for n in rectified
+        for e in graph.around(n)
+    )
 
 
 def _returns(

@@ -4,11 +4,13 @@ from __future__ import annotations
 
 from stress.circuit.circuit import Kind, Role
 from stress.circuit.graph import GROUND, Edge, Pin
-from stress.circuit.role_power import Found
+from stress.circuit.role_line import Found
+from stress.circuit.role_power import leads_to_detector, signal_junctions
 from stress.circuit.surroundings import RADIO_F, SIGNAL_OHM, STOPPER_OHM, Ends, Near, Surroundings
 
 RETURN_OHM = 47e3  # less between grid and return is a stopper (common practice)
-DETECTOR_F = 5e-9
+DETECTOR_F = 5e-9  # behind resistors; more there filters AVC
+LOAD_F = 60e-9  # at the detector itself
 
 
 def bypass(s: Surroundings, c: Edge, e: Ends) -> Found:
@@ -80,8 +82,11 @@ def _at_grid(s: Surroundings, c: Edge, e: Ends, node: str, pin: Pin, quiet: str)
 def _is_detector(s: Surroundings, c: Edge, node: str) -> bool:
     """Say whether a small capacitor is at a signal rectifier, at the cold end of its winding,
     or behind a resistor of its load."""
-    if (c.value or 0.0) > DETECTOR_F or node in s.supply.outputs:
+    value = c.value or 0.0
+    if node in s.supply.outputs or value > LOAD_F:
         return False
+    if value > DETECTOR_F:
+        return _at_detector(s, node)
     reached = s.graph.reach(
         node, through=lambda x: x.letter in "RSW", stop=s.still, limit_ohm=STOPPER_OHM
     )
@@ -90,24 +95,15 @@ def _is_detector(s: Surroundings, c: Edge, node: str) -> bool:
 
 def _at_detector(s: Surroundings, node: str) -> bool:
     """Say whether a signal rectifier is at a node, or behind the winding there."""
-    return bool(_signal_junctions(s, node)) or any(
-        _signal_junctions(s, edge.other(node)) for edge in s.graph.windings(node)
+    return bool(signal_junctions(s, node)) or any(
+        signal_junctions(s, edge.other(node)) for edge in s.graph.windings(node)
     )
 
 
-def _signal_junctions(s: Surroundings, node: str) -> list[str]:
-    driven = s.drive.nodes
-    return [
-        j.part
-        for j in s.graph.junctions_at(node)
-        if j.anode not in driven and j.cathode not in driven
-    ]
-
-
 def _detector(s: Surroundings, node: str) -> str:
-    found = _signal_junctions(s, node)
+    found = signal_junctions(s, node)
     for edge in s.graph.windings(node):
-        found += _signal_junctions(s, edge.other(node))
+        found += signal_junctions(s, edge.other(node))
     return f"load of {found[0]}" if found else s.words(node)
 
 
@@ -116,7 +112,7 @@ def _behind_resistors(s: Surroundings, c: Edge, e: Ends, node: str, quiet: str) 
     value = c.value or 0.0
     grids = _return_of(s, node)
     fed = node in s.supply.feeds
-    if grids and _leads_to_rectifier(s, node) and not fed:
+    if grids and leads_to_detector(s, node, least_ohm=RETURN_OHM) and not fed:
         return Role.AVC, f"AVC filter, return of {_names(grids)}"
     if grids and fed and s.supply.feeds[node].output.sign < 0:
         return Role.BIAS_FILTER, f"filter of the grid bias, return of {_names(grids)}"
@@ -181,12 +177,6 @@ def _control_between(s: Surroundings, node: str) -> Edge | None:
         if part is not None and part.kind is Kind.CONTROL:
             return edge
     return None
-
-
-def _leads_to_rectifier(s: Surroundings, node: str) -> bool:
-    """Say whether large resistors lead from a node to a signal rectifier or its load."""
-    reached = s.graph.reach(node, through=lambda x: x.letter in "RSWL", stop=lambda n: n == GROUND)
-    return any(_signal_junctions(s, there) for there, ohm in reached.items() if ohm >= RETURN_OHM)
 
 
 def leak_at(s: Surroundings, node: str) -> Edge | None:

@@ -1,10 +1,11 @@
-"""Roles that the power tells: at the line, at rectifiers, at windings, in supplies."""
+"""Roles that the power tells: across rectifiers, switches and windings, in supplies."""
 
 from __future__ import annotations
 
 from stress.circuit.circuit import Role
 from stress.circuit.drive import HASH_F, HELD_F
 from stress.circuit.graph import GROUND, Edge
+from stress.circuit.role_line import Found
 from stress.circuit.surroundings import RADIO_F, Ends, Surroundings
 
 AFTER_RECTIFIER_OHM = 1000.0
@@ -12,109 +13,6 @@ COPPER_OHM = 1000.0
 STARTER_OHM = 1000.0
 DAMPING_F = 5e-9
 DECOUPLING_OHM = 10e3  # filter resistors are smaller, those of one stage larger (common practice)
-Found = tuple[Role, str] | None
-
-
-def at_line(s: Surroundings, c: Edge, e: Ends) -> Found:
-    """Across the line, or from the line to what can be touched."""
-    touch, pair = s.touch, {e.a, e.b}
-    for plus, minus in s.drive.poles:
-        across = (e.a in plus and e.b in minus) or (e.b in plus and e.a in minus)
-        if not s.drive.alternating:
-            continue
-        if across and touch.secondary:
-            return Role.BUFFER, "buffer across the winding that feeds the rectifier"
-        if across:
-            note = "" if GROUND not in pair else ", whose return is ground"
-            return Role.LINE_ACROSS, "across the line" + note
-        for pole in (plus, minus):
-            if e.a in pole and e.b in pole:
-                return Role.SNUBBER, "across the line switch or choke"
-    if touch.secondary:
-        return _to_case(s, e)
-    safe = touch.touchable | (frozenset({GROUND}) if not touch.hot_ground else frozenset())
-    for hot, cold in ((e.a, e.b), (e.b, e.a)):
-        if hot not in touch.hot or cold not in safe:
-            continue
-        if _is_antenna(cold):
-            return Role.COUPLING, f"coupling, {cold} to the set, isolates it from the line"
-        what = "line" if _in_pole(s, hot) else s.words(hot) + ", which is line-connected,"
-        if hot == GROUND:
-            what = "B- (ground), which is line-connected,"
-        return Role.LINE_CHASSIS, f"{what} to {_chassis(cold)}"
-    return _to_case(s, e)
-
-
-def _in_pole(s: Surroundings, node: str) -> bool:
-    return any(node in pole for poles in s.drive.poles for pole in poles)
-
-
-def _is_antenna(node: str) -> bool:
-    return node.startswith(("ant", "aerial"))
-
-
-def _to_case(s: Surroundings, e: Ends) -> Found:
-    """From ground or a supply to a case that is not ground."""
-    for here, case in ((e.a, e.b), (e.b, e.a)):
-        if case in s.touch.touchable and case != GROUND and here not in s.touch.touchable:
-            if _is_antenna(case):
-                return Role.COUPLING, f"coupling, {case} to {_aerial_coil(s, here)}"
-            if s.is_joined(here, case):
-                continue
-            if here == GROUND or here in s.supply.outputs:
-                return Role.LINE_CHASSIS, f"{s.words(here)} to {case}"
-    for here, case in ((e.a, e.b), (e.b, e.a)):
-        if _is_antenna(case) and case != here:
-            return Role.COUPLING, f"coupling, {case} to {_aerial_coil(s, here)}"
-    return None
-
-
-def _aerial_coil(s: Surroundings, node: str) -> str:
-    return "the input coil" if node == GROUND else s.words(node)
-
-
-def _chassis(node: str) -> str:
-    return "chassis" if node == GROUND else node
-
-
-def doubler(s: Surroundings, c: Edge, e: Ends) -> Found:
-    """From a driven node to one that only it drives and that has rectifiers."""
-    driven, pumped = s.drive.nodes, s.drive.pumped
-    for here, there in ((c.a, c.b), (c.b, c.a)):
-        if there in pumped and here in driven:
-            return Role.FLYING, f"doubler, {s.words(here)} to the rectifiers at {there}"
-        if (c.value or 0.0) >= HELD_F and there in _midpoints(s) and here in _midpoints(s)[there]:
-            return Role.FLYING, f"doubler half, {s.words(here)} to the midpoint {there}"
-        if there in s.drive.returns and here in s.supply.outputs and (c.value or 0) >= HELD_F:
-            by = ", ".join(s.supply.outputs[here].by)
-            return (
-                Role.RESERVOIR,
-                f"reservoir, {s.words(here)} to the return {there}, fed by {by}",
-            )
-    return None
-
-
-def _midpoints(s: Surroundings) -> dict[str, set[str]]:
-    """Return the nodes where the two halves of a full-wave doubler meet, with the far ends:
-    two rectifiers at one driven node lead to both ends of two large capacitors in series."""
-    found: dict[str, set[str]] = {}
-    for x in s.drive.nodes:
-        up = {j.cathode for j in s.graph.junctions_at(x) if j.anode == x}
-        down = {j.anode for j in s.graph.junctions_at(x) if j.cathode == x}
-        for plus in up - down:
-            for minus in down - up:
-                for middle in _held_to(s, plus) & _held_to(s, minus):
-                    if middle in s.drive.returns:
-                        found.setdefault(middle, set()).update((plus, minus))
-    return found
-
-
-def _held_to(s: Surroundings, node: str) -> set[str]:
-    return {
-        x.other(node)
-        for x in s.graph.around(node)
-        if x.letter == "C" and (x.value or 0.0) >= HELD_F
-    }
 
 
 def snubber(s: Surroundings, c: Edge, e: Ends) -> Found:
@@ -133,7 +31,10 @@ def snubber(s: Surroundings, c: Edge, e: Ends) -> Found:
         if e.b in (j.anode, j.cathode):
             return Role.SNUBBER, f"across the rectifier {j.part}"
     for node, far in ((e.a, e.b), (e.b, e.a)):
-        if node in s.drive.switched and s.still(far) and node not in s.supply.outputs:
+        works = any(x.name.lower() in s.gated for x in s.graph.around(node)) or s.direct(
+            node, "output"
+        )
+        if works and node in s.drive.switched and s.still(far) and node not in s.supply.outputs:
             return Role.SNUBBER, f"snubber at the switched node {node}"
         if s.supply.outputs.get(node) and _clamps(s, node, far):
             return Role.SNUBBER, f"clamp, {node} to {s.words(far)}"
@@ -194,18 +95,6 @@ def _winding_between(s: Surroundings, a: str, b: str) -> Edge | None:
     return None
 
 
-def buffer(s: Surroundings, c: Edge, e: Ends) -> Found:
-    """From a driven end of a winding to ground or to its other end."""
-    hot = [n for n in (e.a, e.b) if n in s.drive.line and n not in s.drive.returns]
-    if len(hot) == 2:
-        return Role.BUFFER, f"buffer, {s.words(e.a)} to {s.words(e.b)}"
-    if hot:
-        far = e.b if hot[0] == e.a else e.a
-        if s.still(far) or far in s.drive.returns:
-            return Role.BUFFER, f"buffer, {s.words(hot[0])} to {s.words(far)}"
-    return None
-
-
 def supply(s: Surroundings, c: Edge, e: Ends) -> Found:
     """From a supply to its return: reservoir, smoothing, output filter, bias, decoupling."""
     pair = _supply_and_return(s, e)
@@ -220,7 +109,9 @@ def supply(s: Surroundings, c: Edge, e: Ends) -> Found:
     where = f"{_named(node, feed.output.sign)} to {s.words(back)}"
     if feed.output.sign < 0 and loads and loads <= {"input", "other"}:
         return Role.BIAS_FILTER, f"filter of the bias supply, {where}"
-    small = (c.value or 0.0) <= HASH_F
+    # A small capacitor only quiets what a large one or a choke holds; alone it is the reservoir
+    # of a supply of little current, such as that of a picture tube.
+    small = (c.value or 0.0) <= HASH_F and (s.is_held(node) or bool(s.graph.windings(node)))
     if feed.output.origin == "switched" and not small:
         starter = _starter(s, node)
         if starter is not None:
@@ -241,6 +132,22 @@ def supply(s: Surroundings, c: Edge, e: Ends) -> Found:
             return Role.BIAS_FILTER, f"filter of the back bias, {where}"
         return Role.RESERVOIR, f"reservoir, {where}, fed by {by}"
     return _distribution(s, c, node, where, loads)
+
+
+def leads_to_detector(s: Surroundings, node: str, *, least_ohm: float) -> bool:
+    """Say whether resistors of some size lead from a node to a signal rectifier or its load."""
+    reached = s.graph.reach(node, through=lambda x: x.letter in "RSWL", stop=s.still)
+    return any(signal_junctions(s, there) for there, ohm in reached.items() if ohm >= least_ohm)
+
+
+def signal_junctions(s: Surroundings, node: str) -> list[str]:
+    """Return the rectifiers at a node that no power drives."""
+    driven = s.drive.nodes
+    return [
+        j.part
+        for j in s.graph.junctions_at(node)
+        if j.anode not in driven and j.cathode not in driven
+    ]
 
 
 def _starter(s: Surroundings, node: str) -> str | None:
@@ -264,7 +171,12 @@ def _distribution(s: Surroundings, c: Edge, node: str, where: str, loads: frozen
     if loads and loads <= {"screen", "other"} and screens:
         return Role.SCREEN_BYPASS, f"screen bypass, {screens[0].text}"
     near = loads or {n.pin.kind for n in s.near(node, ohm=1e6)}
-    if near and near <= {"input", "other"}:
+    bases = [w for w in s.graph.windings(node) if s.direct(w.other(node), "input")]
+    inputs_only = bool(near) and near <= {"input", "other"}
+    far = feed.since_ohm >= DECOUPLING_OHM
+    if (inputs_only or bases) and far and leads_to_detector(s, node, least_ohm=1e3):
+        return Role.AVC, f"AVC filter, {where}"
+    if inputs_only:
         return Role.DECOUPLING, f"decoupling of the bias, {where}"
     if feed.choke:
         return Role.SMOOTHING, f"smoothing behind the choke, {where}"

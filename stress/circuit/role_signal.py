@@ -5,13 +5,19 @@ from __future__ import annotations
 from stress.circuit.circuit import Kind, Role
 from stress.circuit.graph import GROUND, Edge, Pin
 from stress.circuit.role_bypass import leak_at
-from stress.circuit.role_power import Found
+from stress.circuit.role_line import Found
 from stress.circuit.surroundings import RADIO_F, SIGNAL_OHM, Ends, Surroundings
 
 
 def coupling(s: Surroundings, c: Edge, e: Ends) -> Found:
     """Between two nodes of which neither stands still, or from one to a load."""
     a, b = _best(s, e.a), _best(s, e.b)
+    if a is None and b is not None:
+        a = _beyond(s, c, e.a, e.b)
+    elif b is None and a is not None:
+        b = _beyond(s, c, e.b, e.a)
+    elif a is None and b is None and not (_load(s, e.a) or _load(s, e.b)):
+        a, b = _beyond(s, c, e.a, e.b), _beyond(s, c, e.b, e.a)
     for one, other in ((a, b), (b, a)):
         if one is None or other is None:
             continue
@@ -22,6 +28,10 @@ def coupling(s: Surroundings, c: Edge, e: Ends) -> Found:
     biased = _across_bias(s, e, a, b)
     if biased is not None:
         return biased
+    if a is not None and b is not None and a.part == b.part:
+        for x in s.graph.between(e.a, e.b):
+            if x.letter == "R":
+                return Role.TONE, f"treble bypass across {x.name}, {a.text}"
     leak = _grid_leak(s, c, e)
     if leak is not None:
         return leak
@@ -59,6 +69,27 @@ def _best(s: Surroundings, node: str) -> Pin | None:
         return outputs[0].pin
     near = s.near(node, *order, ohm=SIGNAL_OHM)
     return near[0].pin if near else None
+
+
+def _beyond(s: Surroundings, c: Edge, node: str, other: str) -> Pin | None:
+    """Return the pin that a node without any reaches through the capacitors and resistors of a
+    network, such as that of a phase-shift oscillator or a tone control."""
+    if _load(s, node) or s.still(node):
+        return None
+    reached = s.graph.reach(
+        node,
+        through=lambda x: x.letter in "RC" and x.name != c.name,
+        stop=lambda n: s.still(n) or n == other or bool(s.graph.pins(n)),
+        limit_ohm=SIGNAL_OHM,
+    )
+    order = ("output", "input", "common")
+    pins = [
+        pin
+        for there in reached
+        if there != other and not s.still(there)
+        for pin in s.direct(there, *order)
+    ]
+    return min(pins, key=lambda pin: order.index(pin.kind), default=None)
 
 
 def _speaker(s: Surroundings, node: str) -> bool:

@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from stress.circuit import role_bypass, role_power, role_signal
+from stress.circuit import role_bypass, role_line, role_power, role_signal
 from stress.circuit.circuit import Role
 from stress.circuit.graph import Edge
-from stress.circuit.role_power import Found
+from stress.circuit.role_line import Found
 from stress.circuit.surroundings import Ends, Surroundings
 
 Rule = Callable[[Surroundings, Edge, Ends], Found]
@@ -21,11 +21,11 @@ def _same_node(s: Surroundings, c: Edge, e: Ends) -> Found:
 
 RULES: tuple[Rule, ...] = (
     _same_node,
-    role_power.at_line,
-    role_power.doubler,
+    role_line.at_line,
+    role_line.doubler,
     role_power.snubber,
     role_power.across_winding,
-    role_power.buffer,
+    role_line.buffer,
     role_power.supply,
     role_bypass.bypass,
     role_signal.coupling,
