@@ -248,7 +248,10 @@ def window(position: Position, *, circuit: Circuit) -> tuple[float, float, str]:
 def _leakage_notes(position: Position, limit: LeakageLimit) -> list[str]:
     if not position.style.electrolytic:
         return []
+    rule = position.style.leakages[0]
     notes = [
+        f"read after {rule.after_s / 60.0:g} min under voltage, as the published limit does "
+        f"({rule.name}, in µF, V and µA; {rule.source}); earlier it reads more",
         "an electrolytic that has lain idle leaks too much at first: form it with the current "
         f"held to {figure(_forming_A(limit.style_A), 'A')} at most, raising the voltage to the "
         "test voltage as the current falls, and read when it has come to a plateau; what still "
