@@ -17,7 +17,7 @@ from stress.netlist.source import Source
 from stress.text.span import SourceError, Span
 
 _NAMES = re.compile(r"=\s*[^\W\d]|[{']|ako", re.IGNORECASE)
-MOST_ELEMENTS = 100_000
+MOST_ELEMENTS = 50_000
 NO_TAGS = Tags()
 
 

@@ -32,8 +32,8 @@ class Builder(Tokens):
                 "this has no value (division by zero, or out of range)", at, self.start
             ) from None
         if isinstance(part, Number):
-            if math.isnan(part.value):
-                raise FormulaError("this has no value", at, self.start)
+            if not math.isfinite(part.value):
+                raise FormulaError("this has no finite value", at, self.start)
             return part
         count, deep = 1, 0
         for inner in parts:
@@ -46,7 +46,7 @@ class Builder(Tokens):
                 at,
                 self.start,
             )
-        self.sizes.known[id(part)] = (count, deep + 1)
+        self.sizes.known[id(part)] = (part, count, deep + 1)
         return part
 
     def deeper(self) -> None:

@@ -16,7 +16,7 @@ _FIELD = re.compile(
     r"""(?P<blank>[\s,]+)
     |(?P<mark>[=()])
     |(?P<open>[{'"])
-    |(?P<word>(?:~\{[^}]*\}|[^\s=(),{}'"]*(?:net|unconnected)-\([^()\s]*\)|[^\s=(),{}'"])+)
+    |(?P<word>(?:~\{[^{}\s]{1,60}\}|[^\s=(),{}'"])+)
     |(?P<odd>.)""",
     re.VERBOSE | re.IGNORECASE | re.DOTALL,
 )
@@ -209,11 +209,25 @@ def _fields(card: Card) -> list[Field]:
                 Field("string" if quoted else "expression", text[at + 1 : end - 1], at, end)
             )
         elif kind == "word" or kind == "mark":
-            found.append(Field(kind, match[0], at, end))
+            if text[end : end + 1] == "(" and match[0].lower().endswith(("net-", "unconnected-")):
+                end = _editor_node(text, end)
+            found.append(Field(kind, text[at:end], at, end))
         elif kind == "odd":
             raise card.error(f'"{match[0]}" does not close anything', (at, end))
         at = end
     return found
+
+
+def _editor_node(text: str, opening: int) -> int:
+    """Return where a node such as "Net-(C1-Pad1)" ends; its parentheses belong to the name."""
+    closing = text.find(")", opening, opening + 80)
+    inner = text[opening + 1 : closing]
+    if closing < 0 or any(mark in inner for mark in " \t("):
+        return opening
+    end = closing + 1
+    while end < len(text) and text[end] not in " \t=(),{}'\"":
+        end += 1
+    return end
 
 
 def _closing(card: Card, at: int) -> int:

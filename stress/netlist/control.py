@@ -211,7 +211,10 @@ def initial(card: Card, scope: Scope) -> dict[str, float]:
         SourceError: It has another form.
     """
     found: dict[str, float] = {}
-    pattern = re.compile(r"v\s*\(\s*([^()]*(?:\([^()]*\))?[^()]*)\)\s*=\s*", re.IGNORECASE)
+    pattern = re.compile(
+        r"v\s{0,9}\(\s{0,9}([^()]{1,80}(?:\([^()]{0,80}\))?[^()]{0,80})\)\s{0,9}=\s{0,9}",
+        re.IGNORECASE,
+    )
     for match in pattern.finditer(card.text):
         stretch = re.compile(r"\{[^}]*\}|'[^']*'|\S+").match(card.text, match.end())
         if stretch is None:

@@ -5,12 +5,12 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass, field
 
-from stress.netlist.assembly import Assembly
+from stress.netlist.assembly import MOST_ELEMENTS, Assembly
 from stress.netlist.card import Card
 from stress.netlist.control import initial
 from stress.netlist.flat import Instance
 from stress.netlist.grammar import read_element
-from stress.netlist.outline import Outline
+from stress.netlist.outline import Outline, too_deep
 from stress.netlist.part import Part
 from stress.netlist.problem import Problems
 from stress.netlist.scan import Definition, Entry, Lines, scan
@@ -38,6 +38,7 @@ class Expansion:
     built_in: Callable[[str], str | None]
     _headers: dict[int, Header] = field(default_factory=dict)
     _built: dict[str, tuple[Definition, Block] | None] = field(default_factory=dict)
+    _weights: dict[int, int] = field(default_factory=dict)
     _instances: int = 0
     _depth: int = 0
 
@@ -56,6 +57,8 @@ class Expansion:
                 raise
             except SourceError as error:
                 self.problems.error(error)
+            except RecursionError:
+                self.problems.error(too_deep(card, scope))
         letters.update(element.letter for element in self.into.elements[begin:])
         return frozenset(letters)
 
@@ -82,6 +85,7 @@ class Expansion:
                 "",
                 scope.within,
             )
+        self._bound(definition, outer, span)
         header = self._header(definition, scope)
         nodes = [scope.node(word.text) for word in call.words[:at]]
         inner = self._scope(card, call, at, header, definition, outer, scope, nodes)
@@ -123,6 +127,45 @@ class Expansion:
             span=held.span,
         )
         return body
+
+    def _bound(self, definition: Definition, outer: Block, span: Span) -> None:
+        """Stop before subcircuits that multiply are expanded, by counting their cards."""
+        if len(self.into.elements) + self._weight(definition, outer, 0) > MOST_ELEMENTS:
+            self.problems.stop(
+                f"more than {MOST_ELEMENTS:,} elements after expansion",
+                span,
+                "the subcircuits multiply; a review is for one piece of equipment",
+            )
+
+    def _weight(self, definition: Definition, outer: Block, depth: int) -> int:
+        """Return about how many elements a definition expands to; each is counted once."""
+        key = id(definition)
+        if key not in self._weights:
+            self._weights[key] = 0  # one that holds itself is found by its depth
+            inner: dict[str, Definition] = {}
+            weight = 0
+            calls: list[str] = []
+            for entry in scan(definition.body).entries:
+                if entry.definition is not None:
+                    words = entry.source.lines[entry.index].split()
+                    inner[words[1].lower() if len(words) > 1 else ""] = entry.definition
+                elif not entry.word:
+                    line = entry.source.lines[entry.index].lstrip()
+                    if line[:1] in ("x", "X"):
+                        calls.append(line.partition("=")[0])
+                    else:
+                        weight += 1
+            for call in calls:
+                words = [word.lower() for word in call.split()[1:]]
+                holders = (inner, *(block.subcircuits for block in outer.outward()))
+                named = next(
+                    (held[word] for word in reversed(words) for held in holders if word in held),
+                    None,
+                )
+                if named is not None and depth < DEEPEST:
+                    weight += self._weight(named, outer, depth + 1)
+            self._weights[key] = min(weight, 100 * MOST_ELEMENTS)
+        return self._weights[key]
 
     def _scope(
         self,

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from stress.text.number import NumberError, read_number
 
+LONGEST = 120  # characters of a value field
 _PLACEHOLDER = re.compile(
     r"(?:c|cp|cap|c_small|cp_small|c_polarized|c_polarised|c_polarized_small|cp1|cp1_small|"
     r"c_feedthrough|c_variable|c_trim|c_us|cpol|elko|electrolytic|capacitor|capacitor_\w*|dnp|"
@@ -58,7 +59,7 @@ class Marking:
 
 def is_placeholder(text: str) -> bool:
     """Whether a value field holds a symbol's or footprint's name, or nothing, instead of a value."""
-    return _PLACEHOLDER.fullmatch(text.strip()) is not None
+    return len(text) <= LONGEST and _PLACEHOLDER.fullmatch(text.strip()) is not None
 
 
 def style_of(text: str) -> str | None:
@@ -72,6 +73,8 @@ def style_of(text: str) -> str | None:
 
 def read_marking(text: str) -> Marking | None:
     """Read a value field such as `100uF/450V`, `C_10uF_450V`, `470n_THT`; None: not understood."""
+    if len(text) > LONGEST:
+        return None
     rest = _LEAD.sub("", text.strip())
     first = re.split(r"[\s_/;|@]+", rest)[0]
     value = _value(first)

@@ -94,10 +94,11 @@ class Sizes:
     """How large each part of an expression is, so that no expression grows without bound."""
 
     def __init__(self) -> None:
-        self.known: dict[int, tuple[int, int]] = {}
+        self.known: dict[int, tuple[Expression, int, int]] = {}
         self.depth = 0
         self.spread = False
 
     def of(self, part: Expression) -> tuple[int, int]:
         """Return the number of parts below and the depth."""
-        return self.known.get(id(part), (1, 1))
+        held = self.known.get(id(part))
+        return (1, 1) if held is None else (held[1], held[2])

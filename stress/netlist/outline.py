@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from stress.netlist.card import Card
 from stress.netlist.control import PARAMETERS, assigned, function, macros
 from stress.netlist.problem import Obstacle, Problems
-from stress.netlist.scan import Entry, Lines, scan, section, sections
+from stress.netlist.scan import Entry, Lines, scan, sections
 from stress.netlist.scope import Block, Scope, did_you_mean, place
 from stress.netlist.source import Files, Refused, Source
 from stress.text.span import SourceError, SourceErrors
@@ -39,6 +39,7 @@ class Outline:
     problems: Problems
     dollar: bool
     control: Callable[[Entry, Scope], None]
+    _sections: dict[int, tuple[list[str], dict[str, tuple[int, int]]]] = field(default_factory=dict)
 
     def fill(self, block: Block, lines: Lines, scope: Scope) -> None:
         """Sort what a stretch holds into a block; parameters go into the scope at once."""
@@ -68,6 +69,8 @@ class Outline:
                 raise
             except SourceError as error:
                 self.problems.error(error)
+            except RecursionError:
+                self.problems.error(too_deep(entry.card(dollar=self.dollar), scope))
         for choice in choices:
             card = choice.entry.card(dollar=self.dollar)
             self.problems.error(card.error(".if has no .endif", None, "", scope.within))
@@ -175,16 +178,28 @@ class Outline:
             raise SourceError(refusal.message, span, refusal.hint) from None
         lines = Lines(source, 0, len(source.lines))
         if part:
-            stretch = section(source, part)
+            held = self._sections_of(source)
+            stretch = held.get(part.lower())
             if stretch is None:
-                hint = did_you_mean(part, list(sections(source))) or "the file has no such section"
+                hint = did_you_mean(part, held) or "the file has no such section"
                 self.problems.obstacle(f'the section "{part}" of "{name}" is missing', span, hint)
                 return
-            lines = stretch
+            lines = Lines(source, *stretch)
         self.fill(block, _without_prose(lines), scope)
 
     def _is_section(self, entry: Entry, name: str) -> bool:
-        return section(entry.source, name) is not None
+        return name.lower() in self._sections_of(entry.source)
+
+    def _sections_of(self, source: Source) -> dict[str, tuple[int, int]]:
+        key = id(source.lines)
+        if key not in self._sections:
+            self._sections[key] = (source.lines, sections(source.lines))
+        return self._sections[key][1]
+
+
+def too_deep(card: Card, scope: Scope) -> SourceError:
+    """Return the error for a card whose names and parentheses nest beyond all bounds."""
+    return card.error("nested too deep to be read", None, "", scope.within)
 
 
 def _named(card: Card) -> tuple[str, str, tuple[int, int]]:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Sequence
 from pathlib import Path
 
-from stress.netlist.assembly import Assembly
+from stress.netlist.assembly import MOST_ELEMENTS, Assembly
 from stress.netlist.control import initial, options, transient, unknown
 from stress.netlist.dialect import DIALECTS, recognise
 from stress.netlist.expand import Expansion
@@ -93,6 +93,9 @@ def _read(
     scope = FlatScope(top, world=world) if flattened else Scope(top, world=world)
     outline.fill(top, Lines(source, 1, len(source.lines)), scope)
     expansion = Expansion(outline, into, problems, world, built_in)
+    if len(top.cards) > MOST_ELEMENTS:
+        card = top.cards[MOST_ELEMENTS].card(dollar=into.dollar)
+        problems.stop(f"more than {MOST_ELEMENTS:,} elements", card.whole())
     _later(top, scope, into, settings, problems)
     expansion.block(scope)
     elements = resolve(into, problems)

@@ -6,7 +6,6 @@ subcircuit is used, a model is read when an element asks for it.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import dataclass, field
 
 from stress.netlist.card import Card, gather
@@ -129,25 +128,18 @@ def _end(text: list[str], index: int, after: int) -> int | None:
     return None
 
 
-def section(source: Source, name: str) -> Lines | None:
-    """Return the stretch of `.lib NAME` up to its `.endl`, or None."""
-    begin = None
-    for index, line in enumerate(source.lines):
+def sections(lines: list[str]) -> dict[str, tuple[int, int]]:
+    """Return the stretch of each `.lib NAME` … `.endl` of a library, by lower-case name."""
+    found: dict[str, tuple[int, int]] = {}
+    name, begin = "", 0
+    for index, line in enumerate(lines):
         low = line.lstrip()[:5].lower()
-        if begin is None:
-            if low.startswith(".lib"):
-                words = line.split()
-                if len(words) == 2 and words[1].strip("'\"").lower() == name.lower():
-                    begin = index + 1
-        elif low == ".endl":
-            return Lines(source, begin, index)
-    return None
-
-
-def sections(source: Source) -> Iterator[str]:
-    """Yield the names of the sections that a library file has."""
-    for line in source.lines:
-        if line.lstrip()[:4].lower() == ".lib":
+        if low == ".endl":
+            if name:
+                found.setdefault(name, (begin, index))
+            name = ""
+        elif low.startswith(".lib") and not name:
             words = line.split()
             if len(words) == 2:
-                yield words[1]
+                name, begin = words[1].strip("'\"").lower(), index + 1
+    return found

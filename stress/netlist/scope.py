@@ -25,7 +25,8 @@ from stress.text.span import SourceError, Span
 
 _SENSES = re.compile(r"(?<![\w.])[vi]\s*\(", re.IGNORECASE)
 GROUND = frozenset({"0", "gnd", "gnd!"})
-DEEPEST_PARAMETER = 60
+DEEPEST_PARAMETER = 40
+MOST_COMPARED = 1000  # names looked at for "did you mean"
 BOLTZMANN_V = 8.617333262e-5  # volt per kelvin: Boltzmann constant over elementary charge
 
 
@@ -247,7 +248,9 @@ class World:
 
 def did_you_mean(name: str, known: Iterable[str]) -> str:
     """Return the hint "did you mean …?", or "" where nothing is near."""
-    near = get_close_matches(name.lower(), [entry.lower() for entry in known], 3, 0.7)
+    low = name.lower()
+    alike = [entry for entry in (k.lower() for k in known) if abs(len(entry) - len(low)) < 4]
+    near = get_close_matches(low, sorted(alike)[:MOST_COMPARED], 3, 0.7) if len(low) < 60 else []
     return f"did you mean {' or '.join(dict.fromkeys(near))}?" if near else ""
 
 

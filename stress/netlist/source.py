@@ -111,6 +111,7 @@ class Files:
     _read: dict[Path, list[str]] = field(default_factory=dict)
     _bytes: int = 0
     _asked: int = 0
+    _given: int = 0
 
     def main(self, path: Path, file: str) -> Source:
         """Read the netlist itself.
@@ -145,7 +146,11 @@ class Files:
             raise Refused(f'"{shown}" includes itself', "take one of the includes out")
         within = (*asked_by.within, f"{shown}, included at {call}")
         file = shown.removesuffix(f" {part}") if part else shown
-        return Source(file, self._lines(path, file), path, within)
+        lines = self._lines(path, file)
+        self._given += len(lines)
+        if self._given > 2 * MOST_LINES:
+            raise Refused(f"more than {2 * MOST_LINES:,} lines are included")
+        return Source(file, lines, path, within)
 
     def _shown(self, path: Path) -> str:
         if self.folder is not None:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from dataclasses import dataclass
+from math import inf, isfinite
 
 _PLAIN = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?")
 _NUMBER = re.compile(r"([+-]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][+-]?\d+)?)([^\W\d_]*|%)(.*)", re.DOTALL)
@@ -120,7 +121,10 @@ class Reading:
 
 def plain_number(text: str) -> float | None:
     """Return the value of digits without suffix, or None where it is something else."""
-    return float(text) if _PLAIN.fullmatch(text) else None
+    if not _PLAIN.fullmatch(text):
+        return None
+    value = float(text)
+    return value if isfinite(value) else None
 
 
 def read_number(text: str, *, quantity: str = "") -> Reading:
@@ -133,6 +137,13 @@ def read_number(text: str, *, quantity: str = "") -> Reading:
     Raises:
         NumberError: Not a number, or an unknown suffix.
     """
+    read = _read(text, quantity)
+    if not isfinite(read.value):
+        raise NumberError(f'"{text}" is too large', 0, len(text), "")
+    return read
+
+
+def _read(text: str, quantity: str) -> Reading:
     found = _NUMBER.fullmatch(text)
     if found is None:
         return _unusual(text, quantity)
@@ -155,7 +166,10 @@ def _scaled(digits: str, scale: str) -> float:
     digits = digits.lower().replace("d", "e")
     if scale in _EXPONENTS:
         mantissa, _, exponent = digits.partition("e")
-        return float(f"{mantissa}e{int(exponent or 0) + _EXPONENTS[scale]}")
+        shift = int(exponent) if exponent and len(exponent) < 8 else 0
+        if exponent and not shift and exponent.strip("+-0"):
+            return inf if exponent[0] != "-" else 0.0
+        return float(f"{mantissa}e{shift + _EXPONENTS[scale]}")
     return float(digits) * SCALES.get(scale, 1.0)
 
 
