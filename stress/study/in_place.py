@@ -36,6 +36,9 @@ OPEN_HZ, SMALL_OPEN_HZ = 100e3, 1e6
 FREQUENCIES_HZ = (ELECTROLYTIC_HZ, OTHER_HZ, OPEN_HZ, SMALL_OPEN_HZ)
 QUIET_V = 0.1  # turns on no junction, germanium included
 LEAD_OHM = 1.0  # of the test leads; keeps a source off an ideal loop
+# Controlled and behavioural sources stand for active parts, which do nothing without power.
+MODELLED = frozenset("BEFGH")
+REST_OHM = 1e10  # leads the charge of a gate away
 _TEST = "Vtest#bench"
 _DRIVE = "Itest#bench"
 
@@ -97,7 +100,7 @@ def plan(position: Position, *, circuit: Circuit, twin: Twin, test_V: float) -> 
 
 
 def unplugged(twin: Twin, *, circuit: Circuit) -> Twin:
-    """Return the twin as it stands on the bench: no supplies, no tubes, direct current only."""
+    """Return the twin as it stands on the bench: no supplies, nothing active, all at rest."""
     tubes = {
         name.lower()
         for part in circuit.parts
@@ -108,13 +111,24 @@ def unplugged(twin: Twin, *, circuit: Circuit) -> Twin:
     kept = []
     for element in twin.elements:
         name = element.name.lower()
-        if name in tubes:
+        if name in tubes or element.letter in MODELLED:
             continue
         if element.letter in "VI" and (element.wave is not None or element.value):
             if name in signals and element.letter == "V":
                 kept.append(replace(element, wave=None, value=0.0))  # its generator stays wired
             continue
         kept.append(element)
+        if element.letter == "M":  # what drove its gate may be gone
+            gate, source = element.nodes[1:3]
+            kept.append(
+                Element(
+                    name=f"{element.name}#rest",
+                    letter="R",
+                    nodes=(gate, source),
+                    value=REST_OHM,
+                    span=element.span,
+                )
+            )
     return replace(twin, elements=tuple(kept), period_s=None, initial_V={}, currents=())
 
 

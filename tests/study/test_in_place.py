@@ -193,7 +193,8 @@ def test_unplugged_means_no_supply_no_tube_and_no_direct_current(circuit_of):
         name="XU1", kind=Kind.TUBE, elements=("RU1",), span=circuit.netlist.elements[0].span
     )
     circuit = replace(circuit, parts=(tube,), signals=("V3",))
-    twin = Twin(elements=circuit.netlist.elements, models={}, period_s=1 / 60)
+    controlled = replace(circuit.netlist.elements[0], name="Gerr", letter="G", wave=None)
+    twin = Twin(elements=(*circuit.netlist.elements, controlled), models={}, period_s=1 / 60)
     bare = in_place.unplugged(twin, circuit=circuit)
     assert {e.name: e.value for e in bare.elements} == {"V3": 0.0, "Vm": 0.0}
     assert bare.period_s is None
