@@ -87,7 +87,13 @@ def survey(
             *odd,
             *_unrecognised(a),
         ),
-        assumed=(*line.assumed, *a.sources.assumed, *a.touch.assumed, *a.envelopes),
+        assumed=(
+            *line.assumed,
+            *_heaters(a, sheet),
+            *a.sources.assumed,
+            *a.touch.assumed,
+            *a.envelopes,
+        ),
         decisions=(
             *(f"{d.instance.name} ({d.instance.subcircuit}): {d.reason}" for d in a.split.devices),
             *(f"{i.name} ({i.subcircuit}): {reason}" for i, reason in a.split.blocks),
@@ -124,6 +130,17 @@ def _in_signal(part: Part, graph: Graph, driven: drive.Drive, sheet: Sheet) -> P
     if any(graph.at(node) in driven.nodes for node in part.pins.values()):
         return part
     return replace(part, kind=Kind.TUBE)
+
+
+def _heaters(a: Anatomy, sheet: Sheet) -> tuple[str, ...]:
+    """Return what is assumed of the heaters of a set without a power transformer."""
+    tubes = any(part.kind is Kind.TUBE for part in a.parts)
+    if sheet.equipment.heaters is not None or not a.touch.hot_ground or not tubes:
+        return ()
+    return (
+        "heaters in parallel; sets without a transformer mostly have them in series, then state "
+        '[equipment] heaters = "series"',
+    )
 
 
 def _ordered(parts: Sequence[Part]) -> tuple[Part, ...]:
@@ -168,7 +185,7 @@ def anatomy(netlist: Netlist, sheet: Sheet, *, types: Sequence[TypeEntry] = ()) 
     contacts = {n.lower() for c in sheet.conditions for n in (*c.open, *c.short)}
     graph = Graph(netlist, parts=(*devices, *solid), contacts=contacts)
     fed = sources.find(graph, entry=sheet.line)
-    driven = drive.find(graph, line=fed.line.sources, gated=fed.gated)
+    driven = drive.find(graph, line=fed.line.sources, gated=fed.gated, powering=fed.powering)
     supplied = supply.find(graph, drive=driven)
     touched = touch.find(
         graph,

@@ -161,7 +161,7 @@ class Circuit:
         parts: Tubes first, then resistors, windings, diodes and the rest, in netlist order.
         line: The mains.
         signals: Sources that are muted except in the condition `driven`.
-        gates: Sources that gate a switch; never muted.
+        gates: Sources that gate a switch or that power is drawn from; never muted.
         period_s: The common period of the line and the gates; None: DC sources only.
         heaters: "parallel", "series" or "battery".
         ambient_degC: Around the chassis.

@@ -52,13 +52,17 @@ class Drive:
         return "line" if node in self.line or node in self.pumped else ""
 
 
-def find(graph: Graph, *, line: Iterable[str], gated: Collection[str]) -> Drive:
+def find(
+    graph: Graph, *, line: Iterable[str], gated: Collection[str], powering: Iterable[str] = ()
+) -> Drive:
     """Return the driven nodes.
 
     Args:
         graph: The circuit.
         line: Names of the line sources.
         gated: Names of switches and transistors that a gate source works, lower case.
+        powering: Names of other sources that power is drawn from, such as the square wave that
+            stands for a vibrator.
     """
     sources = [graph.elements[name.lower()] for name in line if name.lower() in graph.elements]
     alternating = any(source.wave is not None for source in sources)
@@ -66,7 +70,8 @@ def find(graph: Graph, *, line: Iterable[str], gated: Collection[str]) -> Drive:
     live = {node for pair in poles for pole in pair for node in pole} - {GROUND}
     line_cores = _cores_at(graph, live) if alternating else frozenset()
     line_nodes = _extended(graph, live | _ends(graph, line_cores)) if alternating else set()
-    switched, switched_cores = _switched(graph, gated, line_cores)
+    seeds = {graph.at(n) for name in powering for n in graph.elements[name.lower()].nodes}
+    switched, switched_cores = _switched(graph, gated, line_cores, seeds=seeds - {GROUND})
     fed = {j.anode for j in graph.junctions} | {j.cathode for j in graph.junctions}
     returns = _returns(graph, line_nodes, line_cores, poles, fed)
     pumped = _pumped(graph, (line_nodes | switched) - returns)
@@ -197,10 +202,10 @@ def _extended(graph: Graph, nodes: set[str]) -> set[str]:
 
 
 def _switched(
-    graph: Graph, gated: Collection[str], line_cores: Collection[str]
+    graph: Graph, gated: Collection[str], line_cores: Collection[str], *, seeds: set[str]
 ) -> tuple[set[str], frozenset[str]]:
     """Return the nodes that switches work, and the cores on them."""
-    seeds = {
+    seeds = seeds | {
         node
         for edge in graph.edges
         if edge.name.lower() in gated

@@ -9,7 +9,7 @@ from math import lcm, sqrt
 
 from stress.circuit.behaviour import nodes_in
 from stress.circuit.circuit import Kind, Line
-from stress.circuit.graph import GROUND, Graph
+from stress.circuit.graph import GROUND, Edge, Graph
 from stress.netlist.flat import Element, Netlist
 from stress.parts.sheet import LineEntry
 from stress.text.figure import figure
@@ -19,6 +19,8 @@ LINE_LEAST_V = 5.0  # peak; less is a signal
 STRONG_V = 40.0  # peak; no signal is so large, so that a capacitor may lie between: a doubler
 HIGH_LINE = 1.10
 LOW_LINE = 0.90
+WINDING_H = 10e-3  # an inductance from here on is wound on iron
+CHARGED_F = 0.47e-6
 SERIES_OHM = 1000.0
 MOST_CYCLES = 100_000  # of the fastest source in the common period
 
@@ -30,8 +32,9 @@ class Sources:
     Attributes:
         line: The mains.
         signals: Muted except in the condition `driven`.
-        gates: Periodic sources that work a switch.
+        gates: Periodic sources that work a switch, or that power is drawn from.
         gated: The switches and transistors they work, lower case.
+        powering: The ones that power is drawn from.
         period_s: Common period of all periodic sources that are no signals.
         assumed: What nobody stated, in words.
     """
@@ -40,6 +43,7 @@ class Sources:
     signals: tuple[str, ...]
     gates: tuple[str, ...]
     gated: frozenset[str]
+    powering: tuple[str, ...]
     period_s: float | None
     assumed: tuple[str, ...] = ()
 
@@ -55,32 +59,35 @@ def find(graph: Graph, *, entry: LineEntry) -> Sources:
     else:
         feeding = [e for e in sources if _is_line(graph, e)]
     line = _line(feeding, entry)
+    assumed: tuple[str, ...] = ()
     names = {name.lower() for name in line.sources}
+    others = [e for e in sources if period_of(e) is not None and e.name.lower() not in names]
+    drawn = [e for e in others if _powers(graph, e) and e.name.lower() not in gates]
+    powering = {e.name.lower() for e in drawn} | gates
     signals = tuple(
-        e.name
-        for e in sources
-        if period_of(e) is not None
-        and e.name.lower() not in names | set(gates)
-        and not _heats(graph, e)
+        e.name for e in others if e.name.lower() not in powering and not _heats(graph, e)
     )
+    if signals and not line.sources and not powering and not any(map(_is_steady, sources)):
+        assumed += (f"no other source feeds the circuit, so {', '.join(signals)} is never mute",)
+        signals = ()
     quiet = {name.lower() for name in signals}
     working = [e for e in sources if e.name.lower() not in quiet]
-    assumed: tuple[str, ...] = ()
     period = entry.period_s
     if period is None:
         periods = [p for e in working if (p := period_of(e)) is not None]
         period = common_period(periods)
         if period is None and periods:
             period = max(periods)
-            assumed = (
+            assumed += (
                 f"the sources have no common period in sight; {figure(period, 's')} is taken "
                 "(state [line] period)",
             )
     return Sources(
         line=line,
         signals=signals,
-        gates=tuple(e.name for e in sources if e.name.lower() in gates),
+        gates=tuple(e.name for e in sources if e.name.lower() in powering),
         gated=gated,
+        powering=tuple(e.name for e in drawn),
         period_s=period,
         assumed=assumed,
     )
@@ -168,32 +175,67 @@ def _line(feeding: Sequence[Element], entry: LineEntry) -> Line:
 
 
 def _is_line(graph: Graph, element: Element) -> bool:
-    """Say whether a source is a 40 to 70 Hz sine that feeds a winding or a rectifier."""
+    """Say whether a source is a 40 to 70 Hz sine that feeds a winding or a rectifier; one that
+    is too large for a signal may feed a capacitor or lie behind one."""
     wave = element.wave
     if element.letter != "V" or wave is None or wave.kind != "sin" or len(wave.values) < 3:
         return False
     if not LINE_HZ[0] <= wave.values[2] <= LINE_HZ[1] or abs(wave.values[1]) < LINE_LEAST_V:
         return False
-    fed = {n for j in graph.junctions for n in (j.anode, j.cathode)}
-    passed = "RSWC" if abs(wave.values[1]) >= STRONG_V else "RSW"
-    for node in {graph.at(n) for n in element.nodes} - {GROUND}:
-        reached = graph.reach(
-            node,
-            through=lambda e: (
-                e.letter in passed or (e.letter == "L" and len(graph.windings_with(e.name)) == 1)
-            ),
-            stop=lambda n: n == GROUND,
-            limit_ohm=SERIES_OHM,
-        )
-        for there in reached:
-            if there == GROUND:
-                continue
-            if there in fed or any(
-                e.letter == "L" and len(graph.windings_with(e.name)) > 1
-                for e in graph.around(there)
-            ):
-                return True
+    strong = abs(wave.values[1]) >= STRONG_V
+    for there in _fed(graph, element, passed="RSWC" if strong else "RSW"):
+        if graph.junctions_at(there):
+            return True
+        if any(_is_winding(graph, w) for w in graph.windings(there)):
+            return True
+        if strong and any(e.letter == "C" for e in graph.around(there)):
+            return True
     return False
+
+
+def _fed(graph: Graph, element: Element, *, passed: str) -> set[str]:
+    """Return the nodes near a source: behind small resistors, switches and single coils."""
+    starts = {graph.at(n) for n in element.nodes} - {GROUND}
+    reached = graph.reach(
+        starts,
+        through=lambda e: (
+            e.letter in passed or (e.letter == "L" and len(graph.windings_with(e.name)) == 1)
+        ),
+        stop=lambda n: n == GROUND,
+        limit_ohm=SERIES_OHM,
+    )
+    return set(reached) - {GROUND}
+
+
+def _is_winding(graph: Graph, edge: Edge) -> bool:
+    return len(graph.windings_with(edge.name)) > 1 or (edge.value or 0.0) >= WINDING_H
+
+
+def _powers(graph: Graph, element: Element) -> bool:
+    """Say whether power is drawn from a source: a rectifier at it or at a winding that it feeds
+    charges a large capacitor. A detector's capacitor is small."""
+    near = _fed(graph, element, passed="RSW")
+    cores = {c for n in near for w in graph.windings(n) for c in graph.windings_with(w.name)}
+    swinging = near | {graph.at(n) for c in cores for n in graph.elements[c].nodes}
+    charged = {
+        n
+        for here in swinging - {GROUND}
+        for j in graph.junctions_at(here)
+        for n in (j.anode, j.cathode)
+    } - swinging
+    return any(
+        e.letter == "C" and (e.value or 0.0) >= CHARGED_F
+        for n in charged - {GROUND}
+        for e in graph.around(n)
+    )
+
+
+def _is_steady(element: Element) -> bool:
+    """Say whether a source gives anything without repeating."""
+    wave = element.wave
+    if wave is None:
+        return bool(element.value)
+    return period_of(element) is None and any(wave.values)
 
 
 def _heats(graph: Graph, element: Element) -> bool:

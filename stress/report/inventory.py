@@ -7,6 +7,7 @@ from textwrap import wrap
 
 from stress.circuit.circuit import Circuit, Kind, Part, Position
 from stress.finding import Finding
+from stress.parts.limit import STRESSES
 from stress.text.figure import figure
 from stress.text.span import SourceError
 
@@ -127,7 +128,10 @@ def _pins(part: Part) -> str:
     if part.envelope and part.envelope != part.name:
         shown += f"; in the envelope {part.envelope}"
     if part.limits:
-        return f"{shown}; limits: {', '.join(part.limits)}"
+        limits = (
+            f"{name} {figure(limit.value, STRESSES[name])}" for name, limit in part.limits.items()
+        )
+        return f"{shown}; limits: {', '.join(limits)}"
     return f"{shown}; no limits known"
 
 
@@ -171,7 +175,9 @@ def _sources(circuit: Circuit, width: int) -> Iterator[str]:
     if circuit.signals:
         yield from _item(f"signals, mute unless driven: {', '.join(circuit.signals)}", "", width)
     if circuit.gates:
-        yield from _item(f"gates of switches: {', '.join(circuit.gates)}", "", width)
+        yield from _item(
+            f"gates, and what power is drawn from: {', '.join(circuit.gates)}", "", width
+        )
     period = "none, direct voltages only"
     if circuit.period_s is not None:
         period = f"{figure(circuit.period_s, 's', digits=5)}"

@@ -202,6 +202,21 @@ SUPPLIES = [
         },
     ),
     Supply(
+        "vibrator supply, the vibrator drawn as a square wave",
+        """
+        V1 a 0 PULSE(-6 6 0 1u 1u 5m 10m)
+        R1 a p 0.2
+        L1 p 0 1m
+        L2 b 0 1
+        K1 L1 L2 0.99
+        C1 b 0 8n
+        D1 b c DM
+        C2 c 0 10u
+        R2 c 0 10k
+        """,
+        {"C1": (Role.SNUBBER, "L2"), "C2": (Role.OUTPUT_FILTER, "D1")},
+    ),
+    Supply(
         "flyback converter off the line",
         """
         Vl l n SIN(0 325 50)

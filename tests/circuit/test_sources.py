@@ -110,6 +110,47 @@ def test_gates(circuit, text, gates):
     assert found.period_s == (pytest.approx(10e-6) if gates else None)
 
 
+@pytest.mark.parametrize(
+    ("text", "gates", "signals"),
+    [
+        # a square wave into a power transformer: a vibrator, half of a bridge
+        (
+            "V1 a 0 PULSE(-6 6 0 1u 1u 5m 10m)\nL1 a 0 1m\nL2 b 0 1\nK1 L1 L2 0.99\n"
+            "D1 b c DM\nC1 c 0 10u\nR1 c 0 10k",
+            ("V1",),
+            (),
+        ),
+        ("V1 a 0 PULSE(-6 6 0 1u 1u 5m 10m)\nD1 a c DM\nC1 c 0 10u\nR1 c 0 10k", ("V1",), ()),
+        # into a detector: a signal
+        (
+            "V1 a 0 SIN(0 10 455k)\nD1 a c DM\nC1 c 0 100p\nR1 c 0 100k\nV2 d 0 9\nR2 d 0 1k",
+            (),
+            ("V1",),
+        ),
+        # nothing else there: it must not be muted, or the circuit is dead
+        ("V1 a 0 SIN(0 10 1k)\nR1 a b 1k\nC1 b 0 1u", (), ()),
+        ("V1 a 0 SIN(0 10 1k)\nR1 a b 1k\nC1 b 0 1u\nV2 d 0 9\nR2 d b 1k", (), ("V1",)),
+    ],
+)
+def test_what_power_is_drawn_from_is_no_signal(circuit, text, gates, signals):
+    found = circuit(text)
+
+    assert (found.gates, found.signals) == (gates, signals)
+    assert (found.period_s is None) == bool(signals)
+
+
+@pytest.mark.parametrize(
+    "text",
+    [
+        "V1 a 0 SIN(0 325 50)\nC1 a b 1u\nR1 b 0 1k",  # a capacitor as the dropper
+        "V1 a 0 SIN(0 325 50)\nR1 a 0 1k\nC1 a 0 0.1u",
+        "V1 a 0 SIN(0 12 50)\nL1 a b 0.5\nC1 b 0 10u",  # a choke, a motor
+    ],
+)
+def test_other_loads_of_the_line(circuit, text):
+    assert circuit(text).line.sources == ("V1",)
+
+
 def test_direct_voltages_only(circuit):
     found = circuit("V1 a 0 24\nR1 a b 1k\nC1 b 0 1u\nV2 c 0 PWL(0 0 1m 5)\nR2 c b 1k")
 
