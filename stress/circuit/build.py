@@ -12,6 +12,7 @@ from stress.circuit import (
     drive,
     hazards,
     names,
+    opaque,
     position,
     sources,
     supply,
@@ -183,7 +184,8 @@ def anatomy(netlist: Netlist, sheet: Sheet, *, types: Sequence[TypeEntry] = ()) 
     devices, pin_errors, envelopes = tube.find(split.devices, sheet=sheet, types=types)
     solid = component.transistors(netlist, sheet=sheet, inside=split.inside, types=types)
     contacts = {n.lower() for c in sheet.conditions for n in (*c.open, *c.short)}
-    graph = Graph(netlist, parts=(*devices, *solid), contacts=contacts)
+    labels = opaque.label(split.devices, known={part.name for part in devices})
+    graph = Graph(netlist, parts=(*devices, *solid), labels=labels, contacts=contacts)
     fed = sources.find(graph, entry=sheet.line)
     driven = drive.find(graph, line=fed.line.sources, gated=fed.gated, powering=fed.powering)
     supplied = supply.find(graph, drive=driven)

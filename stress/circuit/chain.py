@@ -9,7 +9,8 @@ from typing import Any
 import networkx as nx
 
 from stress.circuit.circuit import Circuit, Kind, Role
-from stress.circuit.graph import GROUND, Edge, Graph, Pin
+from stress.circuit.graph import Edge, Graph, Pin
+from stress.circuit.joined import GROUND
 
 FOLDED = frozenset({Kind.TUBE, Kind.RECTIFIER, Kind.TRANSISTOR})
 SUPPLIES = {

@@ -9,7 +9,8 @@ from __future__ import annotations
 from collections.abc import Collection, Iterable
 from dataclasses import dataclass
 
-from stress.circuit.graph import GROUND, Graph
+from stress.circuit.graph import Graph
+from stress.circuit.joined import GROUND
 
 SERIES_OHM = 1000.0  # surge resistors, winding resistances
 POLE_OHM = 100.0

@@ -1,7 +1,7 @@
 """The circuit as a graph: nodes joined by elements, the insides of tubes folded away.
 
-Nodes that a resistance of at most `JOINED_OHM` or a 0 V source joins count as one; the name of
-the group is ground where ground is among them, else the first in the netlist.
+Nodes that next to no resistance or a 0 V source joins count as one (`stress.circuit.joined`);
+the name of the group is ground where ground is among them, else the first in the netlist.
 """
 
 from __future__ import annotations
@@ -10,17 +10,15 @@ import heapq
 from collections.abc import Callable, Collection, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from functools import cache, cached_property
-from itertools import pairwise
 from typing import Any
 
 import networkx as nx
 
 from stress.circuit.behaviour import conduction
 from stress.circuit.circuit import Kind, Part
+from stress.circuit.joined import groups, joints
 from stress.netlist.flat import Element, Netlist
 
-JOINED_OHM = 1.0  # a wire, a fuse, a meter shunt, an ESR: no separate place in the circuit
-GROUND = "0"
 CONDUCTORS = frozenset("RLVEHDQJMZSWTX")
 
 _KINDS = {
@@ -38,6 +36,8 @@ _KINDS = {
     "source": "common",
     "screen": "screen",
     "diode": "diode",
+    "output": "output",
+    "input": "input",
 }
 
 
@@ -110,13 +110,19 @@ class Graph:
     """Walks over the circuit; made once, never changed."""
 
     def __init__(
-        self, netlist: Netlist, *, parts: Sequence[Part], contacts: Collection[str] = ()
+        self,
+        netlist: Netlist,
+        *,
+        parts: Sequence[Part],
+        labels: Sequence[Part] = (),
+        contacts: Collection[str] = (),
     ) -> None:
         """Fold the elements of `parts` (tubes and other folded devices) into edges.
 
         Args:
             netlist: Flat.
             parts: What is folded.
+            labels: Devices that stay unfolded and whose pins are told by their names.
             contacts: Resistors that stand for a switch, lower case: not joined.
         """
         self.contacts = frozenset(contacts)
@@ -126,13 +132,13 @@ class Graph:
         self.parts: Mapping[str, Part] = {part.name: part for part in parts if part.pins}
         visible = [e for e in netlist.elements if e.name.lower() not in folded and e.nodes]
         self.elements: Mapping[str, Element] = {e.name.lower(): e for e in netlist.elements}
-        self._group = _groups(visible, contacts=self.contacts)
+        self._group = groups(visible, contacts=self.contacts)
         edges: list[Edge] = []
         for element in visible:
             edges += self._edges_of(element)
         pins: dict[str, list[Pin]] = {}
         self.junctions: list[Junction] = []
-        for part in parts:
+        for part in (*parts, *labels):
             edges += self._space(part)
             for role, node in part.pins.items():
                 pins.setdefault(self.at(node), []).append(Pin(part.name, role))
@@ -156,7 +162,7 @@ class Graph:
             for node in {junction.anode, junction.cathode}:
                 self._junctions.setdefault(node, []).append(junction)
         self._pins = {node: tuple(found) for node, found in pins.items()}
-        self.joints = _joints(netlist.elements)
+        self.joints = joints(netlist.elements)
 
     def at(self, node: str) -> str:
         """Return the group a node belongs to."""
@@ -195,7 +201,7 @@ class Graph:
     @cached_property
     def nodes(self) -> tuple[str, ...]:
         """Every group of nodes, in netlist order."""
-        return tuple(dict.fromkeys(n for e in self.edges for n in (e.a, e.b)))
+        return tuple(dict.fromkeys([*(n for e in self.edges for n in (e.a, e.b)), *self._pins]))
 
     @cached_property
     def net(self) -> Any:
@@ -302,48 +308,3 @@ def cathode_of(part: Part, role: str) -> str | None:
         if name in part.pins:
             return part.pins[name]
     return None
-
-
-def _groups(elements: Sequence[Element], *, contacts: Collection[str]) -> dict[str, str]:
-    """Join the nodes that next to nothing separates; see the module's docstring."""
-    parent: dict[str, str] = {}
-
-    def root(node: str) -> str:
-        while parent.setdefault(node, node) != node:
-            parent[node] = parent[parent[node]]
-            node = parent[node]
-        return node
-
-    for element in elements:
-        for node in element.nodes:
-            root(node)
-        if _joins(element) and element.name.lower() not in contacts:
-            a, b = root(element.nodes[0]), root(element.nodes[1])
-            if a == GROUND:
-                parent[b] = a
-            else:
-                parent[a] = b
-    groups = {node: root(node) for node in parent}
-    # the first node of a group names it, but for ground
-    first: dict[str, str] = {GROUND: GROUND}
-    for node, top in groups.items():
-        first.setdefault(top, node)
-    return {node: first[top] for node, top in groups.items()}
-
-
-def _joins(element: Element) -> bool:
-    if len(element.nodes) != 2:
-        return False
-    if element.letter == "R":
-        return element.value is not None and abs(element.value) <= JOINED_OHM
-    return element.letter == "V" and element.wave is None and not element.value
-
-
-def _joints(elements: Sequence[Element]) -> dict[str, tuple[str, ...]]:
-    """Return every coupled inductor with all that share its core."""
-    cores = nx.Graph()
-    for element in elements:
-        if element.letter == "K":
-            names = [name.lower() for name in element.controls]
-            cores.add_edges_from(pairwise(names))
-    return {name: tuple(sorted(core)) for core in nx.connected_components(cores) for name in core}

@@ -8,7 +8,7 @@ from itertools import pairwise
 import networkx as nx
 
 from stress.circuit.circuit import Position, Role
-from stress.circuit.graph import GROUND
+from stress.circuit.joined import GROUND
 from stress.circuit.position import expected_plus
 from stress.circuit.surroundings import Surroundings
 from stress.finding import Finding, Severity
@@ -25,10 +25,9 @@ def find(s: Surroundings, *, positions: Sequence[Position], sheet: Sheet) -> tup
 
 def floating_nodes(s: Surroundings, positions: Sequence[Position], sheet: Sheet) -> list[Finding]:
     """Nodes without a path for direct current to ground: their voltage is set by leakage."""
-    net = nx.Graph()
-    net.add_nodes_from(s.graph.nodes)
-    net.add_nodes_from(s.graph.at(n) for p in s.graph.parts.values() for n in p.pins.values())
-    net.add_edges_from((e.a, e.b) for e in s.graph.edges if e.conducts)
+    net = nx.subgraph_view(
+        s.graph.net, filter_edge=lambda a, b, key: s.graph.net[a][b][key]["edge"].conducts
+    )
     found = []
     for island in nx.connected_components(net):
         if GROUND in island:

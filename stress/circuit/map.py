@@ -16,7 +16,8 @@ import networkx as nx
 
 from stress.circuit.build import anatomy
 from stress.circuit.circuit import Circuit, Kind
-from stress.circuit.graph import GROUND, Graph
+from stress.circuit.graph import Graph
+from stress.circuit.joined import GROUND
 from stress.circuit.surroundings import Surroundings
 from stress.text.unit import unit
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 from difflib import get_close_matches
 
-from stress.circuit.graph import GROUND
+from stress.circuit.joined import GROUND
 from stress.circuit.touch import GROUND_NAMES
 from stress.netlist.flat import Netlist
 from stress.parts.sheet import Sheet

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from stress.circuit.circuit import Kind, Role
-from stress.circuit.graph import GROUND, Edge, Pin
+from stress.circuit.graph import Edge, Pin
+from stress.circuit.joined import GROUND
 from stress.circuit.role_line import Found
 from stress.circuit.role_power import leads_to_detector, signal_junctions
 from stress.circuit.surroundings import RADIO_F, SIGNAL_OHM, STOPPER_OHM, Ends, Near, Surroundings
@@ -42,7 +43,9 @@ def bypass(s: Surroundings, c: Edge, e: Ends) -> Found:
 
 def _is_regulated(s: Surroundings, pin: Pin) -> bool:
     """Say whether a part passes a supply on: its output on a rail, its input held still."""
-    part = s.graph.parts[pin.part]
+    part = s.graph.parts.get(pin.part)
+    if part is None:
+        return False
     at = {Pin(part.name, role).kind: s.graph.at(node) for role, node in part.pins.items()}
     held = at.get("input", "")
     clamped = any(j.cathode == held and not j.tube for j in s.graph.junctions_at(held))

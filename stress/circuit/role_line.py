@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from stress.circuit.circuit import Role
 from stress.circuit.drive import HELD_F
-from stress.circuit.graph import GROUND, Edge
+from stress.circuit.graph import Edge
+from stress.circuit.joined import GROUND
 from stress.circuit.surroundings import Ends, Surroundings
 
 Found = tuple[Role, str] | None

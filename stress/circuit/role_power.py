@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from stress.circuit.circuit import Role
 from stress.circuit.drive import HASH_F, HELD_F
-from stress.circuit.graph import GROUND, Edge
+from stress.circuit.graph import Edge
+from stress.circuit.joined import GROUND
 from stress.circuit.role_line import Found
 from stress.circuit.surroundings import RADIO_F, Ends, Surroundings
 

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from stress.circuit.circuit import Kind, Role
-from stress.circuit.graph import GROUND, Edge, Pin
+from stress.circuit.graph import Edge, Pin
+from stress.circuit.joined import GROUND
 from stress.circuit.role_bypass import leak_at
 from stress.circuit.role_line import Found
 from stress.circuit.surroundings import RADIO_F, SIGNAL_OHM, Ends, Surroundings

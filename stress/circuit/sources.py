@@ -9,7 +9,8 @@ from math import lcm, sqrt
 
 from stress.circuit.behaviour import nodes_in
 from stress.circuit.circuit import Kind, Line
-from stress.circuit.graph import GROUND, Edge, Graph
+from stress.circuit.graph import Edge, Graph
+from stress.circuit.joined import GROUND
 from stress.netlist.flat import Element, Netlist
 from stress.parts.sheet import LineEntry
 from stress.text.figure import figure

@@ -12,7 +12,8 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
 from stress.circuit.drive import Drive, held
-from stress.circuit.graph import GROUND, Graph
+from stress.circuit.graph import Graph
+from stress.circuit.joined import GROUND
 from stress.netlist.flat import Element
 
 FEEDERS = "RLSW"

@@ -12,7 +12,8 @@ import networkx as nx
 from stress.circuit.behaviour import conduction
 from stress.circuit.circuit import Kind, Part
 from stress.circuit.drive import HELD_F, Drive
-from stress.circuit.graph import GROUND, Edge, Graph, Pin
+from stress.circuit.graph import Edge, Graph, Pin
+from stress.circuit.joined import GROUND
 from stress.circuit.supply import Supply
 from stress.circuit.touch import STATIC_OHM, Touch
 

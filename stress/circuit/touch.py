@@ -7,7 +7,8 @@ from dataclasses import dataclass
 
 from stress.circuit.circuit import Line
 from stress.circuit.drive import Drive
-from stress.circuit.graph import GROUND, Edge, Graph
+from stress.circuit.graph import Edge, Graph
+from stress.circuit.joined import GROUND
 from stress.circuit.sources import rms_of
 
 STATIC_OHM = 100e3  # a resistor from here on only leads static charge away (common practice)

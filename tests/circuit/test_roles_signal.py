@@ -155,3 +155,34 @@ def test_roles(network, circuit):
         position = found.position(name)
         assert (name, position.role) == (name, role), position.role_text
         assert words in position.role_text
+
+
+def test_an_amplifier_as_one_device(circuit):
+    # its inputs are what its model looks at, its output what it drives
+    found = circuit(
+        """
+        V1 p 0 15
+        V2 m 0 -15
+        X1 in fb o p m OPA
+        R1 o fb 10k
+        R2 fb 0 1k
+        C1 o fb 100p
+        C2 s in 1u
+        Rin in 0 100k
+        Vs s 0 SIN(0 0.1 1k)
+        C3 o out 10u
+        Ro out 0 10k
+        C4 p 0 100n
+        .subckt OPA 1 2 3 4 5
+        E1 6 0 1 2 1e5
+        R1 6 3 100
+        R2 4 5 10k
+        .ends
+        """
+    )
+
+    assert found.position("C1").role is Role.FEEDBACK
+    assert found.position("C2").role_text.startswith("coupling, the signal source Vs to input")
+    assert found.position("C3").role is Role.COUPLING
+    assert found.position("C4").role is Role.DECOUPLING
+    assert "X1" not in [part.name for part in found.parts]  # no limits, so no victim
