@@ -22,6 +22,7 @@ from stress.text.figure import figure
 from stress.text.unit import unit
 
 EXACT = frozenset({Role.TUNING})
+HEAT_SLACK_K = 1.0  # less is within what is known of the ambient
 LEAST_RIPPLE_A = 1e-3  # less needs no ripple rating
 
 
@@ -290,7 +291,7 @@ def _life(
         f"{found.core_degC:.0f} °C ({life.ORDINARY.source}; rated {figure(rated, 'A')} at 100 Hz)"
     )
     heat = rule.temperature if rule is not None else None
-    if heat is not None and found.core_degC > heat.limit_degC(style):
+    if heat is not None and found.core_degC > heat.limit_degC(style) + HEAT_SLACK_K:
         note += (
             f"; hotter than the {heat.limit_degC(style):.0f} °C that {policy.name} allows for an "
             f"{style.highest_degC.value:.0f} °C part: take a 105 °C series ({heat.source})"

@@ -60,7 +60,7 @@ def line_part(position: Position, *, safety_class: str, style: Style, circuit: C
     notes = ["from the line to what can be touched: class Y2 or Y1, never a plain or an X part"]
     found = touch(position, circuit=circuit)
     if found is None:
-        notes.append("no line voltage is known: the touch current was not computed")
+        notes.append("no alternating line is known: no touch current was computed")
         return LinePart(ac_V=rated_V, notes=tuple(notes), rules=(Y_RULE,))
     notes.append(_as_it_is(found))
     largest = found.value_max_F / (1.0 + VALUE_TOLERANCE)

@@ -32,7 +32,7 @@ def ripple_note(rms_A: float, frequency_Hz: float | None, *, needed_A: float) ->
 
 def pulse_note(position: Position, lasting: Mapping[str, PositionStress], *, ac_V: float) -> str:
     """Return pulse slope, peak current and alternating voltage, where they matter."""
-    if not lasting:
+    if not lasting or position.style.electrolytic:
         return ""
     slope = max(stress.slope_V_per_s for stress in lasting.values())
     peak = max(stress.peak_A for stress in lasting.values())

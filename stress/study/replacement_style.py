@@ -12,6 +12,7 @@ from stress.text.figure import figure
 PULSES = frozenset({Role.SNUBBER, Role.BUFFER})
 SLOPE_RESERVE = 0.5  # of a style's pulse slope is used (common practice)
 LARGEST_FILM_F = 10e-6  # more is sold as polypropylene for dc links (common practice)
+PLAIN_SLOPE = 1e5  # V/s; less is no pulse
 _FILMS = ("film", "film-pp", "snubber")  # each stands steeper pulses than the one before
 
 
@@ -107,11 +108,13 @@ def _steep_enough(position: Position, chosen: Style, *, slope_V_per_s: float) ->
         if slope is None or slope_V_per_s <= SLOPE_RESERVE * slope.value or name == _FILMS[-1]:
             if name == chosen.name:
                 return None
-            per_us = f"{slope_V_per_s * 1e-6:.3g} V/µs"
+            what = position.role.value
+            if slope_V_per_s > PLAIN_SLOPE:
+                what = f"pulses of {slope_V_per_s * 1e-6:.3g} V/µs"
             source = f": {slope.source}" if slope is not None else ""
             return StyleChoice(
                 style,
-                f"{style.text} for its pulses of {per_us}",
+                f"{style.text} for its place, {what}",
                 f"half of a style's pulse slope is used (common practice){source}",
             )
     return None

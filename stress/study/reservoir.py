@@ -48,7 +48,7 @@ class Reservoir:
         limit_A: Peak current of one plate or diode.
         value_max_F: The largest capacitance within both, or None where nothing is published.
         inrush_A: Largest current of a rectifier while switched on from rest.
-        text: All of it in words.
+        text: What was simulated, in words.
     """
 
     position: str
@@ -247,21 +247,17 @@ def judged(
         limit_A=limit_A,
         value_max_F=min(known, default=None),
         inrush_A=inrush_A,
-        text=_told(table_F, source, tried, limit_A, inrush_A),
+        text=_told(tried, limit_A, inrush_A),
         unanswered=missing,
     )
 
 
 def _told(
-    table_F: float | None,
-    source: str,
     tried: tuple[Tried, ...],
     limit_A: float | None,
     inrush_A: float | None,
 ) -> str:
     said = []
-    if table_F is not None:
-        said.append(f"largest first capacitor {figure(table_F, 'F')} ({source})")
     peaks = [(row.value_F, row.peak_A) for row in tried if row.peak_A is not None]
     if peaks:
         listed = ", ".join(

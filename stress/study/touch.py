@@ -27,6 +27,8 @@ VALUE_TOLERANCE = 0.20  # code M, the usual one of class Y parts
 # A resistor below this from a pole of the line to ground is the earth of the service, which the
 # equipment does not hold: nobody builds in what would pass a tenth of an ampere to a person.
 EARTH_OHM = 1000.0
+# Below this a line is no danger by touch: ES1 of IEC 62368-1, 42.4 V peak [memory H]
+HARMLESS_V = 30.0  # rms
 NO_PATH_OHM = 1e8  # more passes no current worth naming
 
 
@@ -69,6 +71,8 @@ def safety_class(
     stands across it. On a hot chassis line to B- is X, and B- to case, antenna or earth is Y.
     """
     first, second = position.nodes
+    if 0.0 < circuit.line.high_V < HARMLESS_V:
+        return None
     live = [node in circuit.line_connected for node in position.nodes]
     reach = [node in circuit.touchable for node in position.nodes]
     if (live[0] and reach[1] and not live[1]) or (live[1] and reach[0] and not live[0]):
@@ -92,26 +96,26 @@ def _bears_the_line(position: Position, circuit: Circuit, working: Working) -> b
     return abs(stress.dc_V) < 0.1 * peak and 0.9 * peak < stress.peak_V < 1.1 * peak
 
 
-def line_frequency_Hz(circuit: Circuit) -> float:
-    """Return the frequency of the line, 60 Hz where the netlist does not tell."""
+def line_frequency_Hz(circuit: Circuit) -> float | None:
+    """Return the frequency of the line, or None where it does not alternate."""
     names = {name.lower() for name in circuit.line.sources}
     for element in circuit.netlist.elements:
         if element.name.lower() in names and element.wave and element.wave.kind == "sin":
             return float(element.wave.values[2])
-    return 60.0
+    return None
 
 
 def touch(position: Position, *, circuit: Circuit, limit_A: float = LIMIT_A) -> Touch | None:
-    """Return the touch current at high line, or None where no line is known.
+    """Return the touch current at high line, or None where no alternating line is known.
 
     Args:
         position: A position of class Y.
         circuit: With the line, what is connected to it and what can be touched.
         limit_A: The published limit, rms.
     """
-    if not circuit.line.sources or position.value_F is None:
-        return None
     line_V, hertz = circuit.line.high_V, line_frequency_Hz(circuit)
+    if hertz is None or position.value_F is None:
+        return None
     # What the role says is line and chassis counts even where the sheet does not name it.
     live, reach = set(circuit.line_connected), set(circuit.touchable)
     if position.role is Role.LINE_CHASSIS:

@@ -82,7 +82,13 @@ def test_heat_that_a_can_gives_off():
 
 @pytest.mark.parametrize(
     ("value_F", "rated_V", "catalogue_A"),
-    [(47e-6, 450, 0.45), (10e-6, 450, 0.15), (220e-6, 400, 1.3)],
+    [
+        (47e-6, 450, 0.45),
+        (10e-6, 450, 0.15),
+        (220e-6, 400, 1.3),
+        (1000e-6, 25, 1.0),
+        (100e-6, 25, 0.2),
+    ],
 )
 def test_what_one_part_carries_is_of_the_right_size(value_F, rated_V, catalogue_A):
     # From memory, to be confirmed: the law must not be off by more than a fifth where it was fitted.

@@ -169,6 +169,21 @@ def test_what_bears_the_whole_line_is_across_it(circuit_of, dc_V, peak_V, expect
     assert found == expected
 
 
+def test_a_battery_is_no_line_to_be_afraid_of(circuit_of):
+    """ES1 of IEC 62368-1 ends at 42.4 V peak [memory H]."""
+    line = Line(sources=("V1",), nominal_V=24.0, high_V=28.8, low_V=22.0)
+    circuit = circuit_of(LINE, "C1 l1 0 1e-8", live=("l1", "l2"), touch=("0",), line=line)
+    assert touch.safety_class(circuit.position("C1"), circuit=circuit) is None
+
+
+def test_a_direct_line_drives_nothing_through_a_capacitor(circuit_of):
+    line = Line(sources=("V1",), nominal_V=110.0, high_V=121.0, low_V=100.0)
+    lines = ("V1 l1 l2 110", "C1 l1 0 1e-8")
+    circuit = circuit_of(*lines, live=("l1", "l2"), touch=("0",), line=line)
+    assert touch.safety_class(circuit.position("C1"), circuit=circuit) == "Y"
+    assert touch.touch(circuit.position("C1"), circuit=circuit) is None
+
+
 def test_what_a_smaller_one_costs_is_told(circuit_of):
     circuit = circuit_of(LINE, "C1 l1 0 5e-8", live=("l1", "l2"), touch=("0",))
     text = touch.what_is_lost(circuit.position("C1"), fitted_F=4.7e-9)
