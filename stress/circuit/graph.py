@@ -10,9 +10,6 @@ import heapq
 from collections.abc import Callable, Collection, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from functools import cache, cached_property
-from typing import Any
-
-import networkx as nx
 
 from stress.circuit.behaviour import conduction
 from stress.circuit.circuit import Kind, Part
@@ -202,14 +199,6 @@ class Graph:
     def nodes(self) -> tuple[str, ...]:
         """Every group of nodes, in netlist order."""
         return tuple(dict.fromkeys([*(n for e in self.edges for n in (e.a, e.b)), *self._pins]))
-
-    @cached_property
-    def net(self) -> Any:
-        """The whole as a `networkx.MultiGraph`; the edges carry `edge`."""
-        net = nx.MultiGraph()
-        net.add_nodes_from(self.nodes)
-        net.add_edges_from((e.a, e.b, {"edge": e}) for e in self.edges if e.a != e.b)
-        return net
 
     def is_folded(self, element: str) -> bool:
         """Say whether an element is inside a folded device."""

@@ -25,9 +25,9 @@ def find(s: Surroundings, *, positions: Sequence[Position], sheet: Sheet) -> tup
 
 def floating_nodes(s: Surroundings, positions: Sequence[Position], sheet: Sheet) -> list[Finding]:
     """Nodes without a path for direct current to ground: their voltage is set by leakage."""
-    net = nx.subgraph_view(
-        s.graph.net, filter_edge=lambda a, b, key: s.graph.net[a][b][key]["edge"].conducts
-    )
+    net = nx.Graph()
+    net.add_nodes_from(s.graph.nodes)
+    net.add_edges_from((e.a, e.b) for e in s.graph.edges if e.conducts)
     found = []
     for island in nx.connected_components(net):
         if GROUND in island:

@@ -4,44 +4,16 @@ from __future__ import annotations
 
 import shutil
 import sys
-from pathlib import Path
+from dataclasses import replace
 
 import click
 
-from stress.command.options import UNUSABLE, plain_errors
+from stress.command.options import UNUSABLE, Given, inputs, plain_errors
 
 
 @click.command()
-@click.argument("file", type=click.Path(path_type=Path))
-@click.option(
-    "--sheet", type=click.Path(path_type=Path), help="Part sheet; usually FILE's stem with .toml."
-)
-@click.option(
-    "--library",
-    "libraries",
-    multiple=True,
-    type=click.Path(path_type=Path),
-    help="Folder from which the netlist may include files; can be given again.",
-)
-@click.option(
-    "--types",
-    "type_files",
-    multiple=True,
-    type=click.Path(path_type=Path),
-    help="Your own table of tube and semiconductor types; can be given again.",
-)
-@click.option(
-    "--dialect",
-    type=click.Choice(["default", "ps", "lt", "hs"]),
-    help="Read the netlist in this dialect instead of the one recognised.",
-)
-def check(
-    file: Path,
-    sheet: Path | None,
-    libraries: tuple[Path, ...],
-    type_files: tuple[Path, ...],
-    dialect: str | None,
-) -> None:
+@inputs
+def check(given: Given) -> None:
     """List what was recognised in FILE: positions with roles, tubes with pins, sources.
 
     Nothing is simulated. Exit status 2 when something prevents a simulation; what can be
@@ -56,16 +28,20 @@ def check(
     from stress.text.span import SourceError, SourceErrors
 
     with plain_errors():
-        netlist = read(file, libraries=libraries, dialect=dialect, built_in=subcircuit)
-        own = [entry for path in type_files for entry in types.load(path)]
-        beside = sheet if sheet is not None else file.with_suffix(".toml")
+        netlist = read(
+            given.file, libraries=given.libraries, dialect=given.dialect, built_in=subcircuit
+        )
+        own = [entry for path in given.type_files for entry in types.load(path)]
+        beside = given.sheet or given.file.with_suffix(".toml")
         errors: list[SourceError] = []
         known = Sheet()
-        if sheet is not None or beside.is_file():
+        if given.sheet is not None or beside.is_file():
             try:
                 known = read_sheet.read(beside)
             except SourceErrors as problems:
-                errors += problems.errors
+                errors += problems.errors  # what the netlist alone tells is still listed
+        if given.high_V is not None:
+            known = replace(known, line=replace(known.line, high_V=given.high_V))
         circuit, wrong = survey(netlist, known, types=own)
         errors += wrong
     width = shutil.get_terminal_size().columns

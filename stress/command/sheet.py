@@ -7,32 +7,18 @@ from pathlib import Path
 
 import click
 
-from stress.command.options import UNUSABLE, plain_errors
+from stress.command.options import UNUSABLE, Given, inputs, plain_errors
 
 
 @click.command()
-@click.argument("file", type=click.Path(path_type=Path))
+@inputs
 @click.option(
     "-o",
     "--output",
     type=click.Path(path_type=Path),
     help="Write here instead of printing; an existing file is not overwritten.",
 )
-@click.option(
-    "--library",
-    "libraries",
-    multiple=True,
-    type=click.Path(path_type=Path),
-    help="Folder from which the netlist may include files; can be given again.",
-)
-@click.option(
-    "--dialect",
-    type=click.Choice(["default", "ps", "lt", "hs"]),
-    help="Read the netlist in this dialect instead of the one recognised.",
-)
-def sheet(
-    file: Path, output: Path | None, libraries: tuple[Path, ...], dialect: str | None
-) -> None:
+def sheet(given: Given, output: Path | None) -> None:
     """Print a part sheet for FILE with the roles, styles and tube pins that were inferred.
 
     What is assumed says so. A part sheet beside FILE is read, and what it states is kept.
@@ -45,9 +31,13 @@ def sheet(
     from stress.parts.sheet import Sheet
 
     with plain_errors():
-        netlist = read(file, libraries=libraries, dialect=dialect, built_in=subcircuit)
-        beside = file.with_suffix(".toml")
-        known = read_sheet.read(beside) if beside.is_file() else Sheet()
+        netlist = read(
+            given.file, libraries=given.libraries, dialect=given.dialect, built_in=subcircuit
+        )
+        beside = given.sheet or given.file.with_suffix(".toml")
+        known = Sheet()
+        if given.sheet is not None or beside.is_file():
+            known = read_sheet.read(beside)
         circuit, _ = survey(netlist, known)
         text = skeleton(circuit)
         if output is None:
