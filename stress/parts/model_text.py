@@ -11,9 +11,11 @@ Laws, v against the cathode, softplus(x) = ln(1 + e^x):
   1996): Ip = 2 E^EX / KG1, E = vp/KP softplus(KP (1/MU + vg/sqrt(KVB + vp^2))).
 * Pentode, beam tube: the space current after Koren, 2 E^EX / KG1, E = w softplus(u/w),
   u = vg + vs/MU + vp/MUA, w = sqrt(vs^2 + 100)/KP. The plate takes of it
-  share 2/pi atan(vp/KVB), which is Koren's knee; the screen takes what the plate leaves, so
+  2/pi atan(vp/(KVS vs)) (1 - S0 (2 vs^2/(vs^2 + vp^2))^H), the screen what the plate leaves, so
   that the cathode current is conserved and a screen without plate voltage burns as it does.
-  MUA (control by the plate, gm rp) is ours; the published form has an infinite one.
+  Ours are: the knee in proportion to the screen voltage (Koren's KVB is a constant); the share
+  S0 that the screen takes above the knee, with its fall by the ratio of the voltages, because
+  lines published at several voltages show both; and MUA, the control by the plate (gm rp).
 * Converter: the same with the oscillator grid in the place of grid 1, times a logistic law of
   the signal grid in the plate's share. It stands for the mean currents of a tube that
   oscillates as its sheet says; the oscillation itself is not simulated.
@@ -71,12 +73,6 @@ def _softplus(x: str) -> str:
     return f"(max({x},0)+ln(1+exp(-abs({x}))))"
 
 
-def _gate(voltage: str, width_V: float) -> str:
-    """0 for a negative voltage, 1 for one well above the width, smooth between."""
-    positive = f"max({voltage},0)"
-    return f"{positive}*{positive}/({positive}*{positive}+{_number(width_V**2)})"
-
-
 def _grid(unit: Unit, tag: str, grid: str, cathode: str) -> list[str]:
     scale = _number(unit["GG"] * GRID_WIDTH_V**GRID_EXPONENT)
     return [
@@ -111,11 +107,16 @@ def _pentode(unit: Unit, tag: str) -> list[str]:
     plate, screen, grid, cathode = unit.pins[:4]
     control = unit.pins[4] if unit.form == "converter" else grid
     vp, vs = f"V({plate},{cathode})", f"V({screen},{cathode})"
-    space, share, width, x = (f"{name}{tag}" for name in ("space", "share", "width", "x"))
+    names = ("space", "share", "fall", "width", "x")
+    space, share, fall, width, x = (f"{name}{tag}" for name in names)
     drive = f"V({control},{cathode})+{_number(1 / unit['MU'])}*{vs}+{_number(1 / unit['MUA'])}*{vp}"
-    positive = f"max({vp},0)"
-    knee = f"atan({_number(1 / unit['KVB'])}*{positive}*{positive}/({positive}+1))"
-    part = f"{_number(unit['SHARE'] * 0.6366198)}*{knee}"
+    positive = f"V(high{tag})"
+    scale = _number(1 / (unit["KVS"] * unit["KP"]))
+    knee = f"0.6366198*atan({scale}*{positive}*{positive}/(({positive}+1)*V({width})))"
+    square = f"V({width})*V({width})+1e-6"
+    # The logarithm in a node of its own: a power of a node that starts at 0 V has no slope there.
+    ratio = f"2*({square})/({square}+{_number(unit['KP'] ** -2)}*{positive}*{positive})"
+    part = f"{knee}*(1-{_number(unit['S0'])}*exp({_number(unit['H'])}*V({fall})))"
     if unit.form == "converter":
         signal = f"min(V({grid},{cathode})-{_number(unit['V3'])},99)"
         part += f"/(1+exp(-({_number(1 / unit['S3'])})*{signal}))"
@@ -125,9 +126,14 @@ def _pentode(unit: Unit, tag: str) -> list[str]:
         # In milliamperes, so that the solver's tolerance for voltages fits it.
         f"Bspace{tag} {space} 0 V=V(em)*{_number(2000 / unit['KG1'])}"
         f"*pow(V({width})*{_softplus(f'V({x})')},{_number(unit['EX'])})",
+        f"Bhigh{tag} high{tag} 0 V=max({vp},0)",
+        f"Bfall{tag} {fall} 0 V=ln({ratio})",
         f"Bshare{tag} {share} 0 V={part}",
         f"Bplate{tag} {plate} {cathode} I=0.001*V({space})*V({share})",
-        f"Bscreen{tag} {screen} {cathode} I=0.001*V({space})*(1-V({share}))*{_gate(vs, 2.0)}",
+        # No current into a screen that is not positive; 2 V are the width of the step.
+        f"Bopen{tag} open{tag} 0 V=max({vs},0)",
+        f"Bscreen{tag} {screen} {cathode} I=0.001*V({space})*(1-V({share}))"
+        f"*V(open{tag})*V(open{tag})/(V(open{tag})*V(open{tag})+4)",
         *_grid(unit, tag, control, cathode),
     ]
     if control != grid:

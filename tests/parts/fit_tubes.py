@@ -35,7 +35,9 @@ def pentode_A(p, vp, vs, vg):
     drive = 0.0 if "S3" in p else vg
     w = np.sqrt(vs * vs + 100) / p["KP"]
     space = 2 / p["KG1"] * (w * softplus((drive + vs / p["MU"] + vp / p["MUA"]) / w)) ** p["EX"]
-    share = p["SHARE"] * 2 / np.pi * np.arctan(vp * vp / (vp + 1) / p["KVB"])
+    wide = vs * vs + 100
+    share = 2 / np.pi * np.arctan(vp * vp / (vp + 1) / (p["KVS"] * np.sqrt(wide)))
+    share = share * (1 - p["S0"] * (2 * wide / (wide + vp * vp)) ** p["H"])
     if "S3" in p:
         share = share / (1 + np.exp(-(vg - p["V3"]) / p["S3"]))
     return space * share, space * (1 - share) * vs * vs / (vs * vs + 4)
@@ -100,8 +102,9 @@ def fit(entry: TypeEntry, form: str, rows, recipe):
             ),
             "KP": (5 * mu, 0.7),
             "MUA": (min(max((first.gm_S or 1e-3) * (first.plate_ohm or 1e6), 60.0), 5000.0), 0.5),
-            "KVB": (12.0 if entry.family == "beam tube" else 22.0, 0.3),
+            "KVS": (0.04 if entry.family == "beam tube" else 0.07, 0.2),
         }
+        guess["H"] = (0.9, 0.5) if entry.family == "beam tube" else (0.15, 1.0)
         if entry.remote:
             guess |= {"MU": (20.0, 1.0), "KP": (12.0, 1.0)}
     if form == "converter":
@@ -110,14 +113,14 @@ def fit(entry: TypeEntry, form: str, rows, recipe):
         guess[name] = tuple(pair)
     guess["KG1"] = (1000.0, 100.0)
     names = list(guess)
-    extra = (["SHARE"] if form != "triode" else []) + (["V3"] if form == "converter" else [])
-    middle = np.array([np.log(guess[n][0]) for n in names] + [3.0, 0.0][: len(extra)])
+    extra = (["S0"] if form != "triode" else []) + (["V3"] if form == "converter" else [])
+    middle = np.array([np.log(guess[n][0]) for n in names] + [-3.0, 0.0][: len(extra)])
     width = np.array([np.log1p(guess[n][1]) for n in names] + [5.0, 10.0][: len(extra)])
 
     def values(x):
         p = {n: float(np.exp(v)) for n, v in zip(names, x, strict=False)}
         if form != "triode":
-            p["SHARE"] = float(1 / (1 + np.exp(-x[len(names)])))
+            p["S0"] = float(1 / (1 + np.exp(-x[len(names)])))
         if form == "converter":
             p["V3"] = float(x[len(names) + 1])
         return p
