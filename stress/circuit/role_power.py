@@ -32,20 +32,22 @@ def snubber(s: Surroundings, c: Edge, e: Ends) -> Found:
         if e.b in (j.anode, j.cathode):
             return Role.SNUBBER, f"across the rectifier {j.part}"
     for node, far in ((e.a, e.b), (e.b, e.a)):
-        works = any(x.name.lower() in s.gated for x in s.graph.around(node)) or s.direct(
-            node, "output"
-        )
-        if works and node in s.drive.switched and s.still(far) and node not in s.supply.outputs:
+        if node in s.supply.outputs:
+            if _clamps(s, node, far):
+                return Role.SNUBBER, f"clamp, {node} to {s.words(far)}"
+            continue
+        if node not in s.drive.switched or not s.still(far):
+            continue
+        worked = any(x.name.lower() in s.gated for x in s.graph.around(node))
+        if worked or s.direct(node, "output"):
             return Role.SNUBBER, f"snubber at the switched node {node}"
-        if s.supply.outputs.get(node) and _clamps(s, node, far):
-            return Role.SNUBBER, f"clamp, {node} to {s.words(far)}"
     return None
 
 
 def _clamps(s: Surroundings, node: str, far: str) -> bool:
     """Say whether a node only takes peaks of a switched node and bleeds into a supply."""
     output = s.supply.outputs[node]
-    bled = any(x.letter == "R" and x.other(node) == far for x in s.graph.around(node))
+    bled = any(x.letter == "R" for x in s.graph.between(node, far))
     return output.origin == "switched" and bled and far != GROUND
 
 
