@@ -160,7 +160,8 @@ def _replacement(of: Replacement | None) -> tuple[Fact, ...]:
     if of.life_h is not None:
         facts.append(Fact(name="expected life", text=f"{figure(of.life_h, 'h')}"))
     facts += [Fact(name="note", text=note) for note in of.notes]
-    facts += [Fact(name="by", text=rule) for rule in of.rules]
+    if of.rules:
+        facts.append(Fact(name="by", text="; ".join(of.rules)))
     return tuple(facts)
 
 

@@ -15,11 +15,12 @@ from itertools import pairwise
 import networkx as nx
 
 from stress.circuit.circuit import Circuit, Kind, Part
-from stress.circuit.graph import GROUND, Graph
+from stress.circuit.graph import Graph
+from stress.circuit.joined import GROUND
 
 DEVICES = (Kind.TUBE, Kind.RECTIFIER, Kind.TRANSISTOR)
 RAIL_FROM = 6  # edges at a net that make it a rail
-STEP, MARGIN = 32.0, 60.0
+STEP, DEVICE, MARGIN = 32.0, 68.0, 60.0
 TOP, ROW = 40.0, 78.0
 _ROUNDS = 60
 _BELOW = -0.05  # of the largest voltage: what is lower stands below ground
@@ -82,7 +83,12 @@ def layout(circuit: Circuit, *, volts: Mapping[str, float], keep: Iterable[str] 
     rails = {net for net, count in degree.items() if count >= RAIL_FROM} | {GROUND}
     wishes = _wishes(graph, devices, links, pins=pins, rails=rails)
     order = sorted(wishes, key=lambda item: (wishes[item], item))
-    x = {item: MARGIN + STEP * i for i, item in enumerate(order)}
+    x: dict[tuple[str, str], float] = {}
+    edge = MARGIN - STEP / 2
+    for item in order:
+        room = DEVICE if item[0] == "device" else STEP
+        x[item] = edge + room / 2
+        edge += room
     rows = _rows([*degree], volts=volts, rails=rails)
     dots = {
         name: (x["net", name], rows[name] + (13.0 if i % 2 else -13.0))
@@ -97,7 +103,7 @@ def layout(circuit: Circuit, *, volts: Mapping[str, float], keep: Iterable[str] 
         for part in devices
     }
     slots = {name: x["slot", name] for kind, name in order if kind == "slot"}
-    width = 2 * MARGIN + STEP * max(len(order) - 1, 0)
+    width = edge - STEP / 2 + MARGIN
     ends = _ends(links, pins, dots=dots, slots=slots, devices=place, rails=rails, width=width)
     return Layout(
         width=width,

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 
-import networkx as nx
 from markupsafe import Markup
 
-from stress.circuit.graph import GROUND
+from stress.circuit.chain import Chains
+from stress.circuit.joined import GROUND
 from stress.finding import Severity
 from stress.report import words
 from stress.report.circuit_layout import Layout, Link, layout
@@ -47,7 +47,8 @@ def circuit_map(review: Review) -> CircuitMap | None:
     )
     if not placed.links:
         return None
-    chains = _chains(placed, hit)
+    ways = Chains(review.circuit)
+    chains = _reached(ways, hit)
     drawn = [*_rails(placed, chains), *_wires(placed, chains), *_devices(review, placed, chains)]
     drawn += _chips(review, placed, chains)
     return CircuitMap(
@@ -58,7 +59,7 @@ def circuit_map(review: Review) -> CircuitMap | None:
             title="Circuit map: higher is more positive, the signal goes from left to right",
             class_="map",
         ),
-        said={name: _sentence(review, name, parts) for name, parts in hit.items()},
+        said={name: _sentence(review, ways, name, parts) for name, parts in hit.items()},
     )
 
 
@@ -70,48 +71,44 @@ def _victims(review: Review, name: str) -> tuple[str, ...]:
         found.append(leakage.governing.victim.part)
     for failure in review.failures.get(name, ()):
         found += [victim.part for victim in failure.victims]
-    return tuple(dict.fromkeys(found))
+    known = {part.name for part in review.circuit.parts}
+    known |= {position.name for position in review.circuit.positions}
+    return tuple(part for part in dict.fromkeys(found) if part in known)
 
 
-def _sentence(review: Review, name: str, victims: Iterable[str]) -> str:
-    position = review.circuit.position(name)
-    hit = ", ".join(victims)
-    told = f"its faults would drive past a limit: {hit}" if hit else "its faults hit no known limit"
-    return f"{name}, {position.role_text}: {told}."
+def _sentence(review: Review, ways: Chains, name: str, victims: Sequence[str]) -> str:
+    told = f"{name}, {review.circuit.position(name).role_text}: "
+    if not victims:
+        return f"{told}its faults hit no known limit."
+    first = " -> ".join(ways.words(name, victims[0]))
+    others = f"; also past a limit: {', '.join(victims[1:])}" if victims[1:] else ""
+    return f"{told}{first}{others}."
 
 
-def _chains(placed: Layout, hit: dict[str, tuple[str, ...]]) -> dict[str, list[str]]:
-    """Return for every part, pin and net of the map the positions whose fault runs through it."""
-    net: nx.Graph = nx.Graph()
-    for link in placed.links:
-        # Ground ends every path, and a rail is a long way round.
-        cost = 9.0 if {link.a, link.b} & set(placed.rails) else 1.0
-        for part in link.parts:
-            net.add_edge(("part", part), ("net", link.a), cost=cost)
-            net.add_edge(("part", part), ("net", link.b), cost=cost)
-    for device, node in placed.pins:
-        net.add_edge(("part", device), ("net", node), cost=1.0)
-    if ("net", GROUND) in net:
-        net.remove_node(("net", GROUND))
-    chains: dict[str, list[str]] = {}
+def _reached(ways: Chains, hit: Mapping[str, tuple[str, ...]]) -> dict[str, list[str]]:
+    """Return for every part and net of the map the positions whose fault reaches it.
+
+    The way is drawn to the first victim only; of the others the parts stand out.
+    """
+    reached: dict[str, list[str]] = {}
     for position, parts in hit.items():
-        start = ("part", position)
-        lit = {start}
-        for part in parts:
-            end = ("part", part)
-            if start in net and end in net and nx.has_path(net, start, end):
-                lit |= set(nx.shortest_path(net, start, end, weight="cost"))
-            elif end in net:
-                lit.add(end)
-        for kind, name in lit:
-            chains.setdefault(f"{kind} {name}", []).append(position)
-    return chains
+        lit = {f"part {position}"} | {f"part {part}" for part in parts}
+        for step in ways.steps(position, parts[0]) if parts else ():
+            lit.add(f"net {step.name}" if step.kind == "node" else f"part {step.name}")
+        for key in lit:
+            reached.setdefault(key, []).append(position)
+    return reached
 
 
 def _chain(chains: dict[str, list[str]], *keys: str) -> str | None:
     lit = [set(chains.get(key, ())) for key in keys]
     both = sorted(set.intersection(*lit)) if lit else []
     return " ".join(both) or None
+
+
+def _any(chains: dict[str, list[str]], parts: Iterable[str]) -> str | None:
+    reached = {name for part in parts for name in chains.get(f"part {part}", ())}
+    return " ".join(sorted(reached)) or None
 
 
 def _rails(placed: Layout, chains: dict[str, list[str]]) -> list[Markup]:
@@ -133,9 +130,10 @@ def _wires(placed: Layout, chains: dict[str, list[str]]) -> list[Markup]:
                 tag("title", " + ".join(link.parts)),
                 points=" ".join(f"{x:.1f},{y:.1f}" for x, y in _run(placed, link)),
                 class_="wire of-position" if link.position else "wire",
-                data_chain=_chain(chains, f"part {link.parts[0]}"),
+                data_chain=_any(chains, link.parts),
             )
         )
+        drawn += _names(placed, link, chains)
     for device, net in placed.pins:
         x, y = placed.devices[device]
         x2, y2 = placed.dots.get(net, (x, placed.rails[net][2] if net in placed.rails else y))
@@ -149,6 +147,25 @@ def _wires(placed: Layout, chains: dict[str, list[str]]) -> list[Markup]:
             )
         )  # fmt: skip
     return drawn
+
+
+def _names(placed: Layout, link: Link, chains: dict[str, list[str]]) -> list[Markup]:
+    """Return the names of parts without a chip or box; they show when a fault reaches them."""
+    if link.position:
+        return []
+    (x1, y1), (x2, y2) = _run(placed, link)[-2:]
+    named = [part for part in link.parts if f"part {part}" in chains]
+    return [
+        tag(
+            "text",
+            part,
+            x=(x1 + x2) / 2 + 6,
+            y=(y1 + y2) / 2 + 14 * i,
+            class_="name of-hit",
+            data_chain=_chain(chains, f"part {part}"),
+        )
+        for i, part in enumerate(named)
+    ]
 
 
 def _run(placed: Layout, link: Link) -> list[tuple[float, float]]:

@@ -12,9 +12,9 @@ from stress.report.drawing import Scale, line, spread, svg, tag, text
 from stress.study.result import Review
 from stress.text.figure import figure
 
-_WIDTH, _HEIGHT = 400.0, 236.0
+_WIDTH, _HEIGHT = 420.0, 236.0
 _TOP, _BOTTOM = 18.0, 222.0
-_LEFT, _RIGHT = 170.0, 230.0
+_LEFT, _RIGHT = 195.0, 250.0
 _GAP = 15.0
 
 
@@ -37,9 +37,9 @@ def rungs(review: Review, position: Position) -> tuple[Rung, ...]:
         found.append(Rung("normal", nominal.dc_V, "normal", True))
     worst = review.worst.get(name)
     if worst:
-        found.append(Rung(f"worst, {worst.condition}", worst.worst_V, "worst", True))
+        found.append(Rung(f"worst, {_short(worst.condition)}", worst.worst_V, "worst", True))
         if worst.brief_V is not None:
-            brief = f"brief, {worst.brief_condition}" if worst.brief_condition else "brief"
+            brief = f"brief, {_short(worst.brief_condition)}" if worst.brief_condition else "brief"
             found.append(Rung(brief, worst.brief_V, "brief", True))
     if position.rated_V is not None:
         found.append(Rung("marked rating", position.rated_V, "marked", False))
@@ -54,6 +54,11 @@ def rungs(review: Review, position: Position) -> tuple[Rung, ...]:
     elif fit and fit.rated_V is not None:
         found.append(Rung("proposed rating", fit.rated_V, "proposed", False))
     return tuple(found)
+
+
+def _short(condition: str) -> str:
+    """Return a condition's name so that it fits beside the ladder."""
+    return condition if len(condition) <= 14 else f"{condition[:13]}…"
 
 
 def ladder(review: Review, position: Position) -> Markup | None:

@@ -14,7 +14,7 @@ from stress.report.drawing import Scale, axis_bottom, axis_left, line, polyline,
 from stress.study.result import CurvePoint, Leakage, Review
 from stress.text.figure import figure
 
-_WIDTH, _PANEL, _HEAD, _FOOT = 400.0, 118.0, 26.0, 46.0
+_WIDTH, _PANEL, _HEAD, _FOOT = 400.0, 118.0, 34.0, 46.0
 _LEFT, _RIGHT = 66.0, 388.0
 PAST, WITHIN, NO_LIMIT = "past its limit", "within", "not judged"
 VERDICTS = (PAST, WITHIN, NO_LIMIT, words.NOT_KNOWN)
@@ -192,10 +192,8 @@ def _marks(review: Review, leakage: Leakage, x: Scale, *, bottom: float) -> list
     marks.sort(key=lambda mark: x.at(mark[1]))
     for i, (name, ohm, class_) in enumerate(marks):
         place = x.at(ohm)
-        drawn.append(line(place, _HEAD - 6, place, bottom, f"mark {class_}"))
-        # Names in a row above the panels, each beside its line, on two heights.
+        drawn.append(line(place, 10.0 + 11.0 * i, place, bottom, f"mark {class_}"))
+        # Names above the panels, each beside its line, at its own height.
         anchor = "end" if place > (_LEFT + _RIGHT) / 2 else "start"
-        drawn.append(
-            text(place, 10.0 + 11.0 * (i % 2), name, anchor=anchor, class_=f"tick of-{class_}")
-        )
+        drawn.append(text(place, 8.0 + 11.0 * i, name, anchor=anchor, class_=f"tick of-{class_}"))
     return drawn

@@ -194,7 +194,7 @@ def _bench_card(review: Review, shown: tuple[Card, ...]) -> tuple[BenchRow, ...]
                 leakage=leakage,
                 esr=esr,
                 capacitance=capacitance(bench) if bench else words.NOT_KNOWN,
-                lift=(bench.in_leakage if bench else None) or "not studied",
+                lift=f"; {bench.in_leakage}" if bench and bench.in_leakage else "",
             )
         )
     return tuple(rows)

@@ -79,7 +79,7 @@ class _Out:
     def table(self, table: Table, *, groups: Iterable[str] | None = None) -> None:
         """Print a table; `groups` names each row's group, printed above its first row."""
         shown = table.place(WIDE if self.wide else NARROW)
-        grid = Grid(box=SIMPLE_HEAD, padding=(0, 1, 0, 0), pad_edge=False, show_edge=False)
+        grid = Grid(box=SIMPLE_HEAD, padding=0, pad_edge=False, show_edge=False)
         for column in shown.columns:
             grid.add_column(
                 column.title,

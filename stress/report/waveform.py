@@ -13,6 +13,7 @@ _WIDTH, _HEIGHT = 400.0, 250.0
 _LEFT, _RIGHT = 66.0, 388.0
 _MOST_POINTS = 200
 _QUIET = 2e-3  # of the largest value: less is drawn as the straight line that it is
+_NOISE = {"V": 1e-3, "A": 1e-9}  # and so is what no meter shows
 
 
 def waveform(name: str, trace: Trace) -> Markup:
@@ -33,7 +34,7 @@ def _panel(
     time: Scale, trace: Trace, samples: Floats, unit: str, *, top: float, bottom: float, class_: str
 ) -> list[Markup]:
     low, high = float(samples.min()), float(samples.max())
-    least = _QUIET * max(abs(low), abs(high)) or 1e-12
+    least = max(_QUIET * max(abs(low), abs(high)), _NOISE[unit])
     if high - low < least:
         low, high = low - least, high + least
     room = 0.06 * (high - low)

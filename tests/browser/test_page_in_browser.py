@@ -69,9 +69,7 @@ def test_the_map_follows_a_fault_to_its_victim(visit):
     assert (
         page.locator("#go-said")
         .inner_text()
-        .startswith(
-            "C5, coupling, plate of XU1 to grid of XU2: its faults would drive past a limit: XU2."
-        )
+        .startswith("C5, coupling, plate of XU1 to grid of XU2: C5 -> grid of XU2 -> XU2.")
     )
     page.keyboard.press("Space")
     assert page.locator(".map .lit").count() == 0

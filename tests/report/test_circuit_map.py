@@ -7,7 +7,7 @@ from pathlib import Path
 
 import pytest
 
-from stress.circuit.graph import GROUND
+from stress.circuit.joined import GROUND
 from stress.pipeline import load
 from stress.report.circuit_layout import layout
 from stress.report.circuit_map import circuit_map
@@ -36,7 +36,7 @@ def test_the_chain_runs_from_the_leak_through_the_grid_to_the_victim(picture):
     device = next(g for g in attributes(picture, "device") if "C5" in g)
     assert 'data-chain="C5"' in device
     assert picture.svg.count('data-chain="C5"') == 5  # line, net g2, pin, XU2, chip
-    assert picture.said["C5"].endswith("its faults would drive past a limit: XU2.")
+    assert picture.said["C5"].endswith("C5 -> grid of XU2 -> XU2.")
     assert picture.said["C2"].endswith("its faults hit no known limit.")
 
 
