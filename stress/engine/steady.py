@@ -17,7 +17,7 @@ from stress.engine.ngspice import Ngspice, RunFailed
 from stress.engine.plain import CHUNK, MOST_PERIODS, Course, departs, follow, follow_from_rest, told
 from stress.engine.refine import alike
 
-DISTANCE = 3e-5  # accepted distance to the fixed point, in yardsticks
+DISTANCE = 1e-4  # accepted distance to the fixed point, in yardsticks
 PLAIN_PERIODS = 8  # from rest, before the first Jacobian
 MORE_PERIODS = 3  # before each further one
 TURNS, TURN_CYCLES = 8, 12
