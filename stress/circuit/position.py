@@ -108,7 +108,7 @@ def _position(
             )
     if style is None:
         style, source = styles.assumed(
-            value or 0.0,
+            max(value or 0.0, 0.0),  # a negative one is a formula's trick, no part
             role=role.value,
             polar_hint=True if entry.plus is not None else None,
             rated_V=rated,

@@ -19,6 +19,18 @@ def _same_node(s: Surroundings, c: Edge, e: Ends) -> Found:
     return None
 
 
+def _filter(s: Surroundings, c: Edge, e: Ends) -> Found:
+    """Without pin, supply or rectifier nearby: a series or shunt element of a filter."""
+    still = [n for n in (e.a, e.b) if s.still(n)]
+    if not still:
+        return Role.COUPLING, f"coupling, {s.words(e.a)} to {s.words(e.b)}"
+    node = e.a if still[0] == e.b else e.b
+    resistors = [x.name for x in s.graph.around(node) if x.letter == "R"]
+    if len(still) == 1 and resistors:
+        return Role.TONE, f"low-pass with {resistors[0]}, {s.words(node)} to {s.words(still[0])}"
+    return None
+
+
 RULES: tuple[Rule, ...] = (
     _same_node,
     role_line.at_line,
@@ -29,6 +41,7 @@ RULES: tuple[Rule, ...] = (
     role_power.supply,
     role_bypass.bypass,
     role_signal.coupling,
+    _filter,
 )
 
 

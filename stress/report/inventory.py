@@ -108,13 +108,15 @@ def _item(text: str, name: str, width: int, *, indent: int = 2) -> Iterator[str]
 
 
 def _position(p: Position, width: int) -> Iterator[str]:
-    yield from _item(f"{p.role_text}", p.name, width)
+    role = p.role.value
+    text = p.role_text if p.role_text.startswith(role) else f"{role}: {p.role_text}"
+    yield from _item(text, p.name, width)
     value = _amount(p.value_F, "F", missing="value missing")
     rated = _amount(p.rated_V, "V", missing="rating not known")
     plus = "" if p.plus is None or not p.style.polar else f", plus at {p.nodes[p.plus]}"
     source = "" if p.style_source == "sheet" else f" ({p.style_source})"
     can = f", section of {p.can}" if p.can else ""
-    text = f"{p.role.value}: {value}, {rated}, {p.style.name}{source}{plus}{can}"
+    text = f"{value}, {rated}, {p.style.name}{source}{plus}{can}"
     text += f"; nodes {p.nodes[0]} and {p.nodes[1]}"
     yield from wrap(text, width, initial_indent=" " * 8, subsequent_indent=" " * 8)
 
