@@ -49,7 +49,7 @@ def transistors(
             Part(
                 name=e.name,
                 kind=Kind.TRANSISTOR,
-                type=known.name if known else entry.type or e.model,
+                type=known.name if known else entry.type or "",
                 pins=dict(zip(TRANSISTOR_PINS[e.letter], e.nodes, strict=False)),
                 pins_source="netlist",
                 elements=(e.name,),
@@ -188,7 +188,7 @@ def _diode(netlist: Netlist, e: Element, sheet: Sheet, types: Sequence[TypeEntry
         e, Kind.DIODE, entry, limits=(dict(known.limits) if known else {}) | dict(entry.limits)
     )
     pins = dict(zip(("anode", "cathode"), e.nodes, strict=False))
-    return replace(part, pins=pins, type=known.name if known else part.type or e.model)
+    return replace(part, pins=pins, type=known.name if known else part.type)
 
 
 def _two_ends(e: Element, kind: Kind, entry: PartEntry, *, limits: Mapping[str, Limit]) -> Part:

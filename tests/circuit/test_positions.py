@@ -183,3 +183,15 @@ def test_the_sheet_supplies_a_missing_value(netlist):
     assert circuit.position("C8").role is Role.PLATE_BYPASS  # the inventory goes on
     known = read_sheet.read_text('[capacitors.C8]\nvalue = "250 pF"', path="set.toml")
     assert build(n, known).position("C8").value_F == 250e-12
+
+
+def test_a_known_diode_brings_its_limits_and_an_unknown_model_none(circuit):
+    found = circuit(
+        "V1 a 0 24\nD1 a b 1N4007\nC1 b 0 10u\nR1 b 0 1k\nD2 0 b DM\n.model 1N4007 D(IS=1n)"
+    )
+
+    known, unknown = found.part("D1"), found.part("D2")
+    assert known.type == "1N4007"
+    assert known.limits["reverse_V"].value == 1000.0  # JEDEC registration: 1000 V, 1 A
+    assert not known.limits["reverse_V"].assumed
+    assert (unknown.type, dict(unknown.limits)) == ("", {})  # nothing is assumed for a diode
