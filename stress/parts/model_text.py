@@ -21,8 +21,8 @@ Laws, v against the cathode, softplus(x) = ln(1 + e^x):
   oscillates as its sheet says; the oscillation itself is not simulated.
 * Grid: GG (s softplus((vg + VC)/s))^XI, the smooth law of K. Dempwolf and U. Zölzer, "A
   physically-motivated triode model for circuit simulations", DAFx-11, 2011 (law and exponent
-  from memory, to be confirmed), displaced by the contact potential VC, so that a leak of 10 megohm sits at about -0.85 V (common
-  practice: -0.7 to -1 V).
+  from memory, to be confirmed), displaced by the contact potential VC, so that a leak of
+  10 megohm sits at about -0.85 V (common practice: -0.7 to -1 V).
 * Rectifier: Child's law, K v^1.5; mercury vapour: a steady drop with a small resistance.
 * Signal diode: Child's law, smooth as the grid, displaced by its contact potential.
 * Semiconductor and selenium rectifiers: the junction of SPICE (Shockley with series resistance)
