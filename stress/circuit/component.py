@@ -28,6 +28,7 @@ TRANSISTOR_PINS = {
     "Z": ("drain", "gate", "source"),
 }
 WINDING_OHM = 5000.0  # more in series with a winding is a part of its own
+_PARASITIC = re.compile(r"#(rser|lser|rpar|cpar|rlshunt)\Z")
 _END = r"[-_.#]?(?:[ab]|[12]|top|bottom|upper|lower|up|down|hi|lo)?"
 
 
@@ -73,21 +74,20 @@ def others(
     uses = Counter(n for e in netlist.elements for n in set(e.nodes))
     at: dict[str, list[Element]] = {}
     for e in netlist.elements:
-        if e.letter == "R" and e.name.lower() not in inside:
+        if e.letter == "R":
             for node in set(e.nodes):
                 at.setdefault(node, []).append(e)
+    windings = _windings_of_models(netlist, inside)
     in_series = {
         e.name.lower(): _series(e, at, uses)
         for e in netlist.elements
-        if e.letter == "L" and e.name.lower() not in inside
+        if e.letter == "L" and (e.name.lower() not in inside or e.name in windings)
     }
     copper = {r.name.lower() for found in in_series.values() for r in found}
     parts = []
     for e in netlist.elements:
         name = e.name.lower()
-        if e.letter == "L" and name in inside and not _shown(netlist, e):
-            continue
-        if e.letter in "RD" and name in inside:
+        if is_parasitic(name) or (name in inside and e.name not in windings):
             continue
         if e.letter == "R" and name not in copper:
             parts.append(_resistor(e, sheet))
@@ -108,11 +108,23 @@ def _known(
     return known if known and known.family.startswith(solid) else None
 
 
-def _shown(netlist: Netlist, e: Element) -> bool:
-    """Say whether an inductor inside a device is a winding of a transformer model: its ends
-    are pins, so that its current is that of a real winding."""
-    pins = {n for i in netlist.instances if i.name == e.inside for n in i.nodes}
-    return any(node in pins for node in e.nodes)
+def is_parasitic(name: str) -> bool:
+    """Say whether an element only stands for what the card of another one says of it."""
+    return _PARASITIC.search(name) is not None
+
+
+def _windings_of_models(netlist: Netlist, inside: Collection[str]) -> frozenset[str]:
+    """Return the inductors of devices that are transformers: nothing but inductors, couplings
+    and what belongs to them. The currents in those are currents of real windings."""
+    letters: dict[str, set[str]] = {}
+    for e in netlist.elements:
+        if e.name.lower() in inside:
+            letters.setdefault(e.inside, set()).add(e.letter)
+    return frozenset(
+        e.name
+        for e in netlist.elements
+        if e.letter == "L" and e.inside in letters and letters[e.inside] <= set("LKRCV")
+    )
 
 
 def _resistor(e: Element, sheet: Sheet) -> Part:

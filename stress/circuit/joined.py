@@ -43,6 +43,8 @@ def groups(elements: Sequence[Element], *, contacts: Collection[str]) -> dict[st
 def _joins(element: Element) -> bool:
     if len(element.nodes) != 2:
         return False
+    if element.letter == "L":
+        return element.name.lower().endswith("#lser")  # the leads of a capacitor
     if element.letter == "R":
         return element.value is not None and abs(element.value) <= JOINED_OHM
     return element.letter == "V" and element.wave is None and not element.value

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Collection, Sequence
 
 from stress.circuit.circuit import Position, Role
+from stress.circuit.component import is_parasitic
 from stress.circuit.graph import Edge
 from stress.circuit.roles import role_of
 from stress.circuit.surroundings import Surroundings
@@ -34,7 +35,7 @@ def find(
     findings: list[Finding] = []
     for element in s.graph.netlist.elements:
         name = element.name.lower()
-        if element.letter != "C" or name in inside:
+        if element.letter != "C" or name in inside or is_parasitic(name):
             continue
         entry = sheet.capacitors.get(name, CapacitorEntry())
         value = entry.value_F if entry.value_F is not None else element.value
@@ -124,7 +125,7 @@ def _position(
         rated_V=rated,
         ripple_A=entry.ripple_A if entry.ripple_A is not None else tags.ripple_A,
         plus=_plus(s, element, entry, role),
-        esr_ohm=entry.esr_ohm,
+        esr_ohm=entry.esr_ohm if entry.esr_ohm is not None else tags.esr_ohm,
         insulation_ohm=entry.insulation_ohm,
         can=can,
         span=element.span,

@@ -195,3 +195,29 @@ def test_a_known_diode_brings_its_limits_and_an_unknown_model_none(circuit):
     assert known.limits["reverse_V"].value == 1000.0  # JEDEC registration: 1000 V, 1 A
     assert not known.limits["reverse_V"].assumed
     assert (unknown.type, dict(unknown.limits)) == ("", {})  # nothing is assumed for a diode
+
+
+def test_what_a_card_says_beside_its_value_is_no_part_of_its_own(circuit):
+    found = circuit(
+        "Vl a 0 SIN(0 165 60)\nD1 a b DM\nC1 b 0 47u Rser=0.5 Lser=10n Cpar=1n V=450\n"
+        "L1 b c 5 Rser=150 Cpar=20p\nC2 c 0 47u\nR1 c 0 5k"
+    )
+
+    assert [p.name for p in found.positions] == ["C1", "C2"]
+    assert [p.name for p in found.parts] == ["R1", "L1", "D1"]
+    c1 = found.position("C1")
+    assert (c1.role, c1.rated_V, c1.esr_ohm) == (Role.RESERVOIR, 450.0, 0.5)
+    assert found.position("C2").role is Role.SMOOTHING
+    assert found.part("L1").resistance_ohm == 150.0
+
+
+def test_the_windings_of_a_transformer_drawn_as_one_device(circuit):
+    found = circuit(
+        "Vl l n SIN(0 325 50)\nRn n 0 10\nX1 l n a 0 POWER\nD1 a b DM\nC1 b 0 10u\nR1 b 0 10k\n"
+        ".subckt POWER p1 p2 s1 s2\nL1 p1 x 18\nRdc1 x p2 7\nL2 s1 s2 30\nK1 L1 L2 0.999\n.ends"
+    )
+
+    assert [p.name for p in found.parts if p.kind is Kind.WINDING] == ["X1.L1", "X1.L2"]
+    assert found.part("X1.L1").resistance_ohm == 7.0
+    assert found.position("C1").role is Role.RESERVOIR
+    assert "b" not in found.line_connected
