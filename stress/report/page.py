@@ -16,12 +16,16 @@ from stress.finding import Severity
 from stress.report import borne, tables, words
 from stress.report.card import Card, Fact, capacitance, cards
 from stress.report.circuit_map import circuit_map
+from stress.report.discharge_page import after_view
 from stress.report.leak_curve import VERDICTS
 from stress.report.order import Step, order_of_work
+from stress.report.power_page import plan_view
 from stress.report.shopping import shopping_list
 from stress.report.table import PAGE
 from stress.report.words import amount
 from stress.study.conditions import INRUSH
+from stress.study.discharge_result import Discharge
+from stress.study.power_result import PowerUp
 from stress.study.result import Review
 from stress.text.figure import figure
 
@@ -58,17 +62,35 @@ class BenchRow:
     lift: str
 
 
-def write_page(review: Review, path: Path) -> None:
-    """Write the page of a review to a file, UTF-8.
+def write_page(
+    review: Review,
+    path: Path,
+    *,
+    power_up: PowerUp | None = None,
+    discharge: Discharge | None = None,
+) -> None:
+    """Write the page of a review to a file, UTF-8; see `page`.
 
     Raises:
         OSError: Where the file cannot be written.
     """
-    path.write_text(page(review), encoding="utf-8")
+    text = page(review, power_up=power_up, discharge=discharge)
+    path.write_text(text, encoding="utf-8")
 
 
-def page(review: Review) -> str:
-    """Return the page of a review: nothing in it is fetched from anywhere."""
+def page(
+    review: Review,
+    *,
+    power_up: PowerUp | None = None,
+    discharge: Discharge | None = None,
+) -> str:
+    """Return the page of a review: nothing in it is fetched from anywhere.
+
+    Args:
+        review: What was found.
+        power_up: The plan of the first switch-on, where it was made.
+        discharge: What stays charged, where it was followed.
+    """
     environment = Environment(
         loader=FileSystemLoader(_TEMPLATES),
         autoescape=True,
@@ -95,6 +117,8 @@ def page(review: Review) -> str:
         proofs=tables.proofs(review).place(PAGE),
         conditions=_conditions(review),
         severities=words.SEVERITIES,
+        plan=plan_view(power_up) if power_up else None,
+        after=after_view(discharge) if discharge else None,
         bench=_bench_card(review, shown),
         data={
             "verdicts": VERDICTS,
