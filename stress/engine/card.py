@@ -11,6 +11,7 @@ from stress.netlist.expression_text import expression_text
 from stress.netlist.flat import Element, Model, Wave
 
 LEAST_OHM = 1e-3  # ngspice puts the same in place of a resistance of 0
+METER = "#sense"  # ending of the name of a 0 V source in series
 _SENSED = frozenset("VLEH")
 
 
@@ -38,6 +39,10 @@ class Names:
     def device(self, name: str) -> str:
         """Return an element's name in the deck."""
         return self.devices[name.lower()]
+
+    def branch(self, name: str) -> str:
+        """Return the device whose branch carries an element's current: its meter, or itself."""
+        return self.devices.get(name.lower() + METER) or self.devices[name.lower()]
 
 
 def name_all(elements: Iterable[Element], models: Mapping[str, Model]) -> Names:
@@ -100,9 +105,9 @@ def card(element: Element, names: Names, *, value: float | None, wave: Wave | No
         words += [names.device(inductor) for inductor in element.controls]
         words.append(number(value or 0.0))
     elif letter in "FH":
-        words += [names.device(element.controls[0]), number(value or 0.0)]
+        words += [names.branch(element.controls[0]), number(value or 0.0)]
     elif letter == "W":
-        words += [names.device(element.controls[0]), names.models[element.model.lower()]]
+        words += [names.branch(element.controls[0]), names.models[element.model.lower()]]
         words += _flags(element)
     elif letter == "R":
         ohm = LEAST_OHM if value == 0.0 else value
@@ -177,6 +182,6 @@ def _renamed(expression: Expression, names: Names) -> Expression:
         case Voltage(plus, minus):
             return Voltage(names.node(plus), names.node(minus))
         case Current(element):
-            return Current(names.device(element))
+            return Current(names.branch(element))
         case _:
             return rebuilt(expression, [_renamed(part, names) for part in inner(expression)])

@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field, replace
 
 from stress.engine import card
 from stress.engine.case import Twin
 from stress.engine.ease import NODE, eased
-from stress.engine.periodic import has_amplitude, scaled, settled, shifted
+from stress.engine.periodic import has_amplitude, repeats, scaled, settled, shifted
 from stress.engine.topology import gaps
 from stress.engine.tree import reads_time
 from stress.netlist.flat import Element, Wave
@@ -64,6 +64,7 @@ class Deck:
         period_s: None where nothing moves.
         plain: Why the cycle map does not hold for it, or "".
         junctions: Pairs of nodes whose charge a start takes from the node voltages.
+        removed: Elements that are left out, lower case.
         notices: What was changed for the simulation.
     """
 
@@ -75,6 +76,7 @@ class Deck:
     period_s: float | None = field(metadata=unit("s"))
     plain: str
     junctions: tuple[tuple[str, str], ...]
+    removed: frozenset[str]
     notices: tuple[str, ...]
 
     def text(self, node_V: Mapping[str, float], *, options: str) -> list[str]:
@@ -110,9 +112,10 @@ class Draft:
         self, twin: Twin, removed: frozenset[str], *, forever: bool, easy: bool = True
     ) -> None:
         self.twin = twin
+        self._removed = frozenset(name.lower() for name in removed)
         self._forever = forever
         self._notices: list[str] = []
-        kept = _without(twin.elements, frozenset(name.lower() for name in removed))
+        kept = _without(twin.elements, self._removed)
         kept = tuple(element for element in kept if not _is_nothing(element))
         kept = self._metered(eased(kept) if easy else kept)
         found = gaps(kept)
@@ -175,8 +178,9 @@ class Draft:
                 if node.lower() in self.names.nodes
             },
             period_s=self.twin.period_s if moving else None,
-            plain=self._plain(),
+            plain=self._plain(entries.values()),
             junctions=tuple(self._junctions()),
+            removed=self._removed,
             notices=tuple(self._notices),
         )
 
@@ -186,9 +190,9 @@ class Draft:
         result: list[Element] = []
         for element in elements:
             if element.name.lower() in wanted and card.needs_meter(element):
-                inner = f"{element.name}#sense".lower()
+                inner = (element.name + card.METER).lower()
                 meter = Element(
-                    name=element.name + "#sense",
+                    name=element.name + card.METER,
                     letter="V",
                     nodes=(element.nodes[0], inner),
                     value=0.0,
@@ -266,7 +270,7 @@ class Draft:
         rows = [
             Probe(f"v({node})", deck)
             for node, deck in self.names.nodes.items()
-            if deck != "0" and not node.endswith("#sense") and not node.startswith(NODE)
+            if deck != "0" and not node.endswith(card.METER) and not node.startswith(NODE)
         ]
         wanted = {name.lower() for name in self.twin.currents}
         for key, entry in self._entries.items():
@@ -288,13 +292,19 @@ class Draft:
                 pairs += [(nodes[0], node) for node in nodes[1:]]
         return pairs
 
-    def _plain(self) -> str:
-        for entry in self._entries.values():
-            element = entry.element
+    def _plain(self, entries: Iterable[_Entry]) -> str:
+        """Return why a period cannot be started from a state, or where sources disagree."""
+        period_s = self.twin.period_s
+        for entry in entries:
+            element, law = entry.element, entry.element.law
             if element.letter == "T":
                 return f"{element.name} is a transmission line"
-            if element.letter in "CL" and element.law is not None and entry.value is None:
+            if element.letter in "CL" and law is not None and entry.value is None:
                 return f"{element.name} is a behavioural {element.letter}"
+            if law is not None and reads_time(law.expression):
+                return f"{element.name} depends on time"
+            if entry.wave is not None and period_s and not repeats(entry.wave, period_s):
+                return f"{element.name} does not repeat with the common period"
         return ""
 
 

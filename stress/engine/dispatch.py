@@ -3,28 +3,33 @@
 from __future__ import annotations
 
 import heapq
+import signal
 import time
 from collections import deque
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from concurrent.futures import FIRST_COMPLETED, Future, wait
+from concurrent.futures.process import BrokenProcessPool
 from dataclasses import dataclass, replace
+
+from pebble import ProcessExpired
 
 from stress.engine.case import Answer, Case, Unsolved
 from stress.engine.slot import Slot
 from stress.engine.worker import Job, Result, work
 
-TRIES = 2  # a lost worker costs a case one retry
+GIVEN_UP = 2.0  # a case is given up when it has cost this many workers
+FROM_OUTSIDE = 0.25  # what a worker counts that was killed from outside or had not begun
 AHEAD = 2  # jobs handed to a slot, so that it never waits for the next
 LOOK_S = 0.5  # between two looks for workers that hang
 
 
 @dataclass(slots=True, eq=False)
 class Task:
-    """A case of a call, by its place; `tries` counts the workers it has cost."""
+    """A case of a call, by its place; `cost` counts the workers that were lost over it."""
 
     index: int
     case: Case
-    tries: int = 0
+    cost: float = 0.0
 
 
 class Plan:
@@ -124,11 +129,13 @@ class Crew:
                 post.since = time.monotonic()
                 result = _outcome(task, future)
                 if result.poisoned:
+                    task.cost += FROM_OUTSIDE if _from_outside(future) else 1.0
                     yield from self._lost(plan, post, task, result)
                 else:
                     yield task, result
             if post.jobs and time.monotonic() - post.since > self._patience_s:
                 task, _ = post.jobs.popleft()
+                task.cost += 1.0
                 hung = _failure(task, f"no answer within {self._patience_s:g} s")
                 yield from self._lost(plan, post, task, hung)
 
@@ -147,11 +154,18 @@ class Crew:
             plan.again(innocent)
         post.jobs.clear()
         post.slot.replace()
-        task.tries += 1
-        if task.tries < TRIES:
+        if task.cost < GIVEN_UP:
             plan.again(task)
         else:
             yield task, replace(result, poisoned="")
+
+
+def _from_outside(future: Future[Result]) -> bool:
+    """Whether a worker ended by nothing that ngspice does by itself."""
+    error = future.exception()
+    if isinstance(error, ProcessExpired):
+        return bool(error.exitcode == -getattr(signal, "SIGKILL", 9))
+    return isinstance(error, BrokenProcessPool)
 
 
 def _outcome(task: Task, future: Future[Result]) -> Result:

@@ -36,7 +36,7 @@ STEP_LIMIT = 2.0  # of one Newton step, in yardsticks
 GROWS = 3.0  # the distance after a step that is still taken, against the one before
 LEAST_SHARE = 0.02  # of a step that led astray
 SHRINKS = 0.5  # what a confirmed step leaves of a residual, at most
-SILENT = 1e-2  # of the tolerance: a residual so small need not shrink further
+SILENT = 1e-3  # of the tolerance: a residual so small need not shrink further
 PERTURBATION = 1e-3  # in yardsticks
 
 

@@ -22,6 +22,8 @@ class Memory:
         jacobian: Shape (n, n), or None where none is known.
         node_V: By netlist node, at that moment.
         grid: The grid that was found fine enough.
+        removed: Elements that were left out, lower case. A relative that lacks others may
+            have nothing on its supply where this one had a load: its Jacobian is its own.
     """
 
     states: tuple[str, ...]
@@ -29,6 +31,7 @@ class Memory:
     jacobian: Floats | None
     node_V: Mapping[str, float] = field(default_factory=dict)
     grid: Grid = field(default=Grid())
+    removed: frozenset[str] = frozenset()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -8,6 +8,8 @@ from dataclasses import replace
 
 from stress.netlist.flat import Wave
 
+WHOLE = 1e-4  # how near a number of turns in a period is to a whole one
+
 
 def has_amplitude(wave: Wave) -> bool:
     """Whether a wave moves at all."""
@@ -19,6 +21,25 @@ def has_amplitude(wave: Wave) -> bool:
     if wave.kind == "pwl":
         return len(set(values[1::2])) > 1
     return len(values) > 1 and values[0] != values[1]
+
+
+def repeats(wave: Wave, period_s: float) -> bool:
+    """Whether a settled wave is the same after a period."""
+    values = wave.values
+    if not has_amplitude(wave):
+        return True
+    if wave.kind == "sin":
+        rates = [values[2]] if len(values) > 2 else []
+    elif wave.kind == "pulse":
+        rates = [1.0 / values[6]]
+    elif wave.kind == "pwl":
+        rates = [1.0 / (values[-2] - (wave.repeat_from_s or 0.0))]
+    elif wave.kind == "sffm":
+        rates = [values[2], values[4]] if len(values) > 4 else []
+    else:  # am: modulating frequency, carrier frequency
+        rates = list(values[2:4])
+    turns = [rate * period_s for rate in rates]
+    return all(math.isclose(turn, round(turn), abs_tol=WHOLE) for turn in turns)
 
 
 def scaled(wave: Wave, factor: float) -> Wave:

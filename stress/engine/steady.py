@@ -77,7 +77,7 @@ class Search:
         phi = self.map(grid, node_V)
         x, matrix = inherited(self.deck, memory, start_from(self.deck, node_V))
         try:
-            if matrix is not None:
+            if matrix is not None and memory.removed == self.deck.removed:
                 point = self.near(phi, x, matrix, most=WARM_CYCLES)
                 if point.found:
                     return phi, point
@@ -215,6 +215,7 @@ class Search:
             x=end_state(self.ngspice, self.deck),
             jacobian=None,
             node_V=node_V,
+            removed=self.deck.removed,
         )
         answer = Settled(case=self.case, waves=waves, proof=proof, notices=self.deck.notices)
         return self.outcome(answer, memory)
@@ -281,6 +282,7 @@ class Search:
             jacobian=matrix,
             node_V={self.deck.nodes[deck]: value for deck, value in phi.node_V.items()},
             grid=phi.grid,
+            removed=self.deck.removed,
         )
 
     def map(self, grid: Grid, node_V: Mapping[str, float]) -> CycleMap:
