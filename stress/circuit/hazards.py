@@ -153,7 +153,8 @@ def line_classes(s: Surroundings, positions: Sequence[Position], sheet: Sheet) -
     touched."""
     found = []
     hot = s.touch.hot
-    safe = s.touch.touchable | (frozenset() if s.touch.hot_ground else frozenset({GROUND}))
+    grounds = frozenset() if s.touch.hot_ground else frozenset({GROUND})
+    safe = (s.touch.touchable | grounds) - hot
     for p in positions:
         a, b = (s.graph.at(n) for n in p.nodes)
         bridge = bool(hot) and ((a in hot and b in safe) or (b in hot and a in safe))
@@ -189,12 +190,14 @@ def hot_chassis(s: Surroundings, positions: Sequence[Position], sheet: Sheet) ->
     if not s.touch.hot_ground and not touched:
         return []
     what = "ground (B-)" if s.touch.hot_ground else ", ".join(touched)
+    open_to_touch = bool(touched) or GROUND in s.touch.touchable
     return [
         Finding(
-            severity=Severity.WATCH,
+            severity=Severity.TEST if open_to_touch else Severity.WATCH,
             where="equipment",
             text=f"{what} is connected to the line; whatever is joined to it carries line "
-            "voltage, whichever way the plug is in",
+            "voltage, whichever way the plug is in"
+            + (", and it can be touched" if open_to_touch else ""),
             action="work behind an isolation transformer only",
             rule="hot-chassis",
         )

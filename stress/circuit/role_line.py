@@ -28,7 +28,8 @@ def at_line(s: Surroundings, c: Edge, e: Ends) -> Found:
                 return Role.SNUBBER, "across the line switch or choke"
     if touch.secondary:
         return _to_case(s, e)
-    safe = touch.touchable | (frozenset({GROUND}) if not touch.hot_ground else frozenset())
+    grounds = frozenset() if touch.hot_ground else frozenset({GROUND})
+    safe = (touch.touchable | grounds) - touch.hot
     for hot, cold in ((e.a, e.b), (e.b, e.a)):
         if hot not in touch.hot or cold not in safe:
             continue

@@ -145,3 +145,13 @@ def test_pins_that_nobody_knows(circuit):
         ".subckt AMP2 in out\nB1 out 0 V=10*V(in)\n.ends"
     )
     assert ("pins-not-recognised", "X1") in rules(found)
+
+
+def test_a_hot_chassis_that_can_be_touched_is_more_urgent(circuit):
+    found = circuit(RECTIFIED, '[equipment]\ntouchable = ["0"]')
+
+    finding = next(f for f in found.findings if f.rule == "hot-chassis")
+    assert finding.severity is Severity.TEST
+    assert "it can be touched" in finding.text
+    # what only lies between two line-connected nodes needs no class Y
+    assert ("class-y", "C1") not in rules(found)
