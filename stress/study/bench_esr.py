@@ -18,6 +18,7 @@ from math import pi
 
 from stress.circuit.circuit import Circuit, Position, Role
 from stress.study import life
+from stress.study.replacement_mounting import model_elements
 from stress.study.result import PositionStress, Working
 from stress.text.figure import figure
 from stress.text.unit import unit
@@ -124,7 +125,10 @@ def bypassed_ohm(position: Position, *, circuit: Circuit) -> float | None:
     """
     first, second = position.nodes
     across, at_end = [], []
+    inner = model_elements(circuit)
     for element in circuit.netlist.elements:
+        if element.name.lower() in inner:
+            continue
         if element.letter != "R" or not element.value or element.value <= 0.0:
             continue
         nodes = set(element.nodes)

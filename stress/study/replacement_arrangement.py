@@ -84,7 +84,8 @@ def in_series(value_F: float, *, style: Style, volts: VoltageChoice, worst: Wors
             f"balancing: one of them bears {figure(string.share_V, 'V')} of "
             f"{figure(worst.worst_V, 'V')} at worst, by leakage spread and ±5 % resistors, and "
             f"{figure(string.brief_V, 'V')} while charging, by ±20 % of capacitance; the resistors "
-            f"draw {figure(string.bleed_A, 'A')} and discharge the string as well",
+            f"draw {figure(string.bleed_A, 'A')} and discharge the string as well; take resistors "
+            f"that stand {figure(string.share_V, 'V')} each, or two in series",
             "the case of the upper part is not at chassis: sleeve it",
         ),
         rules=(balancing.SPREAD_SOURCE,),

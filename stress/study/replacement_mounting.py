@@ -36,8 +36,9 @@ def _siemens(node: str, *, position: Position, circuit: Circuit) -> float:
     if node == "0" or node in circuit.touchable:
         return 1e9
     total = 0.0
+    own = {position.name.lower(), *model_elements(circuit)}
     for element in circuit.netlist.elements:
-        if node not in element.nodes[:2] or element.name.lower() == position.name.lower():
+        if node not in element.nodes[:2] or element.name.lower() in own:
             continue
         value = element.value
         if element.letter == "V":
@@ -56,6 +57,16 @@ def _siemens(node: str, *, position: Position, circuit: Circuit) -> float:
                 if at == node:
                     total += _PIN_SIEMENS.get(pin.rstrip("23"), 0.0)
     return total
+
+
+def model_elements(circuit: Circuit) -> frozenset[str]:
+    """Return the elements that are the model of an active part, lower case."""
+    return frozenset(
+        name.lower()
+        for part in circuit.parts
+        if part.kind in (Kind.TUBE, Kind.RECTIFIER, Kind.TRANSISTOR)
+        for name in part.elements
+    )
 
 
 def metal_case(position: Position, *, circuit: Circuit, minus: str, volts: float | None) -> str:

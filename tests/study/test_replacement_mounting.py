@@ -38,6 +38,17 @@ def test_outer_foil(circuit_of, lines, pins, expected):
     assert expected in found
 
 
+def test_the_inside_of_a_tube_model_does_not_count(circuit_of):
+    # A grid is of high impedance, whatever its model draws grid current through.
+    lines = ("C1 p g 1e-8", "R1 p b 1e5", "R2 g 0 4.7e5", "Rmodel g m 2000")
+    circuit = circuit_of(*lines)
+    grid = replace(tube(circuit, plate="p", grid="g"), elements=("Rmodel",))
+    found = outer_foil(
+        circuit.position("C1"), circuit=replace(circuit, parts=(grid,)), style="film"
+    )
+    assert "to node p" in found
+
+
 @pytest.mark.parametrize("style", ["mica", "ceramic-1", "aluminium", "line-Y"])
 def test_styles_without_an_outer_foil(circuit_of, style):
     circuit = circuit_of("C1 s 0 1e-7")
