@@ -6,7 +6,6 @@ from hypothesis import strategies as st
 from stress.circuit.build import survey
 from stress.circuit.chain import Chains
 from stress.circuit.circuit import Role
-from stress.circuit.map import layout
 from stress.circuit.skeleton import skeleton
 from stress.netlist.expression import Voltage
 from stress.netlist.flat import Element, Instance, Law, Netlist, Wave
@@ -95,8 +94,6 @@ def test_any_circuit(netlist, stated):
         assert position.role_text
         assert position.plus in (None, 0, 1)
     read_text(skeleton(circuit), path="skeleton.toml")
-    picture = layout(circuit)
-    assert all(0 <= n.x <= 1 and 0 <= n.y <= 1 for n in picture.nodes)
     chains = Chains(circuit)
     for position in circuit.positions[:3]:
         for part in circuit.parts[:5]:
