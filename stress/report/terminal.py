@@ -7,14 +7,13 @@ from collections.abc import Iterable
 from rich.box import SIMPLE_HEAD
 from rich.console import Console
 from rich.table import Table as Grid
-from rich.text import Text
 
 from stress.finding import Severity
 from stress.report import borne, tables, words
+from stress.report.lines import Lines
 from stress.report.order import Step, order_of_work
 from stress.report.table import NARROW, WIDE, Table
 from stress.report.tables import NO_LIMIT, PAST, VERDICT, WITHIN
-from stress.report.words import plain
 from stress.study.conditions import INRUSH
 from stress.study.result import Review
 from stress.text.figure import figure
@@ -37,7 +36,7 @@ def print_review(review: Review, console: Console, *, verbose: bool = False) -> 
         console: Where; its width decides between the narrow and the wide tables.
         verbose: Also the method and how close each condition came to its settled state.
     """
-    out = _Out(console)
+    out = Lines(console)
     _head(review, out)
     steps = order_of_work(review)
     for severity in Severity:
@@ -52,61 +51,37 @@ def print_review(review: Review, console: Console, *, verbose: bool = False) -> 
     _run(review, out)
 
 
-class _Out:
-    """Writes paragraphs: no markup, no emphasis that only colour carries, no control characters."""
-
-    def __init__(self, console: Console) -> None:
-        self.console = console
-        self.wide = console.width >= WIDE_FROM
-
-    def text(self, text: str, *, style: str = "") -> Text:
-        """Return text without control characters, in letters that the channel has."""
-        return Text(words.encodable(plain(text), self.console.encoding), style=style)
-
-    def line(self, text: str = "", *, first: str = "", indent: int = 0, style: str = "") -> None:
-        """Print a paragraph; `first` stands in the indentation of its first line."""
-        room = max(self.console.width - indent, 20)
-        lines = self.text(text, style=style).wrap(self.console, room)
-        for i, line in enumerate(lines or [Text()]):
-            line.rstrip()
-            before = self.text((first if i == 0 else "").ljust(indent))
-            self.console.print(before.append_text(line), highlight=False, no_wrap=True)
-
-    def heading(self, text: str) -> None:
-        self.line()
-        self.line(text, style="bold")
-
-    def table(self, table: Table, *, groups: Iterable[str] | None = None) -> None:
-        """Print a table; `groups` names each row's group, printed above its first row."""
-        shown = table.place(WIDE if self.wide else NARROW)
-        grid = Grid(box=SIMPLE_HEAD, padding=0, pad_edge=False, show_edge=False)
-        for column in shown.columns:
-            grid.add_column(
-                column.title,
-                justify="right" if column.number else "left",
-                overflow="fold",
-                header_style="bold",
-                min_width=_MIN_WIDTHS.get(column.key),
-            )
-        held = None
-        for row, group in zip(shown.rows, groups or [""] * len(shown.rows), strict=True):
-            if group != held:
-                grid.add_section()
-            held = group
-            grid.add_row(*(self.text(cell.text) for cell in row))
-        self.console.print(grid, highlight=False)
+def _table(table: Table, out: Lines, *, groups: Iterable[str] | None = None) -> None:
+    """Print a table; rows of different groups are set apart."""
+    shown = table.place(WIDE if out.console.width >= WIDE_FROM else NARROW)
+    grid = Grid(box=SIMPLE_HEAD, padding=0, pad_edge=False, show_edge=False)
+    for column in shown.columns:
+        grid.add_column(
+            column.title,
+            justify="right" if column.number else "left",
+            overflow="fold",
+            header_style="bold",
+            min_width=_MIN_WIDTHS.get(column.key),
+        )
+    held = None
+    for row, group in zip(shown.rows, groups or [""] * len(shown.rows), strict=True):
+        if group != held:
+            grid.add_section()
+        held = group
+        grid.add_row(*(out.text(cell.text) for cell in row))
+    out.console.print(grid, highlight=False)
 
 
-def _head(review: Review, out: _Out) -> None:
+def _head(review: Review, out: Lines) -> None:
     circuit = review.circuit
     sheet = f"sheet {circuit.sheet.path}" if circuit.sheet.path else "no sheet"
-    out.line(circuit.name, style="bold")
+    out.line(circuit.name, bold=True)
     out.line(f"{circuit.netlist.path}, {sheet}; {len(circuit.positions)} positions")
     if review.cautions:
         out.line("Charged capacitors and live parts kill: the cautions stand at the end.")
 
 
-def _steps(steps: list[Step], severity: Severity, out: _Out) -> None:
+def _steps(steps: list[Step], severity: Severity, out: Lines) -> None:
     if not steps and severity in (Severity.WATCH, Severity.NOTE):
         return
     out.heading(_HEADINGS[severity])
@@ -121,38 +96,38 @@ def _steps(steps: list[Step], severity: Severity, out: _Out) -> None:
         said = step.where
 
 
-def _positions(review: Review, out: _Out) -> None:
+def _positions(review: Review, out: Lines) -> None:
     out.heading("Positions, in the order of work")
     table = tables.positions(review)
     names = [row[1].text for row in table.rows]
     severity = {risk.position: risk.severity.value for risk in review.risks}
-    out.table(table, groups=[severity.get(name, "") for name in names])
+    _table(table, out, groups=[severity.get(name, "") for name in names])
 
 
-def _explanations(review: Review, out: _Out) -> None:
+def _explanations(review: Review, out: Lines) -> None:
     out.heading("Position by position")
     rank = {risk.position: risk.rank for risk in review.risks}
     last = len(rank) + 1
     for position in sorted(review.circuit.positions, key=lambda p: rank.get(p.name, last)):
-        out.line()
+        out.console.print()
         heading = Grid.grid(expand=True, padding=(0, 2, 0, 0), pad_edge=False)
         heading.add_column()
         heading.add_column(justify="right")
         name = f"{position.name:<4} {position.role_text}"
-        heading.add_row(out.text(name, style="bold"), out.text(words.marked(position)))
+        heading.add_row(out.text(name, bold=True), out.text(words.marked(position)))
         out.console.print(heading, highlight=False)
         for paragraph in review.explanations.get(position.name, ("no explanation was written",)):
             out.line(paragraph, indent=5)
 
 
-def _parts(review: Review, out: _Out) -> None:
+def _parts(review: Review, out: Lines) -> None:
     out.heading("Other parts with every capacitor healthy")
     table = tables.parts(review)
     past = tuple(row for row in table.rows if row[VERDICT].text == PAST)
     judged = [row for row in table.rows if row[VERDICT].text in (PAST, WITHIN)]
     lost = [row for row in table.rows if row[VERDICT].text not in (PAST, WITHIN, NO_LIMIT)]
     if past:
-        out.table(Table(table.name, table.columns, past))
+        _table(Table(table.name, table.columns, past), out)
     elif judged:
         out.line("none passes a limit that is known", indent=2)
     if lost:
@@ -167,7 +142,7 @@ def _parts(review: Review, out: _Out) -> None:
         )
 
 
-def _conditions(review: Review, out: _Out, *, verbose: bool) -> None:
+def _conditions(review: Review, out: Lines, *, verbose: bool) -> None:
     out.heading("Conditions")
     answered = {name for held in review.working.positions.values() for name in held} | {INRUSH}
     hang = 3 + max((len(each.name) for each in borne.conditions(review)), default=0)
@@ -183,22 +158,22 @@ def _conditions(review: Review, out: _Out, *, verbose: bool) -> None:
         _method(review, out)
 
 
-def _method(review: Review, out: _Out) -> None:
+def _method(review: Review, out: Lines) -> None:
     out.heading("Method: how each condition was settled, and how far from settled it may be")
-    out.table(tables.proofs(review))
+    _table(tables.proofs(review), out)
 
 
-def _listed(heading: str, items: tuple[str, ...], out: _Out) -> None:
+def _listed(heading: str, items: tuple[str, ...], out: Lines) -> None:
     if items:
         out.heading(heading)
     for item in items:
         out.line(item, first="  -", indent=4)
 
 
-def _run(review: Review, out: _Out) -> None:
+def _run(review: Review, out: Lines) -> None:
     run = review.run
     unsolved = f"{run.unsolved} unsolved" if run.unsolved else "none unsolved"
-    out.line()
+    out.console.print()
     out.line(
         f"{run.cases} cases ({unsolved}), {run.cycles} periods simulated in "
         f"{figure(run.wall_s, 's')}; ngspice {review.versions.ngspice}, "
