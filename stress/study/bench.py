@@ -11,6 +11,7 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 from stress.circuit.circuit import Circuit, Position, Role
+from stress.parts.policy import Policy
 from stress.study.bench_esr import TESTER_HZ, EsrLimit, largest
 from stress.study.result import Bench, Leakage, Working, Worst
 from stress.text.figure import figure
@@ -69,7 +70,7 @@ def bench(
     worst: Worst,
     leakage: Leakage | None,
     circuit: Circuit,
-    policy: object = None,
+    policy: Policy | None = None,
 ) -> Bench:
     """Return the bench limits of a position.
 
@@ -79,12 +80,13 @@ def bench(
         worst: The largest voltage that lasts.
         leakage: What its leakage damages, or None where that was not studied.
         circuit: Temperatures, the tester's voltages, what it bypasses.
-        policy: Taken for the interface of the studies; the limits do not depend on it.
+        policy: Says whether a new part would be loaded so; the limits do not depend on it.
     """
-    del policy  # what is fitted next does not decide whether the old part may stay
     notes: list[str] = []
     volts = test_voltage(position, worst=worst, circuit=circuit, notes=notes)
     leak = leakage_limit(position, test_V=volts, leakage=leakage, circuit=circuit)
+    if policy is not None:
+        notes += _loaded(position, worst=worst, circuit=circuit, policy=policy)
     esr = largest(position, working=working, circuit=circuit)
     low, high, why = window(position, circuit=circuit)
     value = position.value_F
@@ -243,6 +245,22 @@ def window(position: Position, *, circuit: Circuit) -> tuple[float, float, str]:
         if least > low or most < high:
             low, high, why = max(low, least), min(high, most), "the tolerance in the sheet"
     return low, high, why
+
+
+def _loaded(
+    position: Position, *, worst: Worst, circuit: Circuit, policy: Policy
+) -> tuple[str, ...]:
+    """Return that the policy would not load the part so, where it would not."""
+    rated_V = position.rated_V
+    choice = policy.choose(position.style, worst.worst_V, temperature_degC=part_degC(circuit))
+    if rated_V is None or choice is None or worst.worst_V > rated_V:
+        return ()
+    if choice.needed_V <= rated_V * (1 + 1e-9):
+        return ()
+    return (
+        f"good readings leave it {worst.worst_V / rated_V:.0%} loaded: {policy.name} asks for "
+        f"{figure(choice.needed_V, 'V')} here ({choice.reason})",
+    )
 
 
 def _leakage_notes(position: Position, limit: LeakageLimit) -> list[str]:

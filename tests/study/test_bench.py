@@ -7,6 +7,7 @@ import pytest
 from stress.circuit.circuit import Role
 from stress.parts import styles
 from stress.parts.limit import Limit
+from stress.parts.policy import policies
 from stress.parts.sheet import CapacitorEntry, Sheet
 from stress.study import bench as study
 from stress.study.result import (
@@ -240,3 +241,20 @@ def test_the_limit_is_told_for_the_meter_too(circuit_of):
     # The ESR goes with 1/m²: 1.026² at 120 Hz and 1.40² at 100 kHz (Vishay table 4).
     shown = found.esr_max_ohm * (1.026 / 1.40) ** 2
     assert f"on a 100 kHz meter that ESR reads {shown:.3g} Ω" in " ".join(found.notes)
+
+
+def test_a_policy_may_not_like_how_it_is_loaded(circuit_of):
+    # 390 V on 400 V paper: 80 % are common practice, 390/0.8 = 487.5 V.
+    circuit, position = coupling(circuit_of)
+    worst = Worst(position="C5", worst_V=390.0, condition="cold")
+    found = study.bench(
+        position,
+        working=working(),
+        worst=worst,
+        leakage=None,
+        circuit=circuit,
+        policy=policies()["common-practice"],
+    )
+    text = " ".join(found.notes)
+    assert "good readings leave it 98% loaded: common-practice asks for 488 V here" in text
+    assert found.test_V == 390.0
