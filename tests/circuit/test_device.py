@@ -122,3 +122,18 @@ def test_transistors_and_diodes_as_subcircuits(circuit):
     assert dict(found.part("X1").pins) == {"collector": "c", "base": "b", "emitter": "e"}
     assert found.part("X2").kind is Kind.DIODE
     assert dict(found.part("X2").pins) == {"anode": "b", "cathode": "e"}
+
+
+def test_the_sheet_names_the_pins_of_a_model_that_is_missing(netlist):
+    from stress.circuit.build import survey
+    from stress.parts import read_sheet
+
+    n = netlist(FEED + "X1 p g k NOSUCH")
+    sheet = read_sheet.read_text(
+        "[tubes.X1]\npins = { plate = 1, grid = 2, cathode = 3 }", path="set.toml"
+    )
+    found, errors = survey(n, sheet)
+
+    assert errors == ()
+    assert n.obstacles  # it cannot be simulated, but its capacitors can be listed
+    assert found.position("C9").role_text == "cathode bypass, cathode of X1 to ground"

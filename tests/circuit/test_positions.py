@@ -221,3 +221,17 @@ def test_the_windings_of_a_transformer_drawn_as_one_device(circuit):
     assert found.part("X1.L1").resistance_ohm == 7.0
     assert found.position("C1").role is Role.RESERVOIR
     assert "b" not in found.line_connected
+
+
+def test_tags_of_the_netlist(circuit):
+    found = circuit("V1 a 0 24\nR1 a b 10\nC1 b 0 100uF/63V\nC2 b 0 1u V=50 Irms=0.5")
+
+    assert (found.position("C1").value_F, found.position("C1").rated_V) == (1e-4, 63.0)
+    assert (found.position("C2").rated_V, found.position("C2").ripple_A) == (50.0, 0.5)
+
+
+def test_the_sheet_goes_before_the_tags(circuit):
+    text = "V1 a 0 24\nR1 a b 10\nC1 b 0 100uF/63V"
+    p = circuit(text, '[capacitors.C1]\nrated = "50 V"\nvalue = "82 uF"').position("C1")
+
+    assert (p.value_F, p.rated_V) == (82e-6, 50.0)
