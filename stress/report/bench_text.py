@@ -5,38 +5,22 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from rich.console import Console
-from rich.text import Text
 
 from stress.circuit.circuit import Position
 from stress.judge.measured import Moved, Past
 from stress.judge.verdict import Advice, Verdicts
+from stress.report.lines import Lines
 from stress.report.order import order_of_work
-from stress.report.words import amount, encodable, marked, plain, unit_of, victim
+from stress.report.words import amount, marked, unit_of, victim
 from stress.study.result import Bench, Review, Risk, Unanswered
 from stress.text.figure import figure
 
 INDENT = 5
 
 
-class _Out:
-    """Writes wrapped paragraphs without control characters."""
-
-    def __init__(self, console: Console) -> None:
-        self.console = console
-
-    def line(self, text: str = "", *, first: str = "", indent: int = 0, bold: bool = False) -> None:
-        """Print a paragraph; `first` stands in the indentation of its first line."""
-        shown = Text(encodable(plain(text), self.console.encoding), style="bold" if bold else "")
-        room = max(self.console.width - indent, 20)
-        for number, line in enumerate(shown.wrap(self.console, room) or [Text()]):
-            line.rstrip()
-            before = Text((plain(first) if number == 0 else "").ljust(indent))
-            self.console.print(before.append_text(line), highlight=False, no_wrap=True)
-
-
 def print_bench(review: Review, console: Console) -> None:
     """Print the limits of every position in the order of work, with what they rest on."""
-    out = _Out(console)
+    out = Lines(console)
     out.line(f"{review.circuit.name}: bench limits", bold=True)
     sheet = review.circuit.sheet
     out.line(
@@ -55,7 +39,7 @@ def print_bench(review: Review, console: Console) -> None:
         _limits(limits, position, out)
 
 
-def _limits(limits: Bench, position: Position, out: _Out) -> None:
+def _limits(limits: Bench, position: Position, out: Lines) -> None:
     if limits.test_V is not None:
         most = amount(limits.leakage_max_A, "A")
         out.line(
@@ -85,7 +69,7 @@ def _where(verdict: str | None) -> str:
 
 def print_verdicts(found: Verdicts, console: Console) -> None:
     """Print the verdict on every position that was measured, the most serious first."""
-    out = _Out(console)
+    out = Lines(console)
     out.line("Readings", bold=True)
     if not found.verdicts:
         out.line("no position was measured", indent=INDENT)
@@ -123,7 +107,7 @@ def print_measured(
         moved: Voltages that are others as measured.
         unanswered: Conditions that have no number as measured.
     """
-    out = _Out(console)
+    out = Lines(console)
     out.line("The equipment as measured", bold=True)
     _order(drawn.risks, order, out)
     out.line()
@@ -162,13 +146,13 @@ def print_change(before: Review, after: Review, console: Console, *, title: str)
         after: With the parts that were chosen.
         title: What the second one is.
     """
-    out = _Out(console)
+    out = Lines(console)
     out.line(title, bold=True)
     _order(before.risks, after.risks, out)
     _findings(before, after, out)
 
 
-def _order(before: Sequence[Risk], after: Sequence[Risk], out: _Out) -> None:
+def _order(before: Sequence[Risk], after: Sequence[Risk], out: Lines) -> None:
     places = {risk.position: (risk.rank, risk.severity) for risk in before}
     changed = [risk for risk in after if places.get(risk.position) != (risk.rank, risk.severity)]
     if not changed:
@@ -183,7 +167,7 @@ def _order(before: Sequence[Risk], after: Sequence[Risk], out: _Out) -> None:
         )
 
 
-def _findings(before: Review, after: Review, out: _Out) -> None:
+def _findings(before: Review, after: Review, out: Lines) -> None:
     """Print what is new among the steps, and what is gone; a step is known by place and rule."""
     old = {(step.where, step.rule): step for step in order_of_work(before)}
     new = {(step.where, step.rule): step for step in order_of_work(after)}
