@@ -158,7 +158,7 @@ def line_classes(s: Surroundings, positions: Sequence[Position], sheet: Sheet) -
     for p in positions:
         a, b = (s.graph.at(n) for n in p.nodes)
         bridge = bool(hot) and ((a in hot and b in safe) or (b in hot and a in safe))
-        if p.role is Role.LINE_CHASSIS or bridge:
+        if bridge or (hot and p.role is Role.LINE_CHASSIS):
             needed, why = "Y", "between a line-connected node and what can be touched"
         elif p.role is Role.LINE_ACROSS:
             needed, why = "X", "on the line all the time, often behind no fuse"

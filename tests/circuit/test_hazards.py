@@ -155,3 +155,14 @@ def test_a_hot_chassis_that_can_be_touched_is_more_urgent(circuit):
     assert "it can be touched" in finding.text
     # what only lies between two line-connected nodes needs no class Y
     assert ("class-y", "C1") not in rules(found)
+
+
+def test_a_battery_is_no_line(circuit):
+    found = circuit(
+        "Vb a 0 24\nR1 a b 10\nC1 b 0 10u\nC2 0 case 2.2n\nR2 case 0 1meg",
+        '[line]\nsource = "Vb"\nnominal = "24 V"\n[equipment]\ntouchable = ["case"]',
+    )
+
+    assert found.line_connected == frozenset()
+    assert rules(found) == set()
+    assert any("taken for a battery" in text for text in found.assumed)
