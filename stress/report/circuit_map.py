@@ -58,6 +58,7 @@ def circuit_map(review: Review) -> CircuitMap | None:
             height=placed.height,
             title="Circuit map: higher is more positive, the signal goes from left to right",
             class_="map",
+            role="group",
         ),
         said={name: _sentence(review, ways, name, parts) for name, parts in hit.items()},
     )

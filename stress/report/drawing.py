@@ -32,8 +32,14 @@ def _text(value: object) -> Markup:
     return escape(plain(str(value)))
 
 
-def svg(*children: Markup, width: float, height: float, title: str, class_: str) -> Markup:
-    """Return a whole picture; `title` says in words what it shows."""
+def svg(
+    *children: Markup, width: float, height: float, title: str, class_: str, role: str = "img"
+) -> Markup:
+    """Return a whole picture; `title` says in words what it shows.
+
+    Args:
+        role: "group" where parts of it can be operated, which an image would hide.
+    """
     return tag(
         "svg",
         tag("title", title),
@@ -41,7 +47,8 @@ def svg(*children: Markup, width: float, height: float, title: str, class_: str)
         viewBox=f"0 0 {width:g} {height:g}",
         width=width,
         height=height,
-        role="img",
+        role=role,
+        aria_label=title if role == "group" else None,
         class_=f"picture {class_}",
     )
 

@@ -134,7 +134,10 @@ def joined(text: str, action: str) -> str:
 def missing_in(review: Review, condition: str) -> str:
     """Return why a condition has no numbers: "unsolved", "does not settle", "not run" …"""
     for unanswered in review.working.unanswered:
-        if unanswered.case.split(" / ")[0] == condition:
+        # Cases are named after their condition: "high / C5 short", "inrush at 90°, 0.2 s".
+        if unanswered.case == condition or unanswered.case.startswith(
+            (f"{condition} /", f"{condition} at ")
+        ):
             return unanswered.kind
     return "not run"
 
