@@ -8,6 +8,7 @@ from dataclasses import replace
 
 from stress.netlist.flat import Wave
 
+EDGE = 1e-3  # of the period, for a rise or fall that is given as 0
 WHOLE = 1e-4  # how near a number of turns in a period is to a whole one
 
 
@@ -104,13 +105,22 @@ def _pulse(wave: Wave) -> tuple[Wave | float, str]:
     counted = len(wave.values) > 7 and wave.values[7] > 0
     if counted:
         return low, f"its pulses are counted, so it is held at {low:g}"
-    if delay == 0.0:
-        return wave, ""
-    # A start before time 0 lets a pulse that is under way at time 0 be what it is.
+    rise, fall = rise or EDGE * period, fall or EDGE * period
+    width = width or max(period - rise - fall, 0.0)
     start = math.fmod(delay, period)
-    start = start - period if start > 0.0 else start
-    values = (low, high, start, rise, fall, width, period)
-    return replace(wave, values=values), "its delay is folded into the period"
+    plain = replace(wave, values=(low, high, 0.0, rise, fall, width, period))
+    if start == 0.0:
+        return plain, ""
+    change = "its delay is folded into the period"
+    top, down = start + rise, start + rise + width
+    if down + fall <= period:
+        return replace(plain, values=(low, high, start, rise, fall, width, period)), change
+    if top <= period <= down:  # high at time 0: the same as a pulse downwards
+        rest = period - rise - fall - width
+        values = (high, low, down - period, fall, rise, rest, period)
+        return replace(plain, values=values), change
+    corners = [(start, low), (top, high), (down, high), (down + fall, low), (start + period, low)]
+    return _turned(corners), change
 
 
 def _points(wave: Wave) -> tuple[Wave | float, str]:
@@ -120,16 +130,28 @@ def _points(wave: Wave) -> tuple[Wave | float, str]:
         return levels[-1], f"its points do not repeat, so it is held at {levels[-1]:g}"
     if start == 0.0 and times[0] == 0.0:
         return wave, ""
-    period = times[-1] - start
-    offset = math.fmod(start, period)
-    inner = [(t, v) for t, v in zip(times, levels, strict=True) if start < t < times[-1]]
-    moved = sorted((math.fmod(t, period), v) for t, v in inner)
-    at_start = _level(times, levels, start + (period - offset if offset else 0.0))
-    edge = [] if not offset else [(offset, _level(times, levels, times[-1]))]
-    points = sorted(dict([(0.0, at_start), *moved, *edge]).items())
-    points.append((period, at_start))
-    values = tuple(number for point in points for number in point)
-    return Wave("pwl", values, 0.0), "only the part that repeats is taken"
+    corners = [(start, _level(times, levels, start))]
+    corners += [(t, v) for t, v in zip(times, levels, strict=True) if start < t]
+    return _turned(corners), "only the part that repeats is taken"
+
+
+def _turned(corners: Sequence[tuple[float, float]]) -> Wave:
+    """Return the repetition of straight lines over one period, told from time 0 on.
+
+    Args:
+        corners: From the start of a period to its end, times rising.
+    """
+    times, levels = [t for t, _ in corners], [v for _, v in corners]
+    period = times[-1] - times[0]
+    turns = math.ceil(times[0] / period) if times[0] > 0.0 else 0
+    zero = turns * period  # the multiple of the period that lies inside becomes time 0
+    at_zero = _level(times, levels, zero)
+    moved = {math.fmod(t - zero + period, period): v for t, v in corners[1:-1]}
+    edge = math.fmod(times[0] - zero + period, period)
+    moved.setdefault(edge, levels[-1])
+    moved[0.0] = at_zero
+    points = [*sorted(moved.items()), (period, at_zero)]
+    return Wave("pwl", tuple(number for point in points for number in point), 0.0)
 
 
 def _level(times: Sequence[float], levels: Sequence[float], at: float) -> float:

@@ -4,7 +4,7 @@ import math
 
 import pytest
 
-from stress.engine.periodic import has_amplitude, scaled, settled, shifted
+from stress.engine.periodic import has_amplitude, repeats, scaled, settled, shifted
 from stress.netlist.flat import Wave
 
 # kind, values, repeat, what is left: values, or the number it is held at
@@ -13,12 +13,9 @@ SETTLING = [
     ("sin", (1.0, 2.0, 50.0, 0.005), None, (1.0, 2.0, 50.0, 0.0, 0.0, -90.0)),
     ("sin", (1.0, 2.0, 50.0, 0.0, 3.0), None, 1.0),
     ("pulse", (0.0, 5.0, 0.0, 1e-8, 1e-8, 4e-6, 1e-5), None, None),
-    (
-        "pulse",
-        (0.0, 5.0, 3e-6, 1e-8, 1e-8, 4e-6, 1e-5),
-        None,
-        (0, 5, -7e-6, 1e-8, 1e-8, 4e-6, 1e-5),
-    ),
+    # Later by more than a period; under way at time 0, so that it is one downwards.
+    ("pulse", (0, 5, 13.0, 1, 1, 4, 10), None, (0, 5, 3.0, 1, 1, 4, 10)),
+    ("pulse", (0, 5, 6.0, 1, 2, 4, 10), None, (5, 0, 1.0, 2, 1, 3, 10)),
     ("pulse", (0.0, 5.0, 1.0), None, 5.0),
     ("pulse", (0.0, 5.0, 1.0, 0.1, 0.1, 2.0), None, 0.0),
     ("pwl", (0.0, 1.0, 2.0, 7.0), None, 7.0),
@@ -39,6 +36,31 @@ def test_sources_settle(kind, values, repeat, left):
     else:
         assert found.values == pytest.approx(values if left is None else left)
         assert (change == "") == (left in (None, values))
+
+
+def test_an_edge_across_time_zero_becomes_points():
+    """Rising from 9 to 11 s of a period of 10 s: halfway up at time 0."""
+    found, _ = settled(Wave("pulse", (0.0, 4.0, 9.0, 2.0, 1.0, 3.0, 10.0)))
+
+    assert found.kind == "pwl"
+    assert found.values == pytest.approx((0, 2, 1, 4, 4, 4, 5, 0, 9, 0, 10, 2))
+
+
+@pytest.mark.parametrize(
+    ("wave", "period_s", "whole"),
+    [
+        (Wave("sin", (0.0, 1.0, 50.0)), 0.02, True),
+        (Wave("sin", (0.0, 1.0, 71.0)), 0.02, False),
+        (Wave("sin", (0.0, 0.0, 71.0)), 0.02, True),
+        (Wave("pulse", (0, 1, 0, 1e-3, 1e-3, 1e-3, 0.01)), 0.02, True),
+        (Wave("pulse", (0, 1, 0, 1e-3, 1e-3, 1e-3, 0.03)), 0.02, False),
+        (Wave("pwl", (0.0, 0.0, 0.01, 1.0, 0.02, 0.0), 0.0), 0.02, True),
+        (Wave("am", (1.0, 1.0, 50.0, 1000.0)), 0.02, True),
+        (Wave("sffm", (0.0, 1.0, 1000.0, 5.0, 75.0)), 0.02, False),
+    ],
+)
+def test_a_wave_repeats_with_the_common_period_or_not(wave, period_s, whole):
+    assert repeats(wave, period_s) is whole
 
 
 def test_points_that_repeat_later_are_turned_to_time_zero():
