@@ -261,7 +261,19 @@ def _one_leakage(
             f"it passes {figure(amps, 'A')} at {figure(volts, 'V')} already, a small part of its "
             "rating: unfit in a position of high voltage (common practice)",
         )
-    return Point(Advice.WATCH if amps > NEAR * limit else Advice.KEEP, text)
+    if amps > NEAR * limit:
+        return Point(Advice.WATCH, text)
+    if _far_from_new(row, position):
+        return Point(Advice.WATCH, f"{text}; far more than a sound part, and it only grows")
+    return Point(Advice.KEEP, text)
+
+
+def _far_from_new(row: Reading, position: Position) -> bool:
+    """Tell whether less than a hundredth of a new part's insulation is left."""
+    if not row.leakage_A or not row.at_V or not position.value_F:
+        return False
+    new = position.style.insulation_ohm(position.value_F, rated_V=position.rated_V)
+    return row.at_V / row.leakage_A < UNSOUND_SHARE * new
 
 
 def _formed(row: Reading, position: Position, *, text: str, over: bool, warm: float) -> Point:
@@ -279,15 +291,11 @@ def _formed(row: Reading, position: Position, *, text: str, over: bool, warm: fl
 
 def _unsound(row: Reading, position: Position, worst: Worst | None) -> bool:
     """Tell whether a paper part passes direct current at a small part of its rating."""
-    if position.style.name not in PAPER or position.rated_V is None or not position.value_F:
+    if position.style.name not in PAPER or position.rated_V is None:
         return False
-    if worst is None or worst.worst_V < HIGH_V or not row.leakage_A or not row.at_V:
+    if worst is None or worst.worst_V < HIGH_V:
         return False
-    new = position.style.insulation_ohm(position.value_F, rated_V=position.rated_V)
-    return (
-        row.at_V <= SMALL_SHARE * position.rated_V
-        and row.at_V / row.leakage_A < UNSOUND_SHARE * new
-    )
+    return (row.at_V or 0.0) <= SMALL_SHARE * position.rated_V and _far_from_new(row, position)
 
 
 def _above_rating(row: Reading, position: Position) -> SourceError | None:

@@ -103,9 +103,12 @@ def test_paper_that_passes_current_at_a_small_part_of_its_rating_is_unfit():
     assert found.advice is Advice.REPLACE
     assert "unfit in a position of high voltage" in str(found)
     # At a voltage near its rating, or where nothing high stands, the limits alone decide.
-    assert judge("C5,0.02 uF,,1 uA,400 V,,,,,,", limits=lenient).advice is Advice.KEEP
+    full = judge("C5,0.02 uF,,5 uA,400 V,,,,,,", limits=lenient)
+    assert full.advice is Advice.WATCH
+    assert "far more than a sound part" in str(full)
+    assert judge("C5,0.02 uF,,1 nA,400 V,,,,,,", limits=lenient).advice is Advice.KEEP
     low = judge("C5,0.02 uF,,1 uA,30 V,,,,,,", limits=replace(lenient, test_V=30.0), bears=30.0)
-    assert low.advice is Advice.KEEP
+    assert low.advice is Advice.WATCH
 
 
 def test_no_reading_makes_a_low_rating_good():
