@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import replace
+from math import sqrt
 
 from stress.circuit.circuit import Circuit, Position
 from stress.netlist.flat import Element
@@ -62,7 +63,7 @@ def _fitted(position: Position, chosen: Mapping[str, Replacement]) -> Position:
     return replace(
         position,
         value_F=part.value_F,
-        rated_V=part.rated_V,
+        rated_V=_peak_V(part),
         style=styles.styles()[part.style],
         style_source="fitted",
         ripple_A=None,
@@ -70,3 +71,10 @@ def _fitted(position: Position, chosen: Mapping[str, Replacement]) -> Position:
         insulation_ohm=None,
         can="",
     )
+
+
+def _peak_V(part: Replacement) -> float | None:
+    """Return the rating that peaks are judged by; a line part is rated in rms volts."""
+    if part.safety_class is not None and part.rated_V is not None:
+        return part.rated_V * sqrt(2.0)
+    return part.rated_V

@@ -113,6 +113,12 @@ def test_the_fitted_circuit(three):
     assert three.position("C1").value_F == 4e-5  # the circuit as found is as it was
 
 
+def test_a_line_part_is_judged_by_the_crest_of_its_rating(three):
+    chosen = part("C4", value_F=47e-9, rated_V=275.0, style="line-X", safety_class="X")
+    found = fitted(three, {"C4": chosen})
+    assert found.position("C4").rated_V == pytest.approx(388.9, abs=0.1)  # 275 V · √2
+
+
 def test_shopping_list(three):
     chosen = {
         "C1": part("C1", ripple_rms_A=0.16, ripple_Hz=120.0),
