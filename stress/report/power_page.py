@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from stress.report.card import Fact
@@ -19,6 +21,7 @@ class RampRow:
     line: str
     healthy: tuple[str, ...]
     stop: tuple[str, ...]
+    short_stop: tuple[str, ...]
     blind: str
 
 
@@ -94,15 +97,32 @@ def _ramp_row(step: Step, probes: dict[str, Probe]) -> RampRow:
         if band is not None:
             probe = probes[stop.probe]
             healthy.append(f"{probe.text} {figure(band.shown, probe.unit)}")
-    stops = tuple(f"{stop_at(stop, probes[stop.probe])} ({', '.join(stop.tells)})"
-                  for stop in step.aborts)  # fmt: skip
+    at = [(stop_at(stop, probes[stop.probe]), stop.tells) for stop in step.aborts]
+    stops = tuple(f"{when} ({together(tells)})" for when, tells in at)
+    brief = [(when, dict.fromkeys(tell.split(" ")[0] for tell in tells)) for when, tells in at]
+    nothing = ("no reading here tells a fault",)
     return RampRow(
         share=_share(step),
         line=amount(step.ramp.line_V, "V", missing="its own source"),
         healthy=tuple(dict.fromkeys(healthy)),
-        stop=stops or ("no reading here tells a fault",),
-        blind=", ".join(step.cannot_tell),
+        stop=stops or nothing,
+        short_stop=tuple(f"{when} ({', '.join(who)})" for when, who in brief) or nothing,
+        blind=together(step.cannot_tell),
     )
+
+
+def together(faults: Sequence[str]) -> str:
+    """Return faults by position: "C5 leaky, short; C13 leaky"."""
+    found: dict[str, dict[str, None]] = {}
+    for fault in faults:
+        position, _, what = fault.partition(" ")
+        found.setdefault(position, {})[what.partition(" ")[0]] = None
+    return "; ".join(f"{position} {', '.join(kinds)}" for position, kinds in found.items())
+
+
+def _rounded(fault: str) -> str:
+    """Return the name of a fault with three digits: "C5 leaky 3.91 MΩ"."""
+    return re.sub(r"\d+\.\d+", lambda found: f"{float(found.group()):.3g}", fault)
 
 
 def stop_at(stop: Abort, probe: Probe) -> str:
@@ -126,7 +146,7 @@ def lamp_table(lamp: Lamp) -> Table:
 
 
 def _lamp_row(of: LampReading) -> tuple[Cell, ...]:
-    fault = Cell(of.fault or "everything healthy")
+    fault = Cell(_rounded(of.fault) or "everything healthy")
     if of.unanswered is not None:
         return (fault, *[Cell(of.unanswered.kind)] * 4)
     tells = ("brighter" if of.tells else "no") if of.fault else "this is the measure"
@@ -142,14 +162,14 @@ def _lamp_row(of: LampReading) -> tuple[Cell, ...]:
 def tale(of: TellTale, plan: PowerUp) -> str:
     """Return the readings that separate healthy from faulty best."""
     if not of.readings:
-        return f"{of.fault}: {of.text}"
+        return f"{_rounded(of.fault)}: {of.text}"
     probes = {probe.key: probe for probe in plan.probes}
     told = [
         f"{probes[key].text} {figure(healthy, probes[key].unit)} when healthy, "
         f"{figure(faulty, probes[key].unit)} with the fault"
         for key, healthy, faulty in of.readings
     ]
-    return f"{of.fault}, at {of.step}: {'; '.join(told)}"
+    return f"{_rounded(of.fault)}, at {of.step}: {'; '.join(told)}"
 
 
 def switch_on_table(plan: PowerUp) -> Table:

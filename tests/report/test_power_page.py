@@ -55,14 +55,14 @@ PLAN = PowerUp(
     steps=(
         step(0.4, 92.0, blind=("C5 leaky",)),
         step(1.0, 230.0,
-             aborts=(Abort(probe="g DC", above=True, limit=0.9, tells=("C5 leaky", "C5 short")),)),
+             aborts=(Abort(probe="g DC", above=True, limit=0.9, tells=("C5 leaky 3.91234 MΩ", "C5 short")),)),
     ),
     lamp=Lamp(rated_W=60.0, rated_V=230.0,
               healthy=LampReading(fault="", lamp_V=55.0, equipment_V=170.0, current_A=0.15,
                                   glow=0.24),
               faulty=(LampReading(fault="C5 short", lamp_V=0.0, equipment_V=0.0, current_A=0.0,
                                   glow=0.0, unanswered=LOST),)),
-    tell_tales=(TellTale(position="C5", fault="C5 leaky", readings=(("g DC", -0.2, 9.4),),
+    tell_tales=(TellTale(position="C5", fault="C5 leaky 3.91234 MΩ", readings=(("g DC", -0.2, 9.4),),
                          step="100 %"),),
     switch_on=SwitchOn(peaks=(Peak(part="C1", quantity="voltage_V", cold=431.0, hot=None,
                                    phase_deg=90.0),), seconds=0.4),
@@ -103,8 +103,8 @@ def test_the_page_tells_the_plan(text):
     for words in (
         "Method: slow ramp",
         "no lamp: the heaters never get warm",
-        "DC volts grid of XU2 above 900 mV (C5 leaky, C5 short)",
-        "C5 leaky, at 100 %: grid of XU2 -200 mV when healthy, 9.4 V with the fault",
+        "DC volts grid of XU2 above 900 mV (C5 leaky, short)",
+        "C5 leaky 3.91 MΩ, at 100 %: grid of XU2 -200 mV when healthy, 9.4 V with the fault",
         "Through a lamp of 60 W, 230 V",
         "pulses of kilovolts",
         "heater current",
@@ -132,7 +132,7 @@ def test_a_step_that_tells_nothing_says_so():
 def test_the_bench_card_has_the_ramp(text):
     card = text[text.index('class="bench-card"') : text.index('class="cautions"')]
     assert "Ramp: slow ramp" in card
-    assert "DC volts grid of XU2 above 900 mV" in card
+    assert "DC volts grid of XU2 above 900 mV (C5)" in card
     assert card.count('<td class="blank"></td>') == 6 * 3 + 2
 
 
@@ -172,7 +172,7 @@ def test_the_document_holds_both(specimen, tmp_path):
     plan = read["power_up"]
     assert plan["method"]["way"] == "slow ramp"
     assert plan["steps"][1]["aborts"] == [
-        {"probe": "g DC", "above": True, "limit": 0.9, "tells": ["C5 leaky", "C5 short"]}
+        {"probe": "g DC", "above": True, "limit": 0.9, "tells": ["C5 leaky 3.91234 MΩ", "C5 short"]}
     ]
     assert plan["lamp"]["faulty"][0]["current_A"] is None
     first = read["discharge"][0]
