@@ -16,6 +16,7 @@ SPREAD_UA_PER_UF_V = 0.0015
 SPREAD_SOURCE = "leakage spread 0.0015·C·V µA, Cornell Dubilier application guide [memory M]"
 CAPACITANCE_TOLERANCE = 0.20  # of an ordinary electrolytic, code M
 RESISTOR_TOLERANCE = 0.05
+MOST_OHM = 10e6  # across more the dirt of a board leaks as well (common practice)
 POWER_RESERVE = 0.5  # of a resistor's wattage is used (common practice)
 WATTAGES = (0.25, 0.5, 1.0, 2.0, 3.0, 5.0, 10.0)
 
@@ -107,7 +108,7 @@ def series(
         ValueError: Where the parts cannot share the voltage within their rating.
     """
     most = largest_resistor_ohm(each_F, count=count, each_V=each_V, total_V=steady_V)
-    ohm = next_down(most)
+    ohm = next_down(min(most, MOST_OHM))
     while shared_V(each_F, count=count, resistor_ohm=ohm, total_V=steady_V) > each_V:
         # The tolerance of the resistors takes from the reserve that the leakage had.
         ohm = next_down(ohm * 0.99)

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from stress.circuit.circuit import Circuit, Position, Role
+from stress.parts import styles
 from stress.parts.policy import DEFAULT, Policy, Rule, policies
 from stress.parts.series import next_down, standard_value
 from stress.parts.style import Style
@@ -15,13 +16,14 @@ from stress.study.bench import part_degC
 from stress.study.replacement_line import line_part, loss_note
 from stress.study.replacement_notes import mounting_notes, pulse_note, reservoir_limit, ripple_note
 from stress.study.replacement_style import PULSES, StyleChoice, style_for
-from stress.study.replacement_voltage import Need, VoltageChoice, choose, needs, sine_V
+from stress.study.replacement_voltage import FILMS, Need, VoltageChoice, choose, needs, sine_V
 from stress.study.result import PositionStress, Replacement, Working, Worst
 from stress.study.touch import safety_class
 from stress.text.figure import figure
 from stress.text.unit import unit
 
 EXACT = frozenset({Role.TUNING})
+HIGHEST_FILM = "snubber"
 HEAT_SLACK_K = 1.0  # less is within what is known of the ambient
 LEAST_RIPPLE_A = 1e-3  # less needs no ripple rating
 
@@ -75,6 +77,15 @@ def replacement(
     volts, aside = _voltage(
         position, chosen.style, worst=worst, policy=policy, ac_V=ac_V, circuit=circuit
     )
+    if volts.count > 1 and chosen.style.name in FILMS:
+        # Before two in series, the film that is made for the highest voltages.
+        pulse = styles.styles()[HIGHEST_FILM]
+        single, single_aside = _voltage(
+            position, pulse, worst=worst, policy=policy, ac_V=ac_V, circuit=circuit
+        )
+        if single.count < volts.count:
+            chosen = replace(chosen, style=pulse, why=f"{pulse.text} for its voltage")
+            volts, aside = single, single_aside
     ripple = _ripple(lasting, style=chosen.style, rated_V=volts.rated_V, policy=policy)
     limit_F, limit_note = reservoir_limit(position, circuit=circuit)
     value_F, value_why = _value(position, chosen.style, circuit=circuit, most_F=limit_F)

@@ -178,6 +178,24 @@ def test_two_in_series_where_no_single_part_serves(circuit_of):
     assert any("leakage spread" in note for note in found.notes)
 
 
+def test_the_highest_film_comes_before_two_in_series(circuit_of):
+    # 1800 V at 80 % are 2250 V: plain film ends at 2000 V, the pulse type at 2500 V.
+    circuit, position = one(
+        circuit_of, "C1 b 0 1e-8", role=Role.COUPLING, style="paper-oil", rated_V=2000.0
+    )
+    found = fit(circuit, position, worst_V=1800.0)
+    assert (found.style, found.rated_V, found.quantity) == ("snubber", 2500.0, 1)
+
+
+def test_resistors_across_film_stay_sensible(circuit_of):
+    circuit, position = one(
+        circuit_of, "C1 b 0 1e-8", role=Role.COUPLING, style="paper-oil", rated_V=3000.0
+    )
+    found = fit(circuit, position, worst_V=2900.0)
+    assert found.quantity == 2
+    assert found.balance_ohm == 20e6  # 10 MΩ each, whatever the law of leakage would allow
+
+
 def test_ripple_that_one_part_does_not_carry(circuit_of):
     circuit, position = one(
         circuit_of, "C1 b 0 2.2e-4", role=Role.OUTPUT_FILTER, style="aluminium", rated_V=25.0
