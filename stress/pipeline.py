@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import replace
+from functools import partial
 from pathlib import Path
 from time import monotonic
 from typing import TypeAlias
@@ -62,13 +63,15 @@ def load(
         SourceErrors: Everything in netlist and sheet that prevents a simulation.
         OSError: A file that cannot be read.
     """
-    netlist = read_netlist(path, libraries=libraries, dialect=dialect, built_in=subcircuit)
+    own = [entry for file in type_files for entry in types.load(file)]
+    netlist = read_netlist(
+        path, libraries=libraries, dialect=dialect, built_in=partial(subcircuit, extra=own)
+    )
     if netlist.obstacles:
         raise SourceErrors(netlist.obstacles)
     known = read_sheet_of(path, sheet)
     if high_V is not None:
         known = replace(known, line=replace(known.line, high_V=high_V))
-    own = [entry for file in type_files for entry in types.load(file)]
     return build(netlist, known, types=own)
 
 

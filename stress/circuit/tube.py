@@ -80,7 +80,7 @@ def _tube(
             envelope=entry.envelope if entry and entry.envelope else instance.name,
             limits=limits,
             warm_up=known.warm_up if known else "cathode",
-            contact=bool(known and known.contact),
+            contact=bool(known and known.contact and not instance.built_in),
             span=instance.span,
         ),
         [],

@@ -16,7 +16,8 @@ from stress.study.working import Healthy, unanswered
 
 PHASES = 8
 PERIODS = 24  # long enough for the ringing of a usual choke filter
-MOST_PERIODS = 1500
+MOST_PERIODS = 220  # a line supply has passed its peak by then
+MOST_SWITCHED_PERIODS = 1500  # a switched one takes milliseconds of its microseconds
 LATE = 0.9  # a peak in the last tenth of the run has not been passed
 PEAKS = frozenset({Kind.RECTIFIER, Kind.DIODE})
 
@@ -46,7 +47,7 @@ def inrush(circuit: Circuit, *, healthy: Healthy, solver: Solver) -> Healthy:
             elif (why := unanswered(answer, case.name)) is not None:
                 failed.append(why)
         stop *= 3.0
-        phases = again if stop <= MOST_PERIODS * circuit.period_s else []
+        phases = again if stop <= _most_s(circuit) else []
     gone = stock.removed(circuit, cold)
     working = replace(
         healthy.working,
@@ -60,11 +61,16 @@ def inrush(circuit: Circuit, *, healthy: Healthy, solver: Solver) -> Healthy:
 def _first_stop(circuit: Circuit) -> float:
     """Return some periods, or one swing of the slowest filter where that is longer."""
     assert circuit.period_s is not None
+    shortest = PERIODS * circuit.period_s
     farads = [p.value_F for p in circuit.positions if p.value_F]
     henries = [e.value for e in circuit.netlist.elements if e.letter == "L" and e.value]
     swing = 2.0 * pi * sqrt(max(henries, default=0.0) * max(farads, default=0.0))
-    most = MOST_PERIODS * circuit.period_s / 3.0
-    return min(max(PERIODS * circuit.period_s, swing), most)
+    return min(max(shortest, swing), _most_s(circuit) / 3.0)
+
+
+def _most_s(circuit: Circuit) -> float:
+    most = MOST_PERIODS if circuit.line.sources else MOST_SWITCHED_PERIODS
+    return most * (circuit.period_s or 0.0)
 
 
 def _case(
