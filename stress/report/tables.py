@@ -93,7 +93,8 @@ PROOFS = (
     Column("multiplier", "multiplier", number=True),
 )
 VERDICT = next(i for i, column in enumerate(PARTS) if column.key == "verdict")
-WITHIN, PAST, NO_LIMIT = "within", "PAST ITS LIMIT", "no limit known"
+WITHIN, NO_LIMIT = "within", "no limit known"
+PAST, PAST_ASSUMED = "PAST ITS LIMIT", "past an assumed limit"
 
 
 def write_csv(review: Review, folder: Path) -> tuple[Path, ...]:
@@ -233,7 +234,8 @@ def _part(review: Review, of: Part) -> Iterator[tuple[Cell, ...]]:
         elif judged is None:
             verdict = words.missing_in(review, condition)
         else:
-            verdict = PAST if judged > limit.value else WITHIN
+            past = PAST_ASSUMED if limit.assumed else PAST
+            verdict = past if judged > limit.value else WITHIN
         yield (
             Cell(of.name),
             Cell(f"{of.kind.value} {of.type}".rstrip()),

@@ -13,7 +13,7 @@ from stress.report import borne, tables, words
 from stress.report.lines import Lines
 from stress.report.order import Step, order_of_work
 from stress.report.table import NARROW, WIDE, Table
-from stress.report.tables import NO_LIMIT, PAST, VERDICT, WITHIN
+from stress.report.tables import NO_LIMIT, PAST, PAST_ASSUMED, VERDICT, WITHIN
 from stress.study.conditions import INRUSH
 from stress.study.result import Review
 from stress.text.figure import figure
@@ -123,9 +123,11 @@ def _explanations(review: Review, out: Lines) -> None:
 def _parts(review: Review, out: Lines) -> None:
     out.heading("Other parts with every capacitor healthy")
     table = tables.parts(review)
-    past = tuple(row for row in table.rows if row[VERDICT].text == PAST)
-    judged = [row for row in table.rows if row[VERDICT].text in (PAST, WITHIN)]
-    lost = [row for row in table.rows if row[VERDICT].text not in (PAST, WITHIN, NO_LIMIT)]
+    past = tuple(row for row in table.rows if row[VERDICT].text in (PAST, PAST_ASSUMED))
+    judged = [row for row in table.rows if row[VERDICT].text in (PAST, PAST_ASSUMED, WITHIN)]
+    lost = [
+        row for row in table.rows if row[VERDICT].text not in (PAST, PAST_ASSUMED, WITHIN, NO_LIMIT)
+    ]
     if past:
         _table(Table(table.name, table.columns, past), out)
     elif judged:

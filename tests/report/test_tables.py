@@ -9,7 +9,8 @@ import pytest
 from rich.console import Console
 
 from stress.report.document import document
-from stress.report.tables import failures, positions, write_csv
+from stress.report.tables import VERDICT, failures, positions, write_csv
+from stress.report.tables import parts as parts_table
 from stress.report.terminal import print_review
 from stress.text.figure import figure
 
@@ -98,6 +99,19 @@ def test_the_shopping_list(read):
     assert (film["quantity"], film["positions"]) == ("1", "C5")
     assert (float(film["value_F"]), float(film["rated_V"])) == (0.022e-6, 630.0)
     assert film["ripple_rms_A"] == "no demand"
+
+
+def test_an_assumed_limit_is_told_apart(specimen):
+    assumed = replace(specimen.circuit.part("Rk2").limits["power_W"], value=0.5)
+    parts = tuple(
+        replace(part, limits={"power_W": assumed}) if part.name == "Rk2" else part
+        for part in specimen.circuit.parts
+    )
+    review = replace(specimen, circuit=replace(specimen.circuit, parts=parts))
+    verdicts = {(row[0].text, row[2].value): row[VERDICT].text for row in parts_table(review).rows}
+    assert verdicts["Rk2", "power_W"] == "past an assumed limit"
+    assert verdicts["R9", "power_W"] == "PAST ITS LIMIT"
+    assert verdicts["XU2", "plate_W"] == "within"
 
 
 def test_a_failure_names_victim_stress_limit_and_time(specimen):
