@@ -209,7 +209,7 @@ def _rule(policy: Policy, style: Style) -> Rule | None:
 def _volts_why(volts: VoltageChoice) -> str:
     need = volts.governing
     each = " each" if volts.count > 1 else ""
-    return f"{figure(volts.rated_V, 'V')}{each} because {need.why}"
+    return f"{figure(volts.rated_V, 'V')}{each} because {need.why} ({need.rule})"
 
 
 def _value(
