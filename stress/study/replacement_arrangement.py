@@ -58,12 +58,14 @@ def in_series(value_F: float, *, style: Style, volts: VoltageChoice, worst: Wors
     """
     count = volts.count
     each, _ = standard_value(count * value_F, style)
+    # Every one is loaded no more than the policy lets a single part be.
+    share = min(worst.worst_V / volts.governing.volts, 1.0)
     try:
         string = balancing.series(
             each,
             count=count,
             each_F=each,
-            each_V=volts.rated_V,
+            each_V=volts.rated_V * share,
             steady_V=worst.worst_V,
             brief_V=worst.brief_V or 0.0,
         )
