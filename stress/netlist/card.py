@@ -8,6 +8,7 @@ from typing import NamedTuple
 from stress.netlist.source import MOST_COLUMNS, Source
 from stress.text.span import SourceError, Span
 
+LONGEST_MESSAGE = 300  # what quotes a word of a thousand characters is cut
 _BLANK_COMMENT = re.compile(r"\s(?:\$|//)|^\s*//|^\$")
 _JOINED = re.compile(r"\\{1,2}\s*$")
 _PLAIN = re.compile(r"(?:[^{}'\"(]|(?<!-)\()*")  # no braces, quotes, nor "Net-(C1-Pad1)"
@@ -87,6 +88,8 @@ class Card:
             start, end = 0, len(self.text.split(None, 1)[0]) if self.text.strip() else 1
         else:
             start, end = at
+        if len(message) > LONGEST_MESSAGE:
+            message = f"{message[:LONGEST_MESSAGE]}…"
         return SourceError(message, self.span(start, end, within), hint)
 
     @property

@@ -72,7 +72,7 @@ FUNCTIONS: Mapping[str, Callable[..., float]] = {
     "min": min,
     "max": max,
     "pow": _size,
-    "pows": lambda x, y: _sign(x) * _size(x, y),
+    "pows": lambda x, y: _sign(x) * _size(x, y) if x else 0.0,
     "power": _power,
     "step": lambda x: 1.0 if x > 0 else 0.0,
     "ramp": lambda x: max(x, 0.0),

@@ -87,6 +87,9 @@ class Expansion:
             )
         self._bound(definition, outer, span)
         header = self._header(definition, scope)
+        odd = next((word for word in call.words[:at] if word.kind != "word"), None)
+        if odd is not None:
+            raise card.error("a node is expected here", odd, "", scope.within)
         nodes = [scope.node(word.text) for word in call.words[:at]]
         inner = self._scope(card, call, at, header, definition, outer, scope, nodes)
         index = len(self.into.instances)

@@ -271,7 +271,11 @@ class _Reader(Builder):
         bounds = arity(low)
         if bounds is None:
             raise FormulaError(
-                f'unknown function "{token}"', at, end, self.names.similar(low), obstacle=True
+                f'unknown function "{token}"',
+                at,
+                end,
+                self.names.similar(low, functions=True),
+                obstacle=True,
             )
         if not bounds[0] <= len(trees) <= bounds[1] or (
             low in ("table", "tbl", "pwl") and len(trees) % 2 == 0

@@ -56,8 +56,8 @@ class Names(Protocol):
         """Return the full name of an element."""
         ...
 
-    def similar(self, name: str) -> str:
-        """Return a hint with names like this one, or ""."""
+    def similar(self, name: str, *, functions: bool = False) -> str:
+        """Return a hint with parameters or functions of a name like this one, or ""."""
         ...
 
 
@@ -85,9 +85,9 @@ class Formals:
         """The element that an argument names, or one of the scope around."""
         return self.outer.element(self.texts.get(name.lower(), name))
 
-    def similar(self, name: str) -> str:
+    def similar(self, name: str, *, functions: bool = False) -> str:
         """Names of the scope around."""
-        return self.outer.similar(name)
+        return self.outer.similar(name, functions=functions)
 
 
 class Sizes:

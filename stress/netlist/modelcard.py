@@ -110,7 +110,11 @@ def read_model(
         like = fields[at].text.partition(":")[2]
         if not like:
             at += 1
-            like = fields[at].text.lstrip(":") if at < len(fields) else ""
+            if at >= len(fields):
+                raise card.error(
+                    "the model card ends too early", fields[2], "the form is AKO:NAME", scope.within
+                )
+            like = fields[at].text.lstrip(":")
         found = base(scope, like) if like.lower() != name.lower() else None
         if found is None:
             raise Obstacle(

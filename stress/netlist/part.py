@@ -135,12 +135,18 @@ class Part:
             raise self.error(f"{self.name}: the card ends too early", at, f"the form is {form}")
 
     def node(self, field: Field) -> str:
-        """Return the flat node that a word names."""
+        """Return the flat node that a word names.
+
+        Raises:
+            SourceError: It is an expression or a quoted text.
+        """
+        if field.kind != "word":
+            raise self.error("a node is expected here", field)
         return self.scope.node(field.text)
 
     def nodes(self, count: int) -> tuple[str, ...]:
         """Return the flat nodes that the first words name."""
-        return tuple(self.scope.node(field.text) for field in self.words[:count])
+        return tuple(self.node(field) for field in self.words[:count])
 
     def number(self, field: Field | Value, quantity: str = "") -> float:
         """Return the number a field stands for.
@@ -165,7 +171,8 @@ class Part:
         plain = plain_number(text)
         if plain is not None:
             return Number(plain)
-        if not isinstance(field, Field) or field.kind == "word":
+        named = text[:1].isalpha() and self.scope.value(text.lower()) is not None
+        if not named and (not isinstance(field, Field) or field.kind == "word"):
             try:
                 read = read_number(text, quantity=quantity)
             except NumberError as error:

@@ -185,13 +185,14 @@ class Scope:
         """Return the full name of an element, in the spelling of the text."""
         return self.prefix + name.replace(":", ".")
 
-    def similar(self, name: str) -> str:
-        """Return "did you mean" with the parameters and functions that look like this name."""
-        known: set[str] = set(NAMED)
+    def similar(self, name: str, *, functions: bool = False) -> str:
+        """Return "did you mean" with the parameters or functions that look like this name."""
+        known: set[str] = set(NAMED) if functions else set()
         scope: Scope | None = self
         while scope is not None:
-            known.update(scope.values)
-            for block in scope.block.outward():
+            if not functions:
+                known.update(scope.values)
+            for block in scope.block.outward() if functions else ():
                 known.update(block.functions)
             scope = scope.caller
         return did_you_mean(name, known)

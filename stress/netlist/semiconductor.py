@@ -68,7 +68,7 @@ def semiconductor(part: Part, into: Assembly) -> None:
         parameters["m"] = times
     model = into.models[key]
     # The lt dialect puts the substrate into brackets.
-    nodes = tuple(part.scope.node(node.text.strip("[]")) for node in part.words[:at])
+    nodes = tuple(node.strip("[]") or node for node in part.nodes(at))
     if part.letter == "D" and is_ideal(model):
         law = ideal_diode(model, Voltage(*nodes[:2]), parameters)
         into.add(part, "B", nodes[:2], law=Law("I", law))

@@ -6,7 +6,7 @@ import re
 
 from stress.netlist.meaning import FormulaError
 
-_NUMBER = re.compile(r"(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?[\wµμ]*")
+_NUMBER = re.compile(r"(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d+)?[\wµμ]*")
 _NAME = re.compile(r"[^\W\d][\w.$#@§]*|[@$#][\w.]+(?:\[\w+\])?")
 _OPERATOR = re.compile(r"\*\*|==|!=|<>|<=|>=|&&|\|\||[-+*/%<>&|^!~?:,(){}'=]")
 _BLANK = re.compile(r"\s*")

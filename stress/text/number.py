@@ -6,8 +6,10 @@ import re
 from dataclasses import dataclass
 from math import inf, isfinite
 
-_PLAIN = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?")
-_NUMBER = re.compile(r"([+-]?(?:\d+\.?\d*|\.\d+)(?:[eEdD][+-]?\d+)?)([^\W\d_]*|%)(.*)", re.DOTALL)
+_PLAIN = re.compile(r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eE][+-]?\d+)?")
+_NUMBER = re.compile(
+    r"([+-]?(?:\d+(?:\.\d*)?|\.\d+)(?:[eEdD][+-]?\d+)?)([^\W\d_]*|%)(.*)", re.DOTALL
+)
 _COMMA = re.compile(r"([+-]?\d+),(\d+)([^\W\d_]*)")
 # IEC 60062: the letter stands where the point would be ("4k7", "2u2", "4R7", "R47").
 _CODED = re.compile(r"([+-]?\d*)(meg|[a-zA-ZµμΩ])(\d+)([^\W\d_]*)", re.IGNORECASE)
@@ -223,7 +225,9 @@ def _unusual(text: str, quantity: str) -> Reading:
             scale = "meg"  # IEC 60062 has M for mega
         elif letter == "L" and quantity == "R":
             scale = "m"
-        known = scale in SCALES or letter in "rRΩ" or (letter in "vV" and whole != "")
+        known = scale in SCALES or letter in "rRΩvV"
+        if whole in ("", "+", "-"):  # "R47"; any other word that begins with a letter is a name
+            known = letter in "rR" and quantity == "R"
         if known and (not unit or unit.lower() in UNITS):
             digits = f"{whole or '0'}.{part}"
             value = _scaled(digits, scale if scale in SCALES else "")
