@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import replace
 from functools import partial
 from pathlib import Path
@@ -11,26 +11,32 @@ from typing import TypeAlias
 
 from stress.circuit.build import build
 from stress.circuit.chain import Chains
-from stress.circuit.circuit import Circuit
+from stress.circuit.circuit import Circuit, Position
 from stress.engine.pool import Pool
+from stress.engine.solver import Solver
 from stress.judge.cautions import cautions
 from stress.judge.explain import explain
 from stress.judge.findings import Results, findings
+from stress.judge.power_up import power_up
 from stress.judge.risk import risks
 from stress.netlist.read import read as read_netlist
 from stress.parts import read_sheet, types
 from stress.parts.models import subcircuit
-from stress.parts.policy import policies
+from stress.parts.policy import Policy, policies
+from stress.parts.policy import load as load_policy
 from stress.parts.sheet import Sheet
 from stress.study.bench import bench
-from stress.study.conditions import conditions
+from stress.study.bench_in_place import survey
+from stress.study.conditions import HIGH, NOMINAL, case, conditions
+from stress.study.discharge import discharge
 from stress.study.failures import failures
 from stress.study.fault import parse
 from stress.study.inrush import inrush
 from stress.study.leakage import leakage
 from stress.study.replacement import replacement
-from stress.study.result import Review, Run
-from stress.study.working import work
+from stress.study.reservoir import checked
+from stress.study.result import Bench, Leakage, Replacement, Review, Run, Worst
+from stress.study.working import Healthy, work
 from stress.study.worst import worst
 from stress.text.span import SourceErrors
 
@@ -83,6 +89,17 @@ def read_sheet_of(path: str | Path, sheet: str | Path | None = None) -> Sheet:
     return read_sheet.read(beside)
 
 
+def policy_of(name: str) -> Policy:
+    """Return the derating policy of a name, or that in the user's own file.
+
+    Raises:
+        KeyError: There is neither.
+        SourceErrors: The file cannot be used.
+    """
+    known = policies()
+    return load_policy(Path(name)) if name not in known and Path(name).is_file() else known[name]
+
+
 def review(
     path: str | Path,
     *,
@@ -91,6 +108,7 @@ def review(
     only: Sequence[str] = (),
     also: Sequence[str] = (),
     policy: str = USUAL_POLICY,
+    plan: bool = False,
     libraries: Sequence[Path] = (),
     type_files: Sequence[Path] = (),
     dialect: str | None = None,
@@ -102,7 +120,8 @@ def review(
     Args:
         only: Names of the positions whose faults are studied; empty: all.
         also: Known faults that are in every case, such as "C5 leaky 1 Meg".
-        policy: Name of the derating policy.
+        policy: Name of the derating policy, or a file of the same form.
+        plan: Also make the power-up plan and follow the discharge.
         jobs: Worker processes; None: one a core.
         progress: Called with the stage, the cases solved and the cases expected.
 
@@ -120,7 +139,7 @@ def review(
         dialect=dialect,
     )
     return review_circuit(
-        circuit, only=only, also=also, policy=policy, jobs=jobs, progress=progress
+        circuit, only=only, also=also, policy=policy, plan=plan, jobs=jobs, progress=progress
     )
 
 
@@ -130,13 +149,15 @@ def review_circuit(
     only: Sequence[str] = (),
     also: Sequence[str] = (),
     policy: str = USUAL_POLICY,
+    plan: bool = False,
     jobs: int | None = None,
     progress: Progress | None = None,
 ) -> Review:
     """Review a circuit that has been built; see `review`."""
     started = monotonic()
-    rules = policies()[policy]
+    rules = policy_of(policy)
     studied = tuple(circuit.position(name) for name in only) or circuit.positions
+    faults = tuple(parse(text, circuit) for text in also)
     stage = "working stress"
     expected = len(conditions(circuit)) + (2 * POINTS + 8) * len(studied)
 
@@ -145,69 +166,52 @@ def review_circuit(
             progress(stage, done, max(known, expected))
 
     with Pool(jobs=jobs, progress=tell) as pool:
-        healthy = work(circuit, solver=pool, also=tuple(parse(text, circuit) for text in also))
+        healthy = work(circuit, solver=pool, also=faults)
         stage = "switch-on"
         healthy = inrush(circuit, healthy=healthy, solver=pool)
         stage = "leakage"
         leaks = leakage(circuit, studied, healthy=healthy, solver=pool)
         stage = "failures"
         failed = failures(circuit, studied, healthy=healthy, leakage=leaks, solver=pool)
-        versions, totals = pool.versions(), pool.totals
-    working, chains = healthy.working, Chains(circuit)
-    worsts = worst(circuit, working=working)
-    order = risks(circuit, worst=worsts, leakage=leaks, failures=failed)
-    fitted = {
-        p.name: replacement(p, working=working, worst=worsts[p.name], policy=rules, circuit=circuit)
-        for p in circuit.positions
-        if p.name in worsts and p.value_F
-    }
-    limits = {
-        p.name: bench(
-            p,
-            working=working,
-            worst=worsts[p.name],
-            leakage=leaks.get(p.name),
-            circuit=circuit,
-            policy=rules,
-        )
-        for p in circuit.positions
-        if p.name in worsts and p.value_F
-    }
-    return Review(
-        circuit=circuit,
-        working=working,
-        worst=worsts,
-        leakage=leaks,
-        failures=failed,
-        replacements=fitted,
-        bench=limits,
-        risks=order,
-        findings=findings(
-            Results(
-                circuit=circuit,
-                working=working,
-                worst=worsts,
+        worsts = worst(circuit, working=healthy.working)
+        order = risks(circuit, worst=worsts, leakage=leaks, failures=failed)
+        stage = "what to fit, what may be read"
+        fit = _replacements(circuit, healthy, worsts, rules, pool)
+        limits = _bench(circuit, healthy, worsts, leaks, rules, pool)
+        power, after = None, None
+        if plan:
+            stage = "power-up plan"
+            power = power_up(
+                circuit,
+                healthy=healthy,
                 leakage=leaks,
                 failures=failed,
                 risks=order,
+                solver=pool,
             )
-        ),
-        explanations={
-            p.name: explain(
-                p,
-                circuit=circuit,
-                chains=chains,
-                working=working,
-                worst=worsts.get(p.name),
-                leakage=leaks.get(p.name),
-                failures=failed.get(p.name, ()),
-                replacement=fitted.get(p.name),
-                bench=limits.get(p.name),
-                risk=next(risk for risk in order if risk.position == p.name),
-            )
-            for p in circuit.positions
-        },
-        cautions=cautions(circuit, working=working),
+            stage = "discharge"
+            after = discharge(circuit, healthy=healthy, solver=pool)
+        versions, totals = pool.versions(), pool.totals
+    results = Results(
+        circuit=circuit,
+        working=healthy.working,
+        worst=worsts,
+        leakage=leaks,
+        failures=failed,
+        risks=order,
+    )
+    return Review(
+        circuit=circuit,
+        working=healthy.working,
+        worst=worsts,
+        leakage=leaks,
+        failures=failed,
+        replacements=fit,
+        bench=limits,
+        risks=order,
+        findings=findings(results),
+        explanations=_explanations(results, fit, limits),
+        cautions=cautions(circuit, working=healthy.working),
         run=Run(
             cases=totals.cases,
             unsolved=totals.unsolved,
@@ -216,4 +220,78 @@ def review_circuit(
         ),
         versions=versions,
         policy=policy,
+        power_up=power,
+        discharge=after,
     )
+
+
+def _judged(circuit: Circuit, worsts: Mapping[str, Worst]) -> list[Position]:
+    """Return the positions that have a value and a lasting voltage."""
+    return [p for p in circuit.positions if p.name in worsts and p.value_F]
+
+
+def _replacements(
+    circuit: Circuit,
+    healthy: Healthy,
+    worsts: Mapping[str, Worst],
+    policy: Policy,
+    solver: Solver,
+) -> Mapping[str, Replacement]:
+    """Choose what to fit; reservoirs are tried in place at the highest line that settled."""
+    chosen = {
+        p.name: replacement(
+            p, working=healthy.working, worst=worsts[p.name], policy=policy, circuit=circuit
+        )
+        for p in _judged(circuit, worsts)
+    }
+    for name in (HIGH, NOMINAL):
+        for condition in healthy.working.conditions:
+            if condition.name == name and name in healthy.settled:
+                base = case(circuit, condition, twin=healthy.twin)
+                return checked(chosen, circuit=circuit, base=base, solver=solver)
+    return chosen
+
+
+def _bench(
+    circuit: Circuit,
+    healthy: Healthy,
+    worsts: Mapping[str, Worst],
+    leaks: Mapping[str, Leakage],
+    policy: Policy,
+    solver: Solver,
+) -> Mapping[str, Bench]:
+    """Set the bench limits, and say which test means something with the part in place."""
+    limits = {
+        p.name: bench(
+            p,
+            working=healthy.working,
+            worst=worsts[p.name],
+            leakage=leaks.get(p.name),
+            circuit=circuit,
+            policy=policy,
+        )
+        for p in _judged(circuit, worsts)
+    }
+    return survey(limits, circuit=circuit, twin=healthy.twin, solver=solver)
+
+
+def _explanations(
+    results: Results, fit: Mapping[str, Replacement], limits: Mapping[str, Bench]
+) -> Mapping[str, tuple[str, ...]]:
+    chains = Chains(results.circuit)
+    ranked = {risk.position: risk for risk in results.risks}
+    return {
+        p.name: explain(
+            p,
+            circuit=results.circuit,
+            chains=chains,
+            working=results.working,
+            worst=results.worst.get(p.name),
+            leakage=results.leakage.get(p.name),
+            failures=results.failures.get(p.name, ()),
+            replacement=fit.get(p.name),
+            bench=limits.get(p.name),
+            risk=ranked[p.name],
+        )
+        for p in results.circuit.positions
+    }

@@ -34,7 +34,16 @@ if TYPE_CHECKING:
     metavar="'C5 leaky 1 Meg'",
     help="A known fault that is in every case; can be given again.",
 )
-@click.option("--policy", default="common-practice", show_default=True, help="Derating policy.")
+@click.option(
+    "--policy",
+    default="common-practice",
+    show_default=True,
+    help="Derating policy, or a TOML file of your own.",
+)
+@click.option("--plan/--no-plan", default=False, help="Power-up plan and discharge as well.")
+@click.option(
+    "--fitted", is_flag=True, help="Run it again with the chosen parts; show before and after."
+)
 @click.option("--json", "json_file", type=click.Path(path_type=Path), help="Write all numbers.")
 @click.option("--html", "html_file", type=click.Path(path_type=Path), help="Write a page.")
 @click.option("--csv", "csv_folder", type=click.Path(path_type=Path), help="Write tables here.")
@@ -50,6 +59,8 @@ def review(
     only: str,
     also: tuple[str, ...],
     policy: str,
+    plan: bool,
+    fitted: bool,
     json_file: Path | None,
     html_file: Path | None,
     csv_folder: Path | None,
@@ -64,9 +75,13 @@ def review(
     from rich.console import Console
 
     from stress import pipeline
+    from stress.report.discharge_text import print_discharge
     from stress.report.document import write_json
+    from stress.report.fitted_text import print_fitted
+    from stress.report.power_text import print_power_up
     from stress.report.progress import progress
     from stress.report.terminal import print_review
+    from stress.study.fitted import fitted as chosen_parts
 
     with plain_errors():
         circuit = given.load()
@@ -75,19 +90,40 @@ def review(
         _known_faults(also, circuit)
         with progress() as report:
             found = pipeline.review_circuit(
-                circuit, only=names, also=also, policy=policy, jobs=jobs, progress=report
+                circuit,
+                only=names,
+                also=also,
+                policy=policy,
+                plan=plan,
+                jobs=jobs,
+                progress=report,
             )
         if json_file is not None:
-            write_json(found, json_file)
+            write_json(found, json_file, power_up=found.power_up, discharge=found.discharge)
         if html_file is not None:
             from stress.report.page import write_page
 
-            write_page(found, html_file)
+            write_page(found, html_file, power_up=found.power_up, discharge=found.discharge)
         if csv_folder is not None:
             from stress.report.tables import write_csv
 
             write_csv(found, csv_folder)
-        print_review(found, Console(), verbose=verbose)
+        console = Console()
+        print_review(found, console, verbose=verbose)
+        if found.power_up is not None:
+            print_power_up(found.power_up, circuit, console)
+        if found.discharge is not None:
+            print_discharge(found.discharge, circuit, console)
+        if fitted:
+            with progress() as report:
+                after = pipeline.review_circuit(
+                    chosen_parts(circuit, found.replacements),
+                    only=names,
+                    policy=policy,
+                    jobs=jobs,
+                    progress=report,
+                )
+            print_fitted(found, after, console)
     if found.run.unsolved:
         sys.exit(UNSOLVED)
     if fail_on is not None:
@@ -98,9 +134,13 @@ def review(
 
 def _known_policy(policy: str) -> None:
     from stress.parts.policy import policies
+    from stress.pipeline import policy_of
 
-    if policy not in policies():
-        click.echo(f"no policy {policy!r}; there are {', '.join(policies())}", err=True)
+    try:
+        policy_of(policy)
+    except KeyError:
+        known = ", ".join(policies())
+        click.echo(f"no policy and no file {policy!r}; there are {known}", err=True)
         sys.exit(UNUSABLE)
 
 

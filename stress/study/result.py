@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from stress.circuit.circuit import Circuit
 from stress.engine.case import Floats, Proof
@@ -15,6 +16,10 @@ from stress.engine.solver import Versions
 from stress.finding import Finding, Severity
 from stress.netlist.flat import NOTHING
 from stress.parts.limit import Limit
+
+if TYPE_CHECKING:
+    from stress.study.discharge_result import Discharge
+    from stress.study.power_result import PowerUp
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -273,6 +278,8 @@ class Review:
     Attributes:
         explanations: Position name to the paragraphs of its explanation.
         cautions: What can hurt the reader, by what the circuit is.
+        power_up, discharge: The plan of the first switch-on and what stays charged; None where
+            they were not asked for.
     """
 
     circuit: Circuit
@@ -289,3 +296,5 @@ class Review:
     run: Run
     versions: Versions
     policy: str = ""
+    power_up: PowerUp | None = None
+    discharge: Discharge | None = None
