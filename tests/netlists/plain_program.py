@@ -48,7 +48,7 @@ RUNS = {
     "shore_receiver": Run(1 / 60, 9.0, 700),
     "harbour_midget": Run(1 / 60, 4.0, 1000),
     "hall_amplifier": Run(1 / 50, 14.0, 500),
-    "beacon_transmitter": Run(1 / 50, 10.0, 500),
+    "beacon_transmitter": Run(1 / 50, 8.0, 1200),
     "charthouse_smps": Run(20e-6, 100e-3, 600),
 }
 

@@ -128,13 +128,16 @@ def test_an_unloaded_amplifier_with_feedback_is_unstable(run):
 
 @pytest.mark.ngspice
 def test_series_capacitors_share_by_their_resistors(run):
-    """With 47 kohm each a leak of 470 kohm in one moves the middle by a twenty-first."""
+    """With 47 kohm each a leak of 470 kohm in one moves the middle by a twenty-first.
+
+    What electrolytics leak when new adds less than 1 %.
+    """
     sound, leaky = run("beacon_transmitter"), run("beacon_transmitter", C2_leak=470e3)
 
     assert mean(sound, "mid") / mean(sound, "b1") == pytest.approx(0.5, rel=1e-3)
     low = 1 / (1 / 47e3 + 1 / 470e3)
     share = mean(leaky, "mid") / mean(leaky, "b1")
-    assert share == pytest.approx(low / (low + 47e3), rel=2e-3)
+    assert share == pytest.approx(low / (low + 47e3), rel=1e-2)
 
 
 @pytest.mark.ngspice

@@ -19,17 +19,17 @@ class Row:
 
 
 ROWS = [
-    Row("shore_receiver", 18, 1 / 60, ("6SA7", "6SK7", "6SQ7", "6V6GT", "5Y3GT")),
+    Row("shore_receiver", 19, 1 / 60, ("6SA7", "6SK7", "6SQ7", "6V6GT", "5Y3GT")),
     Row("harbour_midget", 15, 1 / 60, ("12SA7", "12SK7", "12SQ7", "50L6GT", "35Z5GT")),
     Row(
         "hall_amplifier",
-        20,
+        22,
         1 / 50,
         ("12AX7", "12AX7", "12AU7", "12AU7", "EL34", "EL34", "5AR4"),
     ),
     Row(
         "beacon_transmitter",
-        17,
+        20,
         1 / 50,
         ("866A", "866A", "5R4GY", "6X4", "6SN7GT", "807", "807"),
     ),

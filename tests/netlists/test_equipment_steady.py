@@ -22,6 +22,7 @@ class Row:
 
     stem: str
     dc: float = 1e-3
+    peak: float = 3e-3
     ripple: float = 1e-2
 
 
@@ -29,15 +30,15 @@ ROWS = [
     Row("shore_receiver"),
     Row("harbour_midget"),
     Row("hall_amplifier"),
-    Row("beacon_transmitter"),
-    # Edges of a quarter microsecond: the program's steps of 33 ns leave 2 % in what rings.
-    Row("charthouse_smps", ripple=2e-2),
+    Row("beacon_transmitter", peak=1e-2),  # mercury strikes within a step
+    # Edges of a quarter microsecond: the program's steps of 33 ns leave 1 to 2 % in what rings.
+    Row("charthouse_smps", peak=1e-2, ripple=2e-2),
 ]
 
 
-# The ceramic beside the electrolytic of the power unit carries what rings in between: its
-# current is a matter of the milliohms in both, and of the step.
-LOOSE = {("charthouse_smps", "C2"): 0.1}
+# What rings after an edge: the film part beside the input electrolytic of the power unit, whose
+# current is a matter of the milliohms in both, and the snubber of its rectifier.
+LOOSE = {("charthouse_smps", "C2"): 0.1, ("charthouse_smps", "C9"): 0.06}
 
 
 @pytest.mark.ngspice
@@ -59,7 +60,7 @@ def test_steady_state_equals_a_long_transient(row, ideal_equipment, solve):
         # mean of an alternating voltage is nothing beside its peak.
         peak = oracle["peak_V"]
         assert dc == pytest.approx(oracle["dc_V"], abs=row.dc * max(peak, 1.0)), position.name
-        assert np.abs(volts).max() == pytest.approx(peak, rel=3 * row.dc, abs=row.dc), position.name
+        assert np.abs(volts).max() == pytest.approx(peak, rel=row.peak, abs=row.dc), position.name
         assert waves.rms(volts - dc) == pytest.approx(
             oracle["ripple_V"], rel=ripple, abs=ripple * 1e-3
         ), position.name
