@@ -12,7 +12,6 @@ from stress.report.words import NOT_KNOWN, amount, marked, plain
 from stress.study.result import LeakageIn, Review
 from stress.text.figure import figure
 
-
 TITLE = "With the chosen parts in place"
 
 
