@@ -125,7 +125,7 @@ def _capacitance(part: Part, word: Field, tags: Tags) -> tuple[Expression | None
     except NumberError:
         if isinstance(part.scope.value(text.lower()), float | str):
             return part.quantity(word), tags
-        marking = read_marking(text)
+        marking = None if is_placeholder(text) else read_marking(text)
         if marking is not None:
             return Number(marking.value_F or 0.0), _marked(part, word, marking.notice, tags, text)
         formula = any(mark in text for mark in "*/()")

@@ -11,13 +11,13 @@ LONGEST = 120  # characters of a value field
 _PLACEHOLDER = re.compile(
     r"(?:c|cp|cap|c_small|cp_small|c_polarized|c_polarised|c_polarized_small|cp1|cp1_small|"
     r"c_feedthrough|c_variable|c_trim|c_us|cpol|elko|electrolytic|capacitor|capacitor_\w*|dnp|"
-    r"dnf|dni|nc|np|nm|tbd|n/a|na|val|value|\?+|~|-|x+|c_disc_?\w*|c_\d{4}_?\w*|cp_radial\w*|"
+    r"dnf|dni|nc|np|nm|tbd|n/a|na|val|value|\?+|~|-|x+|c_disc_?\w*|c_(?:01005|0201|0402|0603|0805|1206|1210|1808|1812|2220|2225)(?:_\w*)?|cp_radial\w*|"
     r"cp_axial\w*|cp_elec\w*|[a-z_]*capacitors?_\w*:\S*)",
     re.IGNORECASE,
 )
 _LEAD = re.compile(r"^(?:cp?|cap)_(?=[\d.])", re.IGNORECASE)
 _VALUE = re.compile(
-    r"(?P<value>\d*[.,]?\d+(?:[eE][+-]?\d+)?\s*(?:[pnuµμmk]?[fF](?:arads?)?|mfd|uuf|mmf|[pnuµμ](?:\d+)?f?|R\d+)?)",
+    r"(?P<value>\d*[.,]?\d+(?:[eE][+-]?\d+)?\s*(?:[pnuµμmk]?[fF](?:arads?)?|mfd|uuf|mmf|[pnuµμ]f?|R\d+)?)",
     re.IGNORECASE,
 )
 _VOLTS = re.compile(

@@ -86,11 +86,8 @@ UNITS = frozenset(
         "dbv",
         "db",
         "cycles",
-        "x",
-        "j",
     ]
 )
-_BASE = ("f", "h", "v", "a", "ohm", "ohms", "Ω", "ω", "hz", "s", "sec", "w")
 SUFFIX_HINT = "suffixes are f p n u m k meg g t, then a unit if you like (10u, 10uF, 4.7k, 1Meg)"
 
 
@@ -229,6 +226,8 @@ def _unusual(text: str, quantity: str) -> Reading:
         if whole in ("", "+", "-"):  # "R47"; any other word that begins with a letter is a name
             known = letter in "rR" and quantity == "R"
         if known and (not unit or unit.lower() in UNITS):
+            if quantity == "C" and unit[:1] in "vV" and unit:
+                raise NumberError(f'"{text}" is not one number', 0, len(text), SUFFIX_HINT)
             digits = f"{whole or '0'}.{part}"
             value = _scaled(digits, scale if scale in SCALES else "")
             meaning = f'"{text}" is read by IEC 60062 as {digits}{scale if scale != "v" else ""}'
