@@ -125,6 +125,11 @@ class Draft:
         self._cards = {key: self._card(entry) for key, entry in self._entries.items()}
         self._tail = self._closing()
 
+    @property
+    def elements(self) -> tuple[Element, ...]:
+        """The elements that are left, as they stand in the deck."""
+        return tuple(entry.element for entry in self._entries.values())
+
     def deck(
         self,
         values: Mapping[str, float],

@@ -24,6 +24,7 @@ class Memory:
         grid: The grid that was found fine enough.
         removed: Elements that were left out, lower case. A relative that lacks others may
             have nothing on its supply where this one had a load: its Jacobian is its own.
+        quieted: Elements taken away so that a stage does not oscillate; relatives do the same.
     """
 
     states: tuple[str, ...]
@@ -32,6 +33,7 @@ class Memory:
     node_V: Mapping[str, float] = field(default_factory=dict)
     grid: Grid = field(default=Grid())
     removed: frozenset[str] = frozenset()
+    quieted: frozenset[str] = frozenset()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

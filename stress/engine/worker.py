@@ -22,17 +22,20 @@ from stress.engine.case import (
     Answer,
     Ran,
     Response,
+    Settled,
     SmallSignal,
     Steady,
     Transient,
     Twin,
     Unsolved,
+    Wandering,
     Waves,
 )
 from stress.engine.cycle import CAREFUL, Grid
 from stress.engine.deck import Deck, Draft
 from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
 from stress.engine.ngspice import Broken, DeckRefused, Ngspice, RunFailed
+from stress.engine.oscillation import Tank, oscillates, tanks
 from stress.engine.solver import Versions
 from stress.engine.steady import Search
 from stress.engine.topology import LoopOfSources
@@ -49,6 +52,7 @@ class Job:
         case: Its name.
         twin: File with the pickled twin.
         memory: What its parent left, or None.
+        quieted: Elements taken away so that a stage does not oscillate.
     """
 
     case: str
@@ -57,6 +61,7 @@ class Job:
     removed: frozenset[str]
     analysis: Analysis
     memory: Memory | None
+    quieted: frozenset[str] = frozenset()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -91,10 +96,12 @@ class _Process:
         return self._ngspice
 
     def draft(self, job: Job, *, forever: bool, easy: bool = True) -> Draft:
-        key = (job.twin, job.removed, forever, easy)
+        quieted = frozenset() if job.memory is None else job.memory.quieted
+        removed = job.removed | quieted | job.quieted
+        key = (job.twin, removed, forever, easy)
         draft = self._drafts.get(key)
         if draft is None:
-            draft = Draft(self._twin(job.twin), job.removed, forever=forever, easy=easy)
+            draft = Draft(self._twin(job.twin), removed, forever=forever, easy=easy)
             self._drafts[key] = draft
             if len(self._drafts) > KEPT_DRAFTS:
                 self._drafts.popitem(last=False)
@@ -171,6 +178,41 @@ def _solved(job: Job) -> Outcome:
 
 
 def _steady(job: Job) -> Outcome:
+    """Settle, and quiet what oscillates by itself where there is no relative to tell."""
+    outcome = _settled(job)
+    if job.memory is not None or outcome.memory is None or job.quieted:
+        return outcome
+    found = _oscillating(job, outcome.memory)
+    if not found:
+        return outcome
+    quieted = frozenset(name.lower() for tank in found for name in tank.couplings)
+    again = _settled(replace(job, quieted=quieted)) if quieted else outcome
+    answer, memory = again.answer, again.memory
+    if isinstance(answer, Settled | Wandering):
+        told = tuple(tank.told for tank in found)
+        answer = replace(answer, notices=(*answer.notices, *told))
+    if memory is not None:
+        memory = replace(memory, quieted=quieted)
+    cycles = outcome.cycles + (again.cycles if quieted else 0)
+    return replace(again, answer=answer, memory=memory, cycles=cycles)
+
+
+def _oscillating(job: Job, memory: Memory) -> tuple[Tank, ...]:
+    """Return the tanks of a settled circuit that a push makes oscillate."""
+    draft = _PROCESS.draft(job, forever=True)
+    deck = draft.deck(job.values)
+    if deck.plain:
+        return ()
+    above_Hz = memory.grid.points / 8.0 / deck.period_s if deck.period_s else 0.0
+    node_V = translated(deck, memory)
+    return tuple(
+        tank
+        for tank in tanks(draft.elements, above_Hz=above_Hz)
+        if oscillates(_PROCESS.ngspice, deck, tank, x=memory.x, node_V=node_V)
+    )
+
+
+def _settled(job: Job) -> Outcome:
     """Settle; after a numerical failure once more from rest with more careful settings."""
     deck = _PROCESS.draft(job, forever=True).deck(job.values)
     search = Search(_PROCESS.ngspice, deck, case=job.case)

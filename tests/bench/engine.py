@@ -1,0 +1,304 @@
+"""The engine's numbers: one run, one table, printed and kept beside this file.
+
+    python tests/bench/engine.py [--quick]
+
+Times are ratios taken in this one run on this machine; a machine that is busy with other
+things makes all of them worse alike.
+"""
+
+import platform
+import resource
+import shutil
+import subprocess
+import sys
+import tempfile
+from concurrent.futures import ThreadPoolExecutor
+from dataclasses import dataclass
+from pathlib import Path
+from statistics import median
+from time import monotonic, process_time
+
+import numpy as np
+import psutil
+
+sys.path.insert(0, str(Path(__file__).parent))
+from plainly import averaged_plainly, ngspice, settled_plainly
+from record import MIDGET, RECEIVER, Log, leaks, reviewed
+
+from stress.engine.case import Case, Twin
+from stress.engine.cycle import Grid
+from stress.engine.deck import Draft
+from stress.engine.pool import Pool
+from stress.engine.steady import Search
+from stress.netlist.read import read
+
+RESULTS = Path(__file__).with_name("RESULTS.md")
+
+
+@dataclass(frozen=True)
+class Line:
+    """One line of the table."""
+
+    what: str
+    target: str
+    found: str
+    met: bool
+
+
+def cycles(log: Log, name: str) -> Line:
+    counts = [answer.proof.cycles for _, answer in leaks(log)]
+    middle, high = float(np.median(counts)), float(np.percentile(counts, 95))
+    return Line(
+        f"cycles per warm-started leak case, {name} ({len(counts)} cases)",
+        "median ≤ 4, 95 % ≤ 12",
+        f"{middle:g}, {high:.0f}",
+        middle <= 4 and high <= 12,
+    )
+
+
+def condition(log: Log, name: str) -> Case:
+    """The case of a healthy condition, as if it had no relative."""
+    case = next(case for case, _ in log.asked if case.name == name)
+    return Case(name=f"{name} from rest", twin=case.twin, values=case.values, removed=case.removed)
+
+
+def from_rest(log: Log, name: str) -> Line:
+    counts = []
+    for which in ("nominal", "high"):
+        case = condition(log, which)
+        deck = Draft(case.twin, case.removed, forever=True).deck(case.values)
+        search = Search(ngspice(), deck, case=case.name)
+        search.from_rest(Grid())
+        counts.append(search.cycles)
+    return Line(f"cycles from rest, loaded, {name}", "≤ 25", str(counts), max(counts) <= 25)
+
+
+def against_plain(log: Log, name: str, *, target: float, samples: int) -> Line:
+    """Ratio of plain transients from rest to what the review's cases took in ngspice."""
+    cases = [case for case, _ in log.steady if "pulled" not in case.name]
+    chosen = cases[:: max(len(cases) // samples, 1)][:samples]
+    grid = log.steady[0][1].proof.points
+    times, periods = [], []
+    for case in chosen:
+        spent, count = settled_plainly(
+            case, grid=Grid(points=round(grid / 10) * 10), within=2e-4, most=3000
+        )
+        times.append(spent)
+        periods.append(count)
+    per_case = log.totals.inside_s / log.totals.cases
+    ratio = float(np.mean(times)) / per_case
+    return Line(
+        f"plain transients from rest against the review's cases, {name}"
+        f" ({len(chosen)} sampled, {median(periods):.0f} periods in the median)",
+        f"≥ {target:g}",
+        f"{ratio:.0f}",
+        ratio >= target,
+    )
+
+
+def against_program(log: Log, periods: int) -> Line:
+    """Ratio of one default run of the program a case to the review, two at a time."""
+    case = condition(log, "nominal")
+    deck = Draft(case.twin, case.removed, forever=True, easy=False).deck(case.values)
+    period_s = deck.period_s or 1.0
+    lines = deck.text({}, options="reltol=1e-3")
+    lines.insert(-1, f".tran {period_s / 170!r} {periods * period_s!r} 0 {period_s / 170!r} uic")
+    with tempfile.TemporaryDirectory() as folder:
+        (Path(folder) / "case.cir").write_text("\n".join(lines), encoding="ascii")
+        program = shutil.which("ngspice") or "ngspice"
+        began = monotonic()
+        subprocess.run(
+            [program, "-b", "-r", "out.raw", "case.cir"],
+            cwd=folder,
+            capture_output=True,
+            check=False,
+        )
+        one = monotonic() - began
+    ratio = one * log.totals.cases / 2 / log.wall_s
+    return Line(
+        f"one default run of the program a case ({periods} periods, {one:.1f} s), two at a time, "
+        "against the review on 2 workers",
+        "≥ 100",
+        f"{ratio:.0f}",
+        ratio >= 100,
+    )
+
+
+def wave_of(log: Log) -> list[Case]:
+    """A wave of leak cases with their roots."""
+    roots = {case.name: case for case, _ in log.asked}
+    found = [case for case, _ in leaks(log) if case.parent in ("nominal", "high")][:40]
+    first = next(case for case, _ in log.asked)
+    return [first, *(roots[name] for name in ("nominal", "high")), *found]
+
+
+def timed(cases: list[Case], jobs: int) -> float:
+    with Pool(jobs=jobs) as pool:
+        list(pool.solve(cases[:3]))
+        began = monotonic()
+        list(pool.solve(cases[3:]))
+        return monotonic() - began
+
+
+def two_workers(log: Log) -> Line:
+    cases, ratios = wave_of(log), []
+    for _ in range(5):
+        half = len(cases[3:]) // 2
+        parts = [cases[:3] + cases[3 : 3 + half], cases[:3] + cases[3 + half :]]
+        with ThreadPoolExecutor(2) as threads:
+            alone = max(threads.map(lambda part: timed(part, 1), parts))
+        ratios.append(alone / timed(cases, 2))
+    found = median(ratios)
+    return Line(
+        "2 workers against two single workers at once, median of 5",
+        "≥ 0.85",
+        f"{found:.2f}",
+        found >= 0.85,
+    )
+
+
+def outside(log: Log, name: str) -> Line:
+    share = 1.0 - log.totals.inside_s / log.wall_s
+    return Line(
+        f"time not spent inside ngspice, {name}, 1 worker", "≤ 25 %", f"{share:.0%}", share <= 0.25
+    )
+
+
+def stages(count: int) -> Twin:
+    """Return resistance-coupled triode stages, two capacitors each, on one rectifier."""
+    cards = ["* t", "Vac a 0 SIN(0 300 50)", "Rs a b 50", "D1 b bp DM", "C0 bp 0 47u"]
+    cards.append(".model DM D(IS=1n N=1.8)")
+    for n in range(count // 2):
+        cards += [
+            f"Rp{n} bp p{n} 100k",
+            f"B{n} p{n} k{n} I=1m*pow(max(V(g{n},k{n})+V(p{n},k{n})/50,0),1.5)",
+            f"Rk{n} k{n} 0 1.5k",
+            f"Ck{n} k{n} 0 10u",
+            f"Cc{n} p{n} g{n + 1} 10n",
+            f"Rg{n} g{n} 0 470k",
+        ]
+    cards += [f"Rg{count // 2} g{count // 2} 0 470k", ".end"]
+    with tempfile.TemporaryDirectory() as folder:
+        path = Path(folder) / "stages.cir"
+        path.write_text("\n".join(cards), encoding="ascii")
+        netlist = read(path)
+    return Twin(elements=netlist.elements, models=netlist.models, period_s=0.02)
+
+
+def growth() -> Line:
+    sizes, times = (10, 20, 40, 80), []
+    for size in sizes:
+        twin = stages(size)
+        cases = [Case(name="root", twin=twin)]
+        cases += [
+            Case(name=f"{n}", twin=twin, parent="root", values={f"Rg{n % (size // 2)}": 3e5})
+            for n in range(24)
+        ]
+        with Pool(jobs=1) as pool:
+            list(pool.solve(cases[:1]))
+            before = pool.totals.inside_s
+            began = process_time(), monotonic()
+            list(pool.solve(cases[1:]))
+            del before
+            times.append((monotonic() - began[1]) / 24)
+    exponent = float(np.polyfit(np.log(sizes), np.log(times), 1)[0])
+    return Line(
+        "time per case against the number of capacitors, 10 to 80: exponent",
+        "≤ 1.2",
+        f"{exponent:.2f} ({', '.join(f'{1e3 * t:.0f} ms' for t in times)})",
+        exponent <= 1.2,
+    )
+
+
+def accuracy(log: Log, name: str, *, periods: int) -> Line:
+    case = condition(log, "nominal")
+    own = next(a for c, a in log.steady if c.name == "nominal")
+    fine = averaged_plainly(case, points=4 * Grid().points, periods=periods)
+    direct = ripple = 0.0
+    for position in case.twin.currents:
+        element = next(e for e in case.twin.elements if e.name == position)
+        if element.letter != "C":
+            continue
+        row = f"i({position.lower()})"
+        if fine[row][1] > 1e-4:
+            current = own.waves.current(position)
+            ripple = max(ripple, abs(own.waves.rms(current) / fine[row][1] - 1.0))
+        for node in element.nodes:
+            if abs(fine.get(f"v({node})", (0.0, 0.0))[0]) > 1.0:
+                mean = own.waves.mean(own.waves.voltage(node))
+                direct = max(direct, abs(mean / fine[f"v({node})"][0] - 1.0))
+    return Line(
+        f"accuracy against a plain transient of {periods} periods, 4 times finer, {name}: "
+        "direct, rms current",
+        "0.02 %, 0.5 %",
+        f"{100 * direct:.3f} %, {100 * ripple:.2f} %",
+        direct <= 2e-4 and ripple <= 5e-3,
+    )
+
+
+def memory(count: int) -> Line:
+    twin = stages(10)
+    with Pool(jobs=1) as pool:
+        list(pool.solve([Case(name="root", twin=twin)]))
+        worker = max(psutil.Process().children(), key=lambda p: p.memory_info().rss)
+        sizes = []
+        for start in range(0, count, count // 5):
+            list(
+                pool.solve(
+                    Case(name=f"{n}", twin=twin, parent="root", values={"Rg1": 3e5 + n % 7})
+                    for n in range(start, start + count // 5)
+                )
+            )
+            sizes.append(worker.memory_info().rss)
+    grown = (sizes[-1] - sizes[0]) / 4 * 5 / count * 10_000 / 1e6
+    peak = resource.getrusage(resource.RUSAGE_CHILDREN).ru_maxrss / 1e3
+    return Line(
+        f"memory of a worker: peak, growth over 10,000 cases ({count} run)",
+        "≤ 200 MB, ≤ 2 MB",
+        f"{peak:.0f} MB, {grown:.1f} MB",
+        peak <= 200 and grown <= 2,
+    )
+
+
+def main() -> None:
+    quick = "--quick" in sys.argv
+    lines: list[Line] = []
+
+    def add(line: Line) -> None:
+        lines.append(line)
+        print(
+            f"{'met ' if line.met else 'NOT '} {line.what}: {line.found} ({line.target})",
+            flush=True,
+        )
+
+    receiver, midget = reviewed(RECEIVER, jobs=1), reviewed(MIDGET, jobs=1)
+    for log, name in ((receiver, "receiver"), (midget, "midget")):
+        add(cycles(log, name))
+        add(from_rest(log, name))
+        add(outside(log, name))
+    samples = 2 if quick else 8
+    add(against_plain(receiver, "receiver", target=60, samples=samples))
+    add(against_plain(midget, "midget", target=6, samples=2 * samples))
+    add(against_program(reviewed(RECEIVER, jobs=2), 600))
+    add(two_workers(receiver))
+    add(growth())
+    add(accuracy(receiver, "receiver", periods=700))
+    add(accuracy(midget, "midget", periods=200))
+    add(memory(1000 if quick else 10_000))
+    table = [
+        "# Numbers of the engine",
+        "",
+        f"`python tests/bench/engine.py`, ngspice {ngspice().version}, Python "
+        f"{platform.python_version()}, {psutil.cpu_count()} cores. "
+        f"Reviews on 1 worker: receiver {receiver.totals.cases} cases in {receiver.wall_s:.0f} s, "
+        f"midget {midget.totals.cases} in {midget.wall_s:.0f} s.",
+        "",
+        "| what | target | found | met |",
+        "| --- | --- | --- | --- |",
+        *(f"| {x.what} | {x.target} | {x.found} | {'yes' if x.met else 'no'} |" for x in lines),
+    ]
+    RESULTS.write_text("\n".join(table) + "\n", encoding="utf-8")
+
+
+if __name__ == "__main__":
+    main()

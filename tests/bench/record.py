@@ -1,0 +1,60 @@
+"""A review whose cases, answers and totals are kept, for the timings."""
+
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass, field
+from pathlib import Path
+from time import monotonic
+
+import stress.pipeline as pipeline
+from stress.engine.case import Answer, Case, Settled, Steady
+from stress.engine.pool import Pool, Totals
+
+NETLISTS = Path(__file__).parents[2] / "netlists"
+RECEIVER, MIDGET = NETLISTS / "shore_receiver.cir", NETLISTS / "harbour_midget.cir"
+
+
+@dataclass
+class Log:
+    """What a review asked and got, and what it cost."""
+
+    asked: list[tuple[Case, Answer]] = field(default_factory=list)
+    totals: Totals = field(default_factory=Totals)
+    wall_s: float = 0.0
+    solving_s: float = 0.0
+
+    @property
+    def steady(self) -> list[tuple[Case, Settled]]:
+        """Settled states, with their cases."""
+        return [(c, a) for c, a in self.asked if isinstance(a, Settled)]
+
+
+def reviewed(path: Path, *, jobs: int) -> Log:
+    """Review an equipment and return what its engine did."""
+    log = Log()
+
+    class Recording(Pool):
+        def solve(self, cases: Iterable[Case]) -> Iterator[Answer]:
+            asked, began = tuple(cases), monotonic()
+            for case, answer in zip(asked, super().solve(asked), strict=True):
+                log.asked.append((case, answer))
+                yield answer
+            log.solving_s += monotonic() - began
+            log.totals = self.totals
+
+    usual, pipeline.Pool = pipeline.Pool, Recording
+    began = monotonic()
+    try:
+        pipeline.review(path, jobs=jobs)
+    finally:
+        pipeline.Pool = usual
+    log.wall_s = monotonic() - began
+    return log
+
+
+def leaks(log: Log) -> list[tuple[Case, Settled]]:
+    """The leak cases that started from a solved relative."""
+    return [
+        (case, answer)
+        for case, answer in log.steady
+        if case.parent is not None and "leaky" in case.name and isinstance(case.analysis, Steady)
+    ]
