@@ -47,7 +47,9 @@ def address(review, tmp_path_factory):
 
 @pytest.fixture(scope="session")
 def chromium():
-    program = os.environ.get("CHROMIUM") or shutil.which("chromium")
+    program = (
+        os.environ.get("CHROMIUM") or shutil.which("chromium") or shutil.which("chromium-browser")
+    )
     assert program, "the browser tests need Chromium: apt-get install chromium"
     with sync_playwright() as playwright:
         browser = playwright.chromium.launch(executable_path=program, args=FLAGS)
