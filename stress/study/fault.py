@@ -91,7 +91,7 @@ def parse(text: str, circuit: Circuit) -> Fault:
     if kind != "leaky":
         return Fault(position=position.name, kind=kind)
     try:
-        value = quantity(ohm if "ohm" in ohm.lower() or "Ω" in ohm else f"{ohm} ohm", "ohm")
+        value = quantity(ohm if "ohm" in ohm.lower() or "Ω" in ohm else f"{ohm.strip()}ohm", "ohm")
     except QuantityError as problem:
         raise ValueError(str(problem)) from problem
     if value <= 0.0:
