@@ -101,7 +101,7 @@ def test_a_paper_coupling_capacitor_whose_leak_burns_goes_before_power():
         ("paper", 4e6, Severity.REPLACE),
         ("paper", 5e4, Severity.TEST),  # a leak that needs 50 kΩ is nearly a short
         ("film", 4e6, Severity.TEST),  # film seldom leaks, and a look costs nothing
-        ("mica", 4e6, Severity.WATCH),  # mica hardly ever does
+        ("ceramic-1", 4e6, Severity.WATCH),  # a class 1 ceramic hardly ever does
     ],
 )
 def test_what_a_leak_asks_for_depends_on_style_and_size(style, critical, severity):
@@ -178,8 +178,8 @@ def test_further_past_the_limit_weighs_more_but_not_without_end():
 
 
 def test_the_sheet_weighs_styles_otherwise():
-    doubtful = Sheet(likelihood={"mica": 100.0})
-    of = circuit(position("C1", "mica"), sheet=doubtful)
+    doubtful = Sheet(likelihood={"ceramic-1": 100.0})
+    of = circuit(position("C1", "ceramic-1"), sheet=doubtful)
 
     found = order(of, leakage={"C1": leak("C1", critical=4e6)})
 
