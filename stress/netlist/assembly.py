@@ -122,6 +122,8 @@ class Assembly:
             )
             raise part.obstacle(f'the model "{word.text}" is missing', word, mend)
         key = self._key(name, *found)
+        if key and part.letter == "M" and found[1].name_of() != name:
+            key = self._binned(part, name, found[0]) or key
         if not key:
             return ""
         kind = self.models[key].kind
@@ -146,7 +148,7 @@ class Assembly:
         holder: Scope | None = scope
         while holder is not None:
             for block in holder.block.outward():
-                entry = block.models.get(name)
+                entry = block.models.get(name) or block.models.get(f"{name}.1")
                 if entry is not None:
                     owner = holder
                     while owner.block is not block and owner.caller is not None:
@@ -154,6 +156,26 @@ class Assembly:
                     return owner, entry
             holder = holder.caller
         return None
+
+    def _binned(self, part: Part, name: str, scope: Scope) -> str:
+        """Return the model of a family ("nch.1", "nch.2" …) that is for this length and width."""
+        sizes = {side: part.number(part.given[side]) for side in ("l", "w") if side in part.given}
+        for block in scope.block.outward():
+            for key, entry in block.models.items():
+                if key.rpartition(".")[0] != name:
+                    continue
+                made = self._key(key, scope, entry)
+                held = self.models[made].parameters if made else {}
+                limits = [
+                    (held.get(f"{side}min", 0.0), size, held.get(f"{side}max", 1e9))
+                    for side, size in sizes.items()
+                ]
+                if made and all(
+                    isinstance(low, float) and isinstance(high, float) and low <= size <= high
+                    for low, size, high in limits
+                ):
+                    return made
+        return ""
 
     def _elsewhere(self, part: Part, word: Field) -> tuple[Scope, Entry] | None:
         """Look into the other subcircuits of the same files: old libraries share models so."""

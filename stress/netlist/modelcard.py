@@ -141,6 +141,23 @@ def read_model(
     return Model(name=name.lower(), kind=kind, parameters=numbers, span=card.whole(scope.within))
 
 
+def _without_mark(fields: list[Field], at: int) -> bool:
+    """Whether `name value` stands here, without the `=`: ngspice takes it for a blank."""
+    if at + 1 >= len(fields) or fields[at].kind != "word" or fields[at + 1].kind == "mark":
+        return False
+    key, value = fields[at].text, fields[at + 1].text
+    if not key[0].isalpha() or key.lower().startswith(("dev", "lot")) or value.endswith("%"):
+        return False
+    behind = fields[at + 2] if at + 2 < len(fields) else None
+    if behind is not None and behind.text == "=" and behind.kind == "mark":
+        return False
+    try:
+        read_number(value)
+    except NumberError:
+        return False
+    return True
+
+
 def _parameter(
     card: Card,
     scope: Scope,
@@ -151,6 +168,10 @@ def _parameter(
 ) -> int:
     """Read `name=value`, or a bare word as a flag; returns the index behind it."""
     key = fields[at]
+    if _without_mark(fields, at):
+        equals = Field("mark", "=", key.end, key.end)
+        _parameter(card, scope, [key, equals, fields[at + 1]], 0, numbers, kind)
+        return at + 2
     if at + 2 >= len(fields) or fields[at + 1].text != "=" or fields[at + 1].kind != "mark":
         if key.kind == "mark" or plain_number(key.text) is not None:
             return at + 1  # a stray value, such as the spread behind DEV

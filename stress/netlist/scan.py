@@ -41,6 +41,11 @@ class Entry:
     word: str  # lower case with its dot for a control card, else ""
     definition: Definition | None = None
 
+    def name_of(self) -> str:
+        """Return the lower-case second word of its line, which names a model."""
+        words = self.source.lines[self.index].split(None, 2)
+        return words[1].lower() if len(words) > 1 else ""
+
     def card(self, *, dollar: bool) -> Card:
         """Return the card; SourceError where it is too long."""
         return gather(self.source, self.index, dollar=dollar)

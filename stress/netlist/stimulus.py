@@ -158,11 +158,15 @@ class _Source:
         fields: list[Field] = []
         repeat: float | None = None
         relative: list[bool] = []
+        depth = 0
         while self.at < len(self.fields):
             field = self.fields[self.at]
             low = field.text.lower()
             if field.kind == "mark":
                 self.at += 1
+                depth += {"(": 1, ")": -1}.get(field.text, 0)
+                if depth == 0 and field.text == ")" and numbers and not self._goes_on():
+                    break
             elif (kind == "pwl" and low in ("file", "wavefile", "chan")) or field.kind == "string":
                 raise self._file(field)
             elif kind == "pwl" and low in ("r", "td") and self._followed_by_equals():
@@ -202,6 +206,13 @@ class _Source:
             )
             numbers = numbers[: MOST[kind]]
         self.wave = Wave(kind, tuple(self._filled(kind, numbers)), repeat)
+
+    def _goes_on(self) -> bool:
+        """Whether more of the wave stands behind its parenthesis: `r=0`, `repeat`, `(3 4)`."""
+        if self.at >= len(self.fields):
+            return False
+        text = self.fields[self.at].text.lower()
+        return text == "(" or text in ("r", "td", "repeat", "endrepeat", "forever", "for")
 
     def _points(
         self, numbers: list[float], relative: list[bool], fields: list[Field], word: Field
