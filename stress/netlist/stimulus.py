@@ -92,6 +92,11 @@ class _Source:
                 self._step_over_value()
             elif low in ("portnum", "z0", "pwr", "freq", "phase"):
                 self.at += 2
+            elif self.wave is not None:  # ngspice takes no notice of it either
+                self.part.notice(
+                    "wave", f'{self.part.full}: "{field.text}" behind the wave is not used', field
+                )
+                self.at += 1
             elif self.dc is None or self.at > 0:
                 self.dc = self.part.number(field) if self.dc is None else self._second(field)
                 self.at += 1
