@@ -13,7 +13,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
-from stress.circuit.circuit import Circuit, Kind, Position
+from stress.circuit.circuit import Circuit, Kind, Position, Role
 from stress.engine.case import Case, Settled, Twin
 from stress.engine.solver import Solver
 from stress.netlist.flat import Element
@@ -34,7 +34,7 @@ FACTOR = 1.25  # of the equipment's power: enough left to work, little enough to
 ROUNDS, CLOSE = 6, 0.01
 GLOWS, MORE = 0.2, 1.25  # of rated voltage from which a filament shows, and what is seen as more
 LAMP = "Rlamp#series"
-MOST_FAULTS = 12
+MOST_FAULTS = 10
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -74,7 +74,7 @@ def lamp(
     Args:
         circuit: The equipment.
         healthy: Its settled conditions.
-        dangers: Of each position the worst one is tried, at most twelve positions.
+        dangers: Of each position the worst one is tried, at most ten positions.
         power_W: What the healthy equipment takes from the line.
         solver: Solves the repetitions side by side.
     """
@@ -90,10 +90,10 @@ def lamp(
         rated_W=rating_W(power_W),
         positions={p.name: p for p in (*circuit.positions, *leaks_between(circuit))},
     )
-    tried = _worst(dangers)
-    plans = [_settle(bench, danger) for danger in (None, *tried)]
-    first, *rest = run(plans, solver=solver)
+    tried = _worst(dangers, coupling=frozenset(_coupling(circuit)))
+    (first,) = run([_settle(bench, None, near=None)], solver=solver)
     sound = first if first.unanswered is None else None
+    rest = run([_settle(bench, danger, near=sound) for danger in tried], solver=solver)
     return Lamp(
         rated_W=bench.rated_W,
         rated_V=circuit.line.nominal_V,
@@ -104,15 +104,21 @@ def lamp(
     )
 
 
-def _worst(dangers: Sequence[Danger]) -> list[Danger]:
-    """Return for each position its short, else its leak well below the critical one."""
+def _coupling(circuit: Circuit) -> list[str]:
+    return [p.name for p in circuit.positions if p.role is Role.COUPLING]
+
+
+def _worst(dangers: Sequence[Danger], *, coupling: frozenset[str]) -> list[Danger]:
+    """Return for each position its short, else its worst leak; of a coupling its first leak."""
     worst: dict[str, Danger] = {}
     for danger in dangers:
         name = danger.fault.position
         held = worst.get(name)
-        if held is None or danger.fault.kind == "short" or held.fault.kind == "leaky":
+        worse = danger.fault.kind == "short" or (held is not None and held.fault.kind == "leaky")
+        if held is None or (worse and name not in coupling):
             worst[name] = danger
-    return list(worst.values())[:MOST_FAULTS]
+    shorts_first = sorted(worst.values(), key=lambda d: d.fault.kind != "short")
+    return shorts_first[:MOST_FAULTS]
 
 
 def _with_lamp(twin: Twin, source: str) -> Twin:
@@ -126,11 +132,13 @@ def _with_lamp(twin: Twin, source: str) -> Twin:
     return replace(twin, elements=(*elements, lamp))
 
 
-def _settle(bench: _Bench, danger: Danger | None) -> Plan[LampReading]:
+def _settle(bench: _Bench, danger: Danger | None, *, near: LampReading | None) -> Plan[LampReading]:
     """Repeat until the lamp's resistance and the heaters fit what they get."""
     circuit, nominal_V = bench.circuit, bench.circuit.line.nominal_V
     fault = str(danger.fault) if danger is not None else ""
     lamp_V, share = 0.3 * nominal_V, 0.8
+    if near is not None:
+        lamp_V, share = near.lamp_V, near.equipment_V / nominal_V
     parent: str | None = stock.NOMINAL
     line = next(e for e in bench.twin.elements if e.name.lower() == bench.source.lower())
     inner = line.nodes[0].removesuffix("#lamp")

@@ -1,7 +1,7 @@
 """The ohmmeter before any power: supply nodes to the common one, plug out, everything cold.
 
-It finds shorts and nothing else: a leak that matters shows at working voltage only, so it is not
-counted here although the simulated one is a plain resistor.
+It finds shorts and what is as good as one: a leak of more than a kilohm may show at working
+voltage only, so it is not counted here although the simulated one is a plain resistor.
 """
 
 from __future__ import annotations
@@ -25,6 +25,7 @@ SHARE = 0.5  # of the healthy resistance, and the largest limit that is told (co
 MOST_OHM = 10e3
 METER_OHM = 100.0  # in series with the test voltage
 NOTHING_OHM = 20e6  # what a meter shows as open
+SHORT_OHM = 1e3  # a leak up to this is a short to an ohmmeter (a convention)
 _SOURCE, _SERIES = "Vohms#meter", "Rohms#meter"
 
 
@@ -45,6 +46,12 @@ def ohm_probes(circuit: Circuit) -> tuple[Probe, ...]:
     return tuple(found.values())
 
 
+def shorted(danger: Danger) -> bool:
+    """Tell whether a fault is a short to an ohmmeter."""
+    ohm = danger.fault.ohm
+    return danger.fault.kind == "short" or (ohm is not None and ohm <= SHORT_OHM)
+
+
 def ohm_step(
     circuit: Circuit,
     *,
@@ -55,7 +62,7 @@ def ohm_step(
     solver: Solver,
 ) -> RampStep:
     """Return the step with the plug out: what is read when healthy and with every short."""
-    shorts = [d for d in dangers if d.fault.kind == "short"]
+    shorts = [d for d in dangers if shorted(d)]
     asked: list[tuple[Danger | None, Probe]] = [
         (danger, probe) for danger in (None, *shorts) for probe in probes
     ]

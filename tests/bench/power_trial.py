@@ -32,6 +32,7 @@ from stress.study.inrush import inrush
 from stress.study.leakage import leakage
 from stress.study.limits import all_stresses, limits, over
 from stress.study.power_danger import dangers
+from stress.study.power_ohms import ohm_step
 from stress.study.power_probe import read
 from stress.study.power_result import Danger, PowerUp, Step
 from stress.study.ramp import Rung, case, rungs
@@ -144,9 +145,8 @@ def run_faults(of: Ready, count: int, pool: Pool, *, seed: int = SEED) -> list[O
     drawn = [draw(of, chance) for _ in range(count)]
     ends: dict[int, Outcome] = {}
     dead, *live = of.plan.steps
-    at_once = {fault for stop in dead.aborts for fault in stop.tells}
     for index, danger in enumerate(drawn):
-        if str(danger.fault) in at_once:
+        if _found_dead(of, dead, danger, pool):
             ends[index] = Outcome(str(danger.fault), BEFORE, dead.ramp.name)
     for step, rung in zip(live, of.rungs, strict=True):
         going = [i for i in range(count) if i not in ends]
@@ -164,6 +164,20 @@ def run_faults(of: Ready, count: int, pool: Pool, *, seed: int = SEED) -> list[O
         ends.get(index) or Outcome(str(danger.fault), NEVER, "-")
         for index, danger in enumerate(drawn)
     ]
+
+
+def _found_dead(of: Ready, dead: Step, danger: Danger, pool: Pool) -> bool:
+    """Tell whether the ohmmeter readings of the plan show a fault."""
+    found = ohm_step(
+        of.circuit,
+        healthy=of.healthy,
+        dangers=[danger],
+        probes=[p for p in of.plan.probes if p.key in {stop.probe for stop in dead.aborts}],
+        positions=of.positions,
+        solver=pool,
+    )
+    limit = {stop.probe: stop.limit for stop in dead.aborts}
+    return any(value < limit[key] for seen in found.seen for key, value in seen.values.items())
 
 
 def _end(
@@ -235,7 +249,7 @@ position and kind drawn evenly among those that the review finds dangerous, a le
 logarithm from the critical resistance down to a thousandth of it. The steps of the plan are
 climbed until an abort reading stops it.
 
-* ohmmeter: stopped by the readings with the plug out (shorts only)
+* ohmmeter: stopped by the readings with the plug out; only shorts and leaks of up to 1 kohm count
 * before: stopped at a step where no known limit is passed
 * quick: stopped at a step where limits are passed that the parts stand for {QUICK_S:.0f} s or more by
   a thermal law; read at once there
