@@ -41,6 +41,14 @@ _MARKS = tuple(
 _LOOKED_AT = 200_000  # characters: the marks of a dialect stand on its first pages
 
 
+_EXPORT = re.compile(r"eeschema|kicad|\bnet-[(_]|\bunconnected-[(_]", re.IGNORECASE)
+
+
+def is_raw_export(text: str) -> bool:
+    """Whether a schematic editor wrote the text: then any reference letter may stand for any part."""
+    return _EXPORT.search(text, 0, _LOOKED_AT) is not None
+
+
 def recognise(text: str) -> str:
     """Return the dialect that the marks in a text speak for."""
     points = dict.fromkeys(DIALECTS, 0)

@@ -12,11 +12,12 @@ from stress.netlist.flat import Instance
 from stress.netlist.grammar import read_element
 from stress.netlist.outline import Outline, too_deep
 from stress.netlist.part import Part
-from stress.netlist.problem import Problems
+from stress.netlist.problem import Obstacle, Problems
 from stress.netlist.scan import Definition, Entry, Lines, scan
 from stress.netlist.scope import Block, Scope, World, did_you_mean, place
 from stress.netlist.source import Source, split
 from stress.netlist.subcircuit import Call, Header, read_call, read_header
+from stress.netlist.weight import Weights
 from stress.text.span import SourceError, SourceErrors, Span
 
 DEEPEST = 40
@@ -38,7 +39,7 @@ class Expansion:
     built_in: Callable[[str], str | None]
     _headers: dict[int, Header] = field(default_factory=dict)
     _built: dict[str, tuple[Definition, Block] | None] = field(default_factory=dict)
-    _weights: dict[int, int] = field(default_factory=dict)
+    _weights: Weights = field(default_factory=Weights)
     _instances: int = 0
     _depth: int = 0
 
@@ -56,11 +57,21 @@ class Expansion:
             except SourceErrors:
                 raise
             except SourceError as error:
-                self.problems.error(error)
+                self.problems.error(self._weighed(error))
             except RecursionError:
                 self.problems.error(too_deep(card, scope))
         letters.update(element.letter for element in self.into.elements[begin:])
         return frozenset(letters)
+
+    def _weighed(self, error: SourceError) -> SourceError:
+        """Return an error, or an obstacle where a schematic editor wrote the card."""
+        if not self.world.from_editor or isinstance(error, Obstacle):
+            return error
+        return Obstacle(
+            error.message,
+            error.span,
+            error.hint or "replace the part by cards that SPICE has, or take it out",
+        )
 
     def _instance(self, card: Card, scope: Scope) -> frozenset[str]:
         call = read_call(card)
@@ -85,7 +96,12 @@ class Expansion:
                 "",
                 scope.within,
             )
-        self._bound(definition, outer, span)
+        if len(self.into.elements) + self._weights.of(definition, outer) > MOST_ELEMENTS:
+            self.problems.stop(
+                f"more than {MOST_ELEMENTS:,} elements after expansion",
+                span,
+                "the subcircuits multiply; a review is for one piece of equipment",
+            )
         header = self._header(definition, scope)
         odd = next((word for word in call.words[:at] if word.kind != "word"), None)
         if odd is not None:
@@ -130,45 +146,6 @@ class Expansion:
             span=held.span,
         )
         return body
-
-    def _bound(self, definition: Definition, outer: Block, span: Span) -> None:
-        """Stop before subcircuits that multiply are expanded, by counting their cards."""
-        if len(self.into.elements) + self._weight(definition, outer, 0) > MOST_ELEMENTS:
-            self.problems.stop(
-                f"more than {MOST_ELEMENTS:,} elements after expansion",
-                span,
-                "the subcircuits multiply; a review is for one piece of equipment",
-            )
-
-    def _weight(self, definition: Definition, outer: Block, depth: int) -> int:
-        """Return about how many elements a definition expands to; each is counted once."""
-        key = id(definition)
-        if key not in self._weights:
-            self._weights[key] = 0  # one that holds itself is found by its depth
-            inner: dict[str, Definition] = {}
-            weight = 0
-            calls: list[str] = []
-            for entry in scan(definition.body).entries:
-                if entry.definition is not None:
-                    words = entry.source.lines[entry.index].split()
-                    inner[words[1].lower() if len(words) > 1 else ""] = entry.definition
-                elif not entry.word:
-                    line = entry.source.lines[entry.index].lstrip()
-                    if line[:1] in ("x", "X"):
-                        calls.append(line.partition("=")[0])
-                    else:
-                        weight += 1
-            for call in calls:
-                words = [word.lower() for word in call.split()[1:]]
-                holders = (inner, *(block.subcircuits for block in outer.outward()))
-                named = next(
-                    (held[word] for word in reversed(words) for held in holders if word in held),
-                    None,
-                )
-                if named is not None and depth < DEEPEST:
-                    weight += self._weight(named, outer, depth + 1)
-            self._weights[key] = min(weight, 100 * MOST_ELEMENTS)
-        return self._weights[key]
 
     def _scope(
         self,

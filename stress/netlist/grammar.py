@@ -11,9 +11,9 @@ from stress.netlist.controlled import behavioural, controlled
 from stress.netlist.magnetic import coupling, inductor
 from stress.netlist.part import Part
 from stress.netlist.passive import resistor
-from stress.netlist.problem import Obstacle
 from stress.netlist.semiconductor import coupled_lines, line, semiconductor, switch
 from stress.netlist.stimulus import source
+from stress.text.span import SourceError, SourceErrors
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,7 +64,9 @@ _CONNECTS = {"R": 2, "C": 2, "L": 2, "V": 2, "I": 2, "D": 2, "Q": 3, "J": 3, "Z"
 def _remains(part: Part, into: Assembly) -> None:
     """Keep the element with its nodes alone, so that the graph is whole."""
     nodes = _CONNECTS.get(part.letter, 0)
-    if nodes and len(part.words) >= nodes and not into.holds(part.full):
+    words = part.words[:nodes]
+    whole = len(words) == nodes and all(word.kind == "word" for word in words)
+    if nodes and whole and not into.holds(part.full):
         into.add(part, part.letter, part.nodes(nodes))
 
 
@@ -78,7 +80,9 @@ def read_element(part: Part, into: Assembly) -> None:
     if row is not None:
         try:
             row.read(part, into)
-        except Obstacle:
+        except SourceErrors:
+            raise
+        except SourceError:
             _remains(part, into)
             raise
         return

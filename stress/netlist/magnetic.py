@@ -86,6 +86,12 @@ def coupling(part: Part, into: Assembly) -> None:
     part.need(3, "K1 L1 L2 coupling")
     given = part.given.pop("k", None) or part.given.pop("coupling", None)
     words = part.words
+    if any(word.text[:1].isalpha() and word.text[:1] not in "lL" for word in words[:2]):
+        raise part.obstacle(
+            f"{part.full} couples no inductors: the form is K1 L1 L2 coupling",
+            part.head,
+            "if it is a relay, write its coil as R and L and its contacts as R",
+        )
     if given is None and words[-1].text[:1].isalpha() and words[-1].kind == "word":
         before = words[-2].text[:1]
         if before.isdigit() or before == ".":

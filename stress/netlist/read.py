@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Callable, Sequence
 from pathlib import Path
 
 from stress.netlist.assembly import MOST_ELEMENTS, Assembly
+from stress.netlist.card import Card
 from stress.netlist.control import initial, options, transient, unknown
-from stress.netlist.dialect import DIALECTS, recognise
+from stress.netlist.dialect import DIALECTS, is_raw_export, recognise
 from stress.netlist.expand import Expansion
 from stress.netlist.flat import Netlist
 from stress.netlist.flattened import FlatScope, is_flattened, tagged
@@ -17,6 +19,7 @@ from stress.netlist.resolve import resolve
 from stress.netlist.scan import Entry, Lines
 from stress.netlist.scope import Block, Scope, World
 from stress.netlist.source import Files, Source, split
+from stress.text.number import NumberError, read_number
 from stress.text.span import SourceError, SourceErrors
 
 
@@ -45,9 +48,9 @@ def read(
         ValueError: There is no such dialect.
     """
     place = Path(path)
-    folder = place.parent if str(place.parent) else Path(".")
+    folder = Path(os.path.realpath(place.parent))
     files = Files(folder, tuple(libraries))
-    return _read(files.main(place, str(path)), files, dialect, built_in)
+    return _read(files.main(folder / place.name, str(path)), files, dialect, built_in)
 
 
 def read_text(
@@ -81,7 +84,7 @@ def _read(
     meaning = dialect or recognise("\n".join(source.lines[:5000]))
     problems = Problems()
     into = Assembly(problems, dollar=meaning != "ps")
-    world = World(meaning)
+    world = World(meaning, from_editor=is_raw_export("\n".join(source.lines[:5000])))
     settings: dict[str, float | str] = {}
 
     def control(entry: Entry, scope: Scope) -> None:
@@ -96,6 +99,7 @@ def _read(
     if len(top.cards) > MOST_ELEMENTS:
         card = top.cards[MOST_ELEMENTS].card(dollar=into.dollar)
         problems.stop(f"more than {MOST_ELEMENTS:,} elements", card.whole())
+    _title(source, problems)
     _later(top, scope, into, settings, problems)
     expansion.block(scope)
     elements = resolve(into, problems)
@@ -114,7 +118,7 @@ def _read(
         raise SourceErrors(problems.sorted_errors())
     return Netlist(
         path=source.file,
-        title=source.lines[0].strip().lstrip("*").strip(),
+        title=source.lines[0].strip().removeprefix(".title").lstrip("*").strip(),
         dialect=meaning,
         elements=elements,
         models=into.models,
@@ -126,6 +130,23 @@ def _read(
         notices=tuple(in_order(problems.notices)),
         obstacles=tuple(in_order(problems.obstacles)),
     )
+
+
+def _title(source: Source, problems: Problems) -> None:
+    """Tell where the first line, which is always the title, looks like a card."""
+    words = source.lines[0].split()
+    if len(words) > 3 and words[0][0].upper() in "RCLVI" and words[0][1:].isalnum():
+        try:
+            read_number(words[3])
+        except NumberError:
+            return
+        problems.notice(
+            "title",
+            words[0],
+            f'the first line is the title: "{words[0]}" is not in the circuit',
+            Card(source, 0, source.lines[0], ((0, 0, 0),)).whole(),
+            "put a title line before it",
+        )
 
 
 def _control(

@@ -239,11 +239,17 @@ class Scope:
 
 @dataclass(slots=True)
 class World:
-    """What is the same everywhere in the netlist."""
+    """What is the same everywhere in the netlist.
+
+    Attributes:
+        from_editor: A raw export of a schematic editor: a card that is no SPICE card is a part
+            that SPICE does not have, not a mistake.
+    """
 
     dialect: str
     global_nodes: set[str] = field(default_factory=set)
     temperature_degC: float = 27.0
+    from_editor: bool = False
     settling: list[str] = field(default_factory=list)
 
 

@@ -92,7 +92,7 @@ def _model_at(part: Part, into: Assembly, fewest: int, most: int) -> int:
     fourth = part.words[4] if len(part.words) > 4 and part.letter in "MQ" else None
     if fourth is not None and not _is_number(fourth) and fourth.text.lower() not in _FLAGS:
         return 4
-    return fewest
+    return len(part.words) - 1 if part.letter == "U" else fewest
 
 
 def _is_number(word: Field) -> bool:

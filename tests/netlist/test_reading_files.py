@@ -67,6 +67,12 @@ def test_include_paths_as_they_come(card: str, tmp_path: Path):
     assert netlist.obstacles == ()
 
 
+def test_first_line_that_looks_like_a_card_is_told():
+    notices = read_text("R1 a 0 1k\nR2 a 0 2k\n").notices
+
+    assert [(notice.rule, notice.where) for notice in notices] == [("title", "R1")]
+
+
 def test_include_is_relative_to_the_file_that_asks(tmp_path: Path):
     (tmp_path / "sub").mkdir()
     (tmp_path / "sub" / "a.inc").write_text(".include b.inc\n", encoding="utf-8")
@@ -158,6 +164,42 @@ def test_own_subcircuit_comes_before_the_part_table():
 
     assert netlist.elements[0].value == 1.0
     assert not netlist.instances[0].built_in
+
+
+EXPORT = """\
+.title Amplifier (schematic export)
+U1 Net-(C1-Pad1) GND VCC LM317
+J1 VCC GND Conn_01x02
+F1 VCC /fused 1A
+BT1 a b Battery
+SW1 a b SPST
+K1 a b c d RELAY
+LS1 a b Speaker
+D1 a b BY359-1500
+IC1 a b c d NE555
+R2 a GND R
+C1 Net-(C1-Pad1) GND 100uF/450V
+C2 a GND C_Small
+C3 a b 100n / 400V
+"""
+
+
+def test_raw_export_of_a_schematic_editor_gives_the_inventory():
+    """Parts that SPICE does not have are obstacles, not mistakes; the capacitors are all there."""
+    netlist = read_text(EXPORT)
+
+    assert netlist.title == "Amplifier (schematic export)"
+    assert [obstacle.span.line for obstacle in netlist.obstacles] == list(range(2, 12))
+    assert all(obstacle.hint for obstacle in netlist.obstacles)
+    capacitors = [element for element in netlist.elements if element.letter == "C"]
+    assert [(c.name, c.value, c.tags.rated_V) for c in capacitors] == [
+        ("C1", 1e-4, 450.0),
+        ("C2", None, None),
+        ("C3", 1e-7, 400.0),
+    ]
+    assert capacitors[0].nodes == ("net-(c1-pad1)", "0")
+    diode = next(element for element in netlist.elements if element.name == "D1")
+    assert (diode.nodes, diode.model) == (("a", "b"), "")
 
 
 TUBES = """\
