@@ -126,6 +126,18 @@ def _repeats(waves: Waves, period_s: float) -> float:
     return worst
 
 
+def holding(deck: Deck, waves: Waves) -> tuple[str, ...]:
+    """Return the switches whose state at the start of the period is that of before."""
+    rows = dict(zip(waves.names, waves.values[:, 0], strict=True))
+    return tuple(
+        switch.element
+        for switch in deck.hysteresis
+        if switch.low
+        < rows.get(switch.control[0], 0.0) - rows.get(switch.control[1], 0.0)
+        < switch.high
+    )
+
+
 def told(deck: Deck, course: Course, *, unstable: bool, cycles: int) -> str:
     """Return in words what a circuit does that does not become periodic."""
     span = (course.high - course.low) / np.maximum(

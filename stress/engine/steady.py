@@ -14,7 +14,16 @@ from stress.engine.deck import Deck
 from stress.engine.fixed_point import Point, approach, directional, jacobian, spectral_radius
 from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
 from stress.engine.ngspice import Ngspice, RunFailed
-from stress.engine.plain import CHUNK, MOST_PERIODS, Course, departs, follow, follow_from_rest, told
+from stress.engine.plain import (
+    CHUNK,
+    MOST_PERIODS,
+    Course,
+    departs,
+    follow,
+    follow_from_rest,
+    holding,
+    told,
+)
 from stress.engine.refine import alike
 
 DISTANCE = 1e-4  # accepted distance to the fixed point, in yardsticks
@@ -57,7 +66,7 @@ class Search:
         if self.deck.period_s is None:
             return self.standing(grid or Grid())
         if self.deck.plain:
-            return self.from_afar(grid or Grid())
+            return self.from_afar(grid or Grid(), self.deck.plain)
         if grid is None:
             grid = Grid() if memory is None else memory.grid
         phi, point = self.search(grid, memory)
@@ -67,6 +76,9 @@ class Search:
             phi, point, waves = self.refined(phi, point)
         else:
             waves = phi.waves()
+        kept = holding(self.deck, waves)
+        if kept:
+            return self.from_afar(phi.grid, f"{', '.join(kept)} keeps its state over the period")
         return self.stable(phi, point, waves)
 
     def search(self, grid: Grid, memory: Memory | None) -> tuple[CycleMap, Point]:
@@ -229,7 +241,7 @@ class Search:
             return self.wandering(course, unstable=False)
         return self.followed(trial, course, ())
 
-    def from_afar(self, grid: Grid) -> Outcome:
+    def from_afar(self, grid: Grid, why: str) -> Outcome:
         """Follow the plain transient from rest where the map does not hold."""
         phi = self.map(grid, self.deck.initial_V)
         start = start_from(self.deck, self.deck.initial_V)
@@ -237,7 +249,7 @@ class Search:
         self.cycles += phi.cycles
         if not course.settled:
             return self.wandering(course, unstable=False)
-        return self.followed(phi, course, (f"{self.deck.plain}: settled by a plain transient",))
+        return self.followed(phi, course, (f"{why}: settled by a plain transient",))
 
     def followed(self, phi: CycleMap, course: Course, notices: tuple[str, ...]) -> Outcome:
         """Return the answer of a plain transient that became periodic."""

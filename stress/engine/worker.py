@@ -32,7 +32,8 @@ from stress.engine.case import (
     Waves,
 )
 from stress.engine.cycle import CAREFUL, Grid
-from stress.engine.deck import Deck, Draft
+from stress.engine.deck import Deck
+from stress.engine.draft import Draft
 from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
 from stress.engine.ngspice import Broken, DeckRefused, Ngspice, RunFailed
 from stress.engine.oscillation import Tank, oscillates, tanks

@@ -8,7 +8,7 @@ import numpy as np
 
 from stress.engine.case import Case
 from stress.engine.cycle import CycleMap, Grid
-from stress.engine.deck import Draft
+from stress.engine.draft import Draft
 from stress.engine.memory import start_from
 from stress.engine.ngspice import Ngspice
 from stress.engine.steady import Search

@@ -28,8 +28,8 @@ class Log:
         return [(c, a) for c, a in self.asked if isinstance(a, Settled)]
 
 
-def reviewed(path: Path, *, jobs: int) -> Log:
-    """Review an equipment and return what its engine did."""
+def reviewed(path: Path, *, jobs: int, only: tuple[str, ...] = ()) -> Log:
+    """Review an equipment, or some of its positions, and return what its engine did."""
     log = Log()
 
     class Recording(Pool):
@@ -44,7 +44,7 @@ def reviewed(path: Path, *, jobs: int) -> Log:
     usual, pipeline.Pool = pipeline.Pool, Recording
     began = monotonic()
     try:
-        pipeline.review(path, jobs=jobs)
+        pipeline.review(path, jobs=jobs, only=only)
     finally:
         pipeline.Pool = usual
     log.wall_s = monotonic() - began

@@ -146,3 +146,31 @@ def test_a_small_signal_response(twin_of, pool):
 
     assert gains == pytest.approx([1 / (1 + 0.1j), 1 / (1 + 1j), 1 / (1 + 10j)], rel=1e-6)
     assert currents == pytest.approx((1 - gains) / 1e3, rel=1e-6)
+
+
+def test_a_switch_that_holds_its_state_takes_the_plain_way(twin_of, pool):
+    """A control that stays between the thresholds at the start of the period, both ways tried."""
+    cards = (
+        "V1 a 0 10\nVc c 0 SIN(0 3 50)\nS1 a b c 0 SM\nR1 b 0 1k\nC1 b 0 10u\n"
+        ".model SM SW(Ron=1 Roff=1e9 Vt=0 Vh=2)"
+    )
+    answer = solve(pool, Case(name="holding", twin=twin_of(cards, period_s=0.02)))
+    # On from asin(2/3) of the sine to 180 degrees and asin(2/3) more; R C is half a period.
+    off_s = 0.01
+    voltage = answer.waves.voltage("b")
+
+    assert answer.proof.method == "plain transient"
+    assert "S1 keeps its state over the period" in answer.notices[-1]
+    assert voltage.max() == pytest.approx(10.0, rel=2e-3)
+    assert voltage.min() == pytest.approx(10.0 * math.exp(-off_s / 0.01), rel=1e-2)
+
+
+def test_options_of_the_circuit_count_and_those_of_the_solver_do_not(twin_of, pool):
+    """gmin of 1 mS across a junction that blocks makes a divider with 1 kohm; reltol is ours."""
+    twin = twin_of(
+        "V1 a 0 -10\nR1 a b 1k\nD1 b 0 DM\n.model DM D(IS=1e-15)",
+        options={"gmin": 1e-3, "reltol": 0.5},
+    )
+    answer = solve(pool, Case(name="gmin", twin=twin))
+
+    assert answer.waves.voltage("b")[0] == pytest.approx(-5.0, rel=1e-3)

@@ -2,7 +2,7 @@
 
 import pytest
 
-from stress.engine.deck import TIE_OHM, Draft
+from stress.engine.draft import TIE_OHM, Draft
 
 RECTIFIER = """
 Vac  A.in 0 SIN(0 100 50 5m)
