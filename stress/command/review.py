@@ -99,11 +99,11 @@ def review(
                 progress=report,
             )
         if json_file is not None:
-            write_json(found, json_file, power_up=found.power_up, discharge=found.discharge)
+            write_json(found, json_file)
         if html_file is not None:
             from stress.report.page import write_page
 
-            write_page(found, html_file, power_up=found.power_up, discharge=found.discharge)
+            write_page(found, html_file)
         if csv_folder is not None:
             from stress.report.tables import write_csv
 

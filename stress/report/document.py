@@ -11,8 +11,6 @@ from typing import Any
 from stress.circuit.circuit import Part, Position
 from stress.report import borne, words
 from stress.report.power_document import discharge_document, power_up_document
-from stress.study.discharge_result import Discharge
-from stress.study.power_result import PowerUp
 from stress.study.result import (
     Condition,
     CurvePoint,
@@ -38,29 +36,17 @@ WORKING = (
 FAULTS = ("short", "open", "dried", "low", "reversed")
 
 
-def write_json(
-    review: Review,
-    path: Path,
-    *,
-    power_up: PowerUp | None = None,
-    discharge: Discharge | None = None,
-) -> None:
-    """Write the document of a review to a file, UTF-8; see `document`.
+def write_json(review: Review, path: Path) -> None:
+    """Write the document of a review to a file, UTF-8.
 
     Raises:
         OSError: Where the file cannot be written.
     """
-    found = document(review, power_up=power_up, discharge=discharge)
-    text = json.dumps(found, ensure_ascii=False, allow_nan=False, indent=1)
+    text = json.dumps(document(review), ensure_ascii=False, allow_nan=False, indent=1)
     path.write_text(text + "\n", encoding="utf-8")
 
 
-def document(
-    review: Review,
-    *,
-    power_up: PowerUp | None = None,
-    discharge: Discharge | None = None,
-) -> dict[str, Any]:
+def document(review: Review) -> dict[str, Any]:
     """Return everything a review found, as dictionaries and lists of JSON values.
 
     None stands for what is not known, does not apply or was not solved; `unanswered` lists
@@ -79,8 +65,8 @@ def document(
             "conditions": [_condition(each) for each in borne.conditions(review)],
             "positions": [_position(review, each) for each in circuit.positions],
             "parts": [_part(review, each) for each in circuit.parts],
-            "power_up": power_up_document(power_up) if power_up else None,
-            "discharge": discharge_document(discharge) if discharge else None,
+            "power_up": power_up_document(review.power_up) if review.power_up else None,
+            "discharge": discharge_document(review.discharge) if review.discharge else None,
             "findings": [
                 {
                     "severity": each.severity.value,

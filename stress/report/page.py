@@ -24,8 +24,6 @@ from stress.report.shopping import shopping_list
 from stress.report.table import PAGE
 from stress.report.words import amount
 from stress.study.conditions import INRUSH
-from stress.study.discharge_result import Discharge
-from stress.study.power_result import PowerUp
 from stress.study.result import Review
 from stress.text.figure import figure
 
@@ -62,35 +60,17 @@ class BenchRow:
     lift: str
 
 
-def write_page(
-    review: Review,
-    path: Path,
-    *,
-    power_up: PowerUp | None = None,
-    discharge: Discharge | None = None,
-) -> None:
-    """Write the page of a review to a file, UTF-8; see `page`.
+def write_page(review: Review, path: Path) -> None:
+    """Write the page of a review to a file, UTF-8.
 
     Raises:
         OSError: Where the file cannot be written.
     """
-    text = page(review, power_up=power_up, discharge=discharge)
-    path.write_text(text, encoding="utf-8")
+    path.write_text(page(review), encoding="utf-8")
 
 
-def page(
-    review: Review,
-    *,
-    power_up: PowerUp | None = None,
-    discharge: Discharge | None = None,
-) -> str:
-    """Return the page of a review: nothing in it is fetched from anywhere.
-
-    Args:
-        review: What was found.
-        power_up: The plan of the first switch-on, where it was made.
-        discharge: What stays charged, where it was followed.
-    """
+def page(review: Review) -> str:
+    """Return the page of a review: nothing in it is fetched from anywhere."""
     environment = Environment(
         loader=FileSystemLoader(_TEMPLATES),
         autoescape=True,
@@ -117,8 +97,8 @@ def page(
         proofs=tables.proofs(review).place(PAGE),
         conditions=_conditions(review),
         severities=words.SEVERITIES,
-        plan=plan_view(power_up) if power_up else None,
-        after=after_view(discharge) if discharge else None,
+        plan=plan_view(review.power_up) if review.power_up else None,
+        after=after_view(review.discharge) if review.discharge else None,
         bench=_bench_card(review, shown),
         data={
             "verdicts": VERDICTS,

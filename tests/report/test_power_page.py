@@ -2,6 +2,7 @@
 
 import json
 import re
+from dataclasses import replace
 
 import pytest
 
@@ -88,7 +89,7 @@ AFTER = Discharge(charges=(HELD, LOW), advice=("Pull the plug.",), cautions=("It
 
 @pytest.fixture(scope="module")
 def text(specimen):
-    return page(specimen, power_up=PLAN, discharge=AFTER).replace("\xa0", " ")
+    return page(replace(specimen, power_up=PLAN, discharge=AFTER)).replace("\xa0", " ")
 
 
 def test_the_page_has_both_only_where_they_were_studied(specimen, text):
@@ -167,7 +168,7 @@ def test_the_discharge_curve_is_drawn_where_it_is_dangerous():
 
 def test_the_document_holds_both(specimen, tmp_path):
     path = tmp_path / "whole.json"
-    write_json(specimen, path, power_up=PLAN, discharge=AFTER)
+    write_json(replace(specimen, power_up=PLAN, discharge=AFTER), path)
     read = json.loads(path.read_text(encoding="utf-8"))
     plan = read["power_up"]
     assert plan["method"]["way"] == "slow ramp"
