@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from stress.circuit.circuit import Circuit, Kind
+from stress.study.discharge_law import resistor
 from stress.study.discharge_result import POWER_V, Charge
 from stress.text.figure import figure
 
@@ -25,16 +26,17 @@ def advice(charges: Sequence[Charge]) -> tuple[str, ...]:
         "Try the meter on a known source, measure every position across its own terminals, then "
         "try the meter again on the known source.",
     ]
-    largest = max((c for c in charges if c.resistor), key=lambda c: c.energy_J, default=None)
-    if largest is not None and largest.resistor is not None:
-        r = largest.resistor
+    held = [c for c in charges if c.resistor is not None]
+    if held:
+        together = sum(c.value_F for c in held)
+        r = resistor(together, max(c.start_V for c in held))
         pieces = f"{r.pieces} in series of together " if r.pieces > 1 else ""
         found.append(
             f"Discharge what is above {figure(POWER_V, 'V')} through {pieces}"
             f"{figure(r.ohm, 'ohm')}, {figure(r.rated_W, 'W')}, for {figure(r.rated_V, 'V')}, on "
-            f"insulated leads clipped on with one hand: it takes {figure(r.energy_J, 'J')} and "
-            f"{figure(r.seconds, 's')} for {largest.position} down to {figure(r.until_V, 'V')}. "
-            "Never with a screwdriver."
+            "insulated leads clipped on with one hand; were all of them joined, it would take "
+            f"{figure(r.energy_J, 'J')} and {figure(r.seconds, 's', digits=2)} down to "
+            f"{figure(r.until_V, 'V')}. Never with a screwdriver."
         )
     floating = [c.position for c in charges if c.floating]
     if floating:
