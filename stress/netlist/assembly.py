@@ -8,7 +8,7 @@ from dataclasses import dataclass, field
 
 from stress.netlist.card import Field
 from stress.netlist.flat import NOTHING, Element, Instance, Law, Model, Tags, Wave
-from stress.netlist.modelcard import read_model
+from stress.netlist.modelcard import MESHED, read_model
 from stress.netlist.part import Part
 from stress.netlist.problem import Problems
 from stress.netlist.scan import Entry
@@ -121,27 +121,21 @@ class Assembly:
                 f"add a .model {word.text} {kinds[0].upper()}(…) or include the file that has it"
             )
             raise part.obstacle(f'the model "{word.text}" is missing', word, mend)
-        key = self._key(name, *found)
-        if key and part.letter == "M" and found[1].name_of() != name:
-            key = self._binned(part, name, found[0]) or key
+        first = f"{name}.1"
+        if found[1].name_of() == first:
+            key = self._binned(part, name, found[0]) or self._key(first, *found)
+        else:
+            key = self._key(name, *found)
         if not key:
             return ""
         kind = self.models[key].kind
         if kind not in kinds:
             raise part.error(
                 f'the model "{word.text}" is of kind {kind.upper()}, {part.name} needs '
-                f"{' or '.join(kind.upper() for kind in kinds[:4])}",
+                f"{' or '.join(kind.upper() for kind in kinds if kind not in MESHED)}",
                 word,
             )
         return key
-
-    def kind_of(self, scope: Scope, name: str) -> str:
-        """Return the kind of a model that can be used here, or ""."""
-        found = self._find(scope, name.lower())
-        if found is None:
-            return ""
-        key = self._key(name.lower(), *found)
-        return self.models[key].kind if key else ""
 
     def _find(self, scope: Scope, name: str) -> tuple[Scope, Entry] | None:
         """Look along the text, then along the calls."""

@@ -78,6 +78,8 @@ KINDS = frozenset(
         "cpl",
     ]
 )
+# Devices solved on a mesh of their own: what describes them goes through line by line.
+MESHED = frozenset({"numd", "nbjt", "nbjt2", "numos"})
 _SYNONYMS = {"res": "r", "cap": "c", "ind": "l", "lpnp": "pnp"}
 
 
@@ -128,7 +130,7 @@ def read_model(
         if at < len(fields) and fields[at].text.lower() in KINDS:
             at += 1
     else:
-        if kind not in KINDS:
+        if kind not in KINDS and kind not in MESHED:
             raise Obstacle(
                 f'"{fields[at].text}" is no kind of model that can be simulated here',
                 card.span(fields[at].start, fields[at].end, scope.within),
@@ -136,9 +138,23 @@ def read_model(
             )
         kind = _SYNONYMS.get(kind, kind)
         at += 1
+        if kind in MESHED:
+            numbers = {"text": _as_written(card, fields[2].end)}
+            return Model(
+                name=name.lower(), kind=kind, parameters=numbers, span=card.whole(scope.within)
+            )
     while at < len(fields):
         at = _parameter(card, scope, fields, at, numbers, kind)
     return Model(name=name.lower(), kind=kind, parameters=numbers, span=card.whole(scope.within))
+
+
+def _as_written(card: Card, start: int) -> str:
+    """Return the rest of a card with its continuation lines kept apart."""
+    ends = [offset for offset, _, _ in card.pieces[1:]] + [len(card.text) + 1]
+    begins = [start, *ends[:-1]]
+    return "\n+ ".join(
+        card.text[begin : end - 1].strip() for begin, end in zip(begins, ends, strict=True)
+    )
 
 
 def _without_mark(fields: list[Field], at: int) -> bool:

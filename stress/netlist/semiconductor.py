@@ -11,11 +11,11 @@ from stress.netlist.part import Part
 from stress.text.number import NumberError, read_number
 
 KINDS: dict[str, tuple[str, ...]] = {
-    "D": ("d",),
-    "Q": ("npn", "pnp"),
+    "D": ("d", "numd"),
+    "Q": ("npn", "pnp", "nbjt", "nbjt2"),
     "J": ("njf", "pjf"),
     "Z": ("nmf", "pmf", "nhfet", "phfet"),
-    "M": ("nmos", "pmos", "vdmos", "nsoi", "psoi"),
+    "M": ("nmos", "pmos", "vdmos", "nsoi", "psoi", "numos"),
     "S": ("sw", "vswitch"),
     "W": ("csw", "iswitch"),
     "O": ("ltra",),
@@ -57,7 +57,7 @@ def semiconductor(part: Part, into: Assembly) -> None:
         elif "area" not in parameters and part.letter in "DQJZM":
             parameters["area"] = part.number(extra)
     for name in list(part.given):
-        if name == "ic":
+        if name == "ic" or name.endswith("file"):
             part.given.pop(name)
             continue
         value = part.take(name)

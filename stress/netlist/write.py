@@ -20,6 +20,7 @@ from stress.netlist.expression import (
 from stress.netlist.expression_text import expression_text
 from stress.netlist.flat import Element, Model, Netlist, Wave
 from stress.netlist.flattened import MARK, TAGS
+from stress.netlist.modelcard import MESHED
 
 
 def write(netlist: Netlist) -> str:
@@ -49,6 +50,8 @@ def write(netlist: Netlist) -> str:
 
 
 def _model(model: Model) -> str:
+    if model.kind in MESHED:
+        return f".model {model.name} {model.kind} {model.parameters['text']}"
     told = " ".join(
         f"{name}={value if isinstance(value, str) else repr(value)}"
         for name, value in model.parameters.items()
