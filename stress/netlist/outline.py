@@ -8,11 +8,12 @@ from dataclasses import dataclass, field
 from stress.netlist.card import Card
 from stress.netlist.control import PARAMETERS, assigned, function, macros
 from stress.netlist.problem import Obstacle, Problems
-from stress.netlist.scan import Entry, Lines, scan, sections
+from stress.netlist.scan import ENCRYPTED, Entry, Lines, is_encrypted, scan, sections
 from stress.netlist.scope import Block, Scope, did_you_mean, place
 from stress.netlist.source import Files, Refused, Source
 from stress.text.span import SourceError, SourceErrors
 
+PLAIN = "use a model in plain text, or a type that the part table knows"
 _INCLUDES = (".include", ".inc", ".incl")
 
 
@@ -51,9 +52,11 @@ class Outline:
                 skipped.source.lines[skipped.index],
                 ((0, skipped.index, 0),),
             )
-            self.problems.ignore(
-                f"{skipped.what}: nothing in it is ever run", card.whole(scope.within)
-            )
+            span = card.whole(scope.within)
+            if skipped.what == ENCRYPTED:
+                self.problems.obstacle("an encrypted model cannot be read", span, PLAIN)
+            else:
+                self.problems.ignore(skipped.what, span)
         for word, source, index in found.unclosed:
             card = Card(source, index, source.lines[index], ((0, index, 0),))
             self.problems.error(
@@ -176,6 +179,11 @@ class Outline:
                 self.problems.obstacle(refusal.message, span, refusal.hint)
                 return
             raise SourceError(refusal.message, span, refusal.hint) from None
+        if is_encrypted(source.lines):
+            self.problems.obstacle(
+                f'"{name}" is an encrypted model and cannot be read', span, PLAIN
+            )
+            return
         lines = Lines(source, 0, len(source.lines))
         if part:
             held = self._sections_of(source)

@@ -11,7 +11,12 @@ from dataclasses import dataclass, field
 from stress.netlist.card import Card, gather
 from stress.netlist.source import Source
 
-_DEFINES = (".subckt", ".macro", ".model", ".func", ".param", ".params", ".parameter")
+ENCRYPTED = "encrypted text"
+# Blocks that are set aside whole: what ends them, and what they are called.
+_BLOCKS = {
+    ".control": (".endc", ".control block: nothing in it is ever run"),
+    ".data": (".enddata", ".data: the sweep is not made"),
+}
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,6 +81,7 @@ def scan(lines: Lines) -> Scan:
     append = found.entries.append
     index, after = lines.first, lines.after
     joined = False
+    clear = 0  # no encrypted text before this line, so that each line is looked at once
     while index < after:
         line = text[index]
         mark = line[:1]
@@ -98,18 +104,50 @@ def scan(lines: Lines) -> Scan:
                 append(Entry(source, index, word, Definition(source, index, body)))
                 index, joined = end + 1, False
                 continue
-            if word == ".control":
-                end = index + 1
-                while end < after and text[end].lstrip()[:5].lower() != ".endc":
-                    end += 1
-                found.skipped.append(Skipped(".control block", source, index))
+            if word in _BLOCKS:
+                closing, what = _BLOCKS[word]
+                end = _until(text, index + 1, after, closing)
+                found.skipped.append(Skipped(what, source, index))
                 index, joined = end + 1, False
                 continue
+            if word in (".prot", ".protect") and index >= clear:
+                clear = end = _until(text, index + 1, after, ".unprot")
+                if any(_is_cipher(line) for line in text[index + 1 : end]):
+                    found.skipped.append(Skipped(ENCRYPTED, source, index))
+                    index, joined = end + 1, False
+                    continue
             append(Entry(source, index, word))
+            if word == ".alter":
+                break  # what follows changes the circuit for another run
+        elif mark == "$":
+            # The other beginnings of encrypted text, by their first word.
+            if line[:12].lower() == "$cdnencstart":
+                end = _until(text, index + 1, after, "$cdnencfinish")
+                found.skipped.append(Skipped(ENCRYPTED, source, index))
+                index = end
+            joined = False
         else:
             append(Entry(source, index, ""))
         index += 1
     return found
+
+
+def _until(text: list[str], index: int, after: int, closing: str) -> int:
+    """Return the line that begins with a word, or the end of the stretch."""
+    while index < after and text[index].lstrip()[: len(closing)].lower() != closing:
+        index += 1
+    return index
+
+
+def _is_cipher(line: str) -> bool:
+    """Whether a line is no card, comment or continuation."""
+    mark = line.lstrip()[:1]
+    return bool(mark) and not mark.isalpha() and mark not in "*.+;#$/"
+
+
+def is_encrypted(lines: list[str]) -> bool:
+    """Whether a file says at its head that it is encrypted."""
+    return any("encrypted file" in line.lower() for line in lines[:5])
 
 
 def _end(text: list[str], index: int, after: int) -> int | None:

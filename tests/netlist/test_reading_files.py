@@ -166,6 +166,26 @@ def test_own_subcircuit_comes_before_the_part_table():
     assert not netlist.instances[0].built_in
 
 
+@pytest.mark.parametrize(
+    "content",
+    [
+        "* Encrypted File\n*\n* Begin:\n  50 3D 5F\n* End 1\n",
+        "* maker\n$CDNENCSTART\n5f3a 88\n$CDNENCFINISH\n",
+        ".prot FREELIB\n5'$K 9,,W\n.unprot\n",
+    ],
+    ids=["file", "marks", "prot"],
+)
+def test_encrypted_model_is_refused_by_its_own_message(content: str, tmp_path: Path):
+    (tmp_path / "secret.lib").write_text(content, encoding="utf-8")
+    (tmp_path / "set.cir").write_text("t\n.lib secret.lib\nX1 a b SECRET\n", encoding="utf-8")
+
+    netlist = read(tmp_path / "set.cir")
+
+    messages = [obstacle.message for obstacle in netlist.obstacles]
+    assert "encrypted model" in " ".join(messages)
+    assert 'the subcircuit "SECRET" is missing' in messages
+
+
 EXPORT = """\
 .title Amplifier (schematic export)
 U1 Net-(C1-Pad1) GND VCC LM317
