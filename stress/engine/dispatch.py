@@ -14,6 +14,7 @@ from dataclasses import dataclass, replace
 from pebble import ProcessExpired
 
 from stress.engine.case import Answer, Case, Unsolved
+from stress.engine.ngspice import LibraryMissing
 from stress.engine.slot import Slot
 from stress.engine.worker import Job, Result, work
 
@@ -120,7 +121,11 @@ class Crew:
             post.jobs.append((task, post.slot.submit(work, job(task.case))))
 
     def collect(self, plan: Plan) -> Iterator[tuple[Task, Result]]:
-        """Wait for at least one job or a moment; yield what has ended for good."""
+        """Wait for at least one job or a moment; yield what has ended for good.
+
+        Raises:
+            LibraryMissing: Where a worker could not load ngspice.
+        """
         heads = [post.jobs[0][1] for post in self._posts if post.jobs]
         wait(heads, timeout=LOOK_S, return_when=FIRST_COMPLETED)
         for post in self._posts:
@@ -172,6 +177,8 @@ def _outcome(task: Task, future: Future[Result]) -> Result:
     error = future.exception()
     if error is None:
         return future.result()
+    if isinstance(error, LibraryMissing):
+        raise error  # no other worker would find one
     text = " ".join(str(part) for part in error.args) or type(error).__name__
     return _failure(task, f"the worker ended: {text}")
 

@@ -54,7 +54,11 @@ def find_library() -> str:
     """
     named = os.environ.get(VARIABLE)
     if named:
-        return named
+        if os.path.basename(named) == named:
+            return named
+        if not os.path.exists(named):
+            raise LibraryMissing(f"{VARIABLE} names {named}, and there is no such file")
+        return os.path.abspath(named)
     if platform.system() == "Linux":
         # The runtime package has no unversioned name, which is the only one PySpice tries.
         found = ctypes.util.find_library("ngspice")

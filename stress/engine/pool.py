@@ -81,11 +81,13 @@ class Pool:
         Raises:
             LibraryMissing: Where there is no ngspice library.
         """
-        find_library()
+        library = find_library()
         self._folder = Path(tempfile.mkdtemp(prefix="capstress-"))
         empty = self._folder / "empty"
         empty.mkdir()
-        self._slots = [Slot(str(empty), memory_bytes=self._memory_bytes) for _ in range(self._jobs)]
+        self._slots = [
+            Slot(str(empty), library, memory_bytes=self._memory_bytes) for _ in range(self._jobs)
+        ]
         return self
 
     def __exit__(

@@ -62,11 +62,12 @@ class Slot:
 
     Args:
         folder: Empty; the worker stands in it.
+        library: The ngspice library, as `stress.engine.ngspice.find_library` gives it.
         memory_bytes: Its address space, or None for no limit.
     """
 
-    def __init__(self, folder: str, *, memory_bytes: int | None = None) -> None:
-        self._folder, self._memory_bytes = folder, memory_bytes
+    def __init__(self, folder: str, library: str, *, memory_bytes: int | None = None) -> None:
+        self._place = (folder, library, memory_bytes)
         self._pool = self._fresh()
 
     def submit(self, function: Callable[..., Found], *args: Any) -> Future[Found]:
@@ -97,7 +98,7 @@ class Slot:
         return ProcessPool(
             max_workers=1,
             initializer=enter,
-            initargs=(self._folder, self._memory_bytes),
+            initargs=self._place,
             context=context,
         )
 

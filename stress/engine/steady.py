@@ -37,7 +37,7 @@ REFUTATIONS = 3  # of a multiplier that looks unstable, before a whole Jacobian
 FAST_F = 2e-7  # farad per second of period: smaller capacitors are tested in groups
 FAST_H = 0.1  # henry per second of period, likewise
 AFAR = 1e-3  # the same for what can only be run from rest
-FINEST = 2720  # points a period
+FINEST = 1920  # points a period
 
 
 class Search:

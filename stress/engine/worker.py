@@ -35,7 +35,7 @@ from stress.engine.cycle import CAREFUL, Grid
 from stress.engine.deck import Deck
 from stress.engine.draft import Draft
 from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
-from stress.engine.ngspice import Broken, DeckRefused, Ngspice, RunFailed
+from stress.engine.ngspice import VARIABLE, Broken, DeckRefused, Ngspice, RunFailed
 from stress.engine.oscillation import Tank, oscillates, tanks
 from stress.engine.solver import Versions
 from stress.engine.steady import Search
@@ -123,13 +123,12 @@ class _Process:
 _PROCESS = _Process()
 
 
-def enter(folder: str, memory_bytes: int | None) -> None:
+def enter(folder: str, library: str, memory_bytes: int | None) -> None:
     """Make the process ready: an empty folder as working folder and home, and its limits."""
     # A worker deep inside the library must still go at once when it is told to.
     signal.signal(signal.SIGTERM, signal.SIG_DFL)
     os.chdir(folder)
-    for name in ("HOME", "USERPROFILE"):
-        os.environ[name] = folder
+    os.environ.update({"HOME": folder, "USERPROFILE": folder, VARIABLE: library})
     if memory_bytes is not None:
         import resource
 
