@@ -86,8 +86,10 @@ class CycleMap:
         """Return the state after some periods, both of shape (n,).
 
         Raises:
-            RunFailed: Where the run breaks off.
+            RunFailed: Where the run breaks off, or cannot be started from this.
         """
+        if not np.isfinite(x).all():
+            raise RunFailed("a state that is not finite")
         if self._loaded_V is None or self._junctions_moved(self._loaded_V):
             self._load(self._node_V)
         self.cycles += periods

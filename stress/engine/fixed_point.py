@@ -69,7 +69,7 @@ class Point:
     def best(self) -> Floats:
         """Return the estimate of the fixed point, shape (n,)."""
         matrix = np.eye(self.x.size) - self.jacobian
-        return np.asarray(self.x + np.linalg.solve(matrix, self.y - self.x), dtype=np.float64)
+        return np.asarray(self.x + _solved(matrix, self.y - self.x), dtype=np.float64)
 
 
 def jacobian(

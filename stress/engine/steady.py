@@ -333,7 +333,7 @@ class Search:
         after: Floats | None = None,
     ) -> Point:
         """Search from a state near the fixed point."""
-        return approach(
+        point = approach(
             lambda x: self.counted(phi, x),
             x,
             matrix,
@@ -342,6 +342,9 @@ class Search:
             tolerance=DISTANCE,
             most=most,
         )
+        if point.found and point.x is x and after is not None:
+            self.counted(phi, x)  # the last run was one for the Jacobian
+        return point
 
 
 def groups(deck: Deck) -> tuple[tuple[int, ...], ...]:

@@ -161,7 +161,7 @@ def test_a_switch_that_holds_its_state_takes_the_plain_way(twin_of, pool):
 
     assert answer.proof.method == "plain transient"
     assert "S1 keeps its state over the period" in answer.notices[-1]
-    assert voltage.max() == pytest.approx(10.0, rel=2e-3)
+    assert voltage.max() == pytest.approx(10.0, rel=5e-3)  # charged within a step of 10 us
     assert voltage.min() == pytest.approx(10.0 * math.exp(-off_s / 0.01), rel=1e-2)
 
 
