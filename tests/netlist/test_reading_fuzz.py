@@ -129,7 +129,7 @@ mutations = st.lists(
 
 
 @given(mutations)
-@settings(FUZZ, max_examples=6000)
+@settings(FUZZ, max_examples=4000)
 def test_any_mutation_reads_or_is_refused(changes: list[tuple[int, int, str]]):
     text = GOOD
     for at, cut, piece in changes:
@@ -157,7 +157,7 @@ cards = st.lists(
 
 
 @given(cards)
-@settings(FUZZ, max_examples=4000)
+@settings(FUZZ, max_examples=3000)
 def test_any_cards_read_or_are_refused(lines: list[str]):
     reads_or_refuses("title\n" + "\n".join(lines))
 
@@ -206,7 +206,7 @@ parts = st.sampled_from(
 
 
 @given(st.lists(parts, max_size=14), st.sampled_from(["default", "ps", "lt", "hs"]), st.booleans())
-@settings(FUZZ, max_examples=5000)
+@settings(FUZZ, max_examples=6000)
 def test_any_expression_parses_or_is_refused(pieces: list[str], dialect: str, parametric: bool):
     text = "".join(pieces)
     with within_bounds():
@@ -219,7 +219,7 @@ def test_any_expression_parses_or_is_refused(pieces: list[str], dialect: str, pa
 
 
 @given(st.text(alphabet="0123456789.+-eEdkKmMuµμpnfgGtTrRxVFh,Ω %", max_size=10))
-@settings(FUZZ, max_examples=2500)
+@settings(FUZZ, max_examples=4000)
 def test_any_number_reads_or_is_refused(text: str):
     for quantity in ("R", "C", ""):
         value, at = 0.0, 0
@@ -232,7 +232,7 @@ def test_any_number_reads_or_is_refused(text: str):
 
 
 @given(st.floats(allow_nan=False, allow_infinity=False))
-@settings(FUZZ, max_examples=2500)
+@settings(FUZZ, max_examples=3000)
 def test_numbers_round_trip(value: float):
     assert read_number(repr(value)).value == value
     netlist = read_text(f"t\nV1 a 0 {value!r}\n")
