@@ -176,6 +176,7 @@ class Outline:
                 self.problems.missing.append(Obstacle(refusal.message, span, refusal.hint))
                 return
             if refusal.missing:
+                self.problems.absent = True
                 self.problems.obstacle(refusal.message, span, refusal.hint)
                 return
             raise SourceError(refusal.message, span, refusal.hint) from None

@@ -39,6 +39,7 @@ class Problems:
     Attributes:
         end: File and line of the `.end` card: ngspice reads on behind it, but what is wrong
             there is no error.
+        absent: An include is missing: what it would have defined is no mistake of the text.
         missing: Libraries that are not there; they only matter where something is missing.
     """
 
@@ -47,6 +48,7 @@ class Problems:
     notices: list[Finding] = field(default_factory=list)
     ignored: list[Ignored] = field(default_factory=list)
     end: tuple[str, int] | None = None
+    absent: bool = False
     missing: list[Obstacle] = field(default_factory=list)
     _told: set[tuple[object, ...]] = field(default_factory=set)
 
@@ -64,6 +66,10 @@ class Problems:
             return
         if isinstance(error, Obstacle):
             self.obstacles.append(error)
+            return
+        if (self.absent or self.missing) and "undefined parameter" in error.message:
+            hint = error.hint or "it may be defined in a file that is missing"
+            self.obstacles.append(Obstacle(error.message, span, hint))
             return
         self.errors.append(error)
         if len(self.errors) >= MOST_ERRORS:

@@ -102,6 +102,17 @@ def test_missing_library_does_not_matter_where_nothing_is_missing():
     assert [notice.rule for notice in netlist.notices] == ["missing-library"]
 
 
+def test_names_of_a_missing_include_are_no_mistakes():
+    netlist = read_text("t\n.include values.inc\nR1 a 0 {int(x1)*1R}\nC1 a 0 {c1}\n")
+
+    assert [obstacle.message for obstacle in netlist.obstacles] == [
+        'the file "values.inc" is missing',
+        'undefined parameter "x1"',
+        'undefined parameter "c1"',
+    ]
+    assert [element.name for element in netlist.elements] == ["R1", "C1"]
+
+
 def test_section_that_is_missing_is_named(tmp_path: Path):
     (tmp_path / "c.lib").write_text(".lib fast\n.model dx D\n.endl\n", encoding="utf-8")
     (tmp_path / "set.cir").write_text("t\n.lib c.lib fats\nD1 a 0 dx\n", encoding="utf-8")
