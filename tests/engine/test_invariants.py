@@ -42,7 +42,11 @@ def test_the_period_is_closed_and_proven(solved, circuit):
 
 
 def test_currents_into_every_node_sum_to_zero(solved):
-    """Within 1e-4 of the largest current there, where all elements at the node are known."""
+    """At every instant, where all elements at the node are known, within 1e-3 of the largest.
+
+    A node of 100 V is solved within 1e-6 of it, and 0.1 mV is 0.2 % of a diode's current where
+    that begins to flow. In the mean it is 1e-5.
+    """
     twin, answer = solved
     known = currents(twin, answer.waves)
     nodes = {}
@@ -55,7 +59,8 @@ def test_currents_into_every_node_sum_to_zero(solved):
             continue
         flows = [sign * known[element.name] for element, sign in ends]
         size = max(np.abs(flow).max() for flow in flows)
-        assert np.abs(sum(flows)).max() <= 1e-4 * size, node
+        assert np.abs(sum(flows)).max() <= 1e-3 * size, node
+        assert abs(answer.waves.mean(sum(flows))) <= 1e-5 * size, node
         checked += 1
     assert checked >= 2
 
