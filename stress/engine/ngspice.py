@@ -151,7 +151,7 @@ class Ngspice:
     """The library of this process: decks in, vectors out.
 
     Attributes:
-        seconds: Time spent inside the library so far.
+        seconds: Processor time spent inside the library so far.
     """
 
     def __init__(self) -> None:
@@ -193,10 +193,10 @@ class Ngspice:
             self._do("destroy all")
             self._do("remcirc")
         self._library.printed.clear()
-        started = time.perf_counter()
+        started = time.process_time()
         kept = [self._ffi.new("char[]", line.encode("ascii")) for line in lines]
         status = self._call.ngSpice_Circ(self._ffi.new("char *[]", [*kept, self._ffi.NULL]))
-        self.seconds += time.perf_counter() - started
+        self.seconds += time.process_time() - started
         self._loaded = True
         grave = message.failures(self._library.printed)
         if status or grave or self._library.wants_to_end:
@@ -280,11 +280,11 @@ class Ngspice:
     def _do(self, command: str) -> None:
         if len(command) > LONGEST_COMMAND:
             raise ValueError(f"command of {len(command)} characters")
-        started = time.perf_counter()
+        started = time.process_time()
         self._commands += 1
         if self._commands % HISTORY_CLEARED_EVERY == 0:
             self._call.ngSpice_Command(self._ffi.NULL)
         self._call.ngSpice_Command(command.encode("ascii"))
-        self.seconds += time.perf_counter() - started
+        self.seconds += time.process_time() - started
         if self._library.wants_to_end:
             raise Broken(self._told() or "ngspice asked to end")

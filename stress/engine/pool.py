@@ -34,7 +34,7 @@ REMEMBERED_BYTES = 64_000_000  # of answers, for a case that is asked again
 
 @dataclass(slots=True)
 class Totals:
-    """What a pool has done: distinct cases, those unsolved, all periods, time in ngspice."""
+    """What a pool has done: distinct cases, those unsolved, all periods, processor time in ngspice."""
 
     cases: int = 0
     unsolved: int = 0

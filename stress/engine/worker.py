@@ -72,7 +72,7 @@ class Result:
     Attributes:
         poisoned: Why the process must not be used again, or "".
         cycles: Periods simulated, with those for Jacobians.
-        inside_s: Time spent in ngspice.
+        inside_s: Processor time spent in ngspice.
     """
 
     answer: Answer

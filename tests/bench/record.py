@@ -1,5 +1,6 @@
 """A review whose cases, answers and totals are kept, for the timings."""
 
+import resource
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -15,17 +16,23 @@ RECEIVER, MIDGET = NETLISTS / "shore_receiver.cir", NETLISTS / "harbour_midget.c
 
 @dataclass
 class Log:
-    """What a review asked and got, and what it cost."""
+    """What a review asked and got, and what it cost; processor time is that of all processes."""
 
     asked: list[tuple[Case, Answer]] = field(default_factory=list)
     totals: Totals = field(default_factory=Totals)
     wall_s: float = 0.0
-    solving_s: float = 0.0
+    cpu_s: float = 0.0
 
     @property
     def steady(self) -> list[tuple[Case, Settled]]:
         """Settled states, with their cases."""
         return [(c, a) for c, a in self.asked if isinstance(a, Settled)]
+
+
+def cpu_s() -> float:
+    """Processor time of this process and of all its children that have ended."""
+    kinds = (resource.RUSAGE_SELF, resource.RUSAGE_CHILDREN)
+    return sum(use.ru_utime + use.ru_stime for use in map(resource.getrusage, kinds))
 
 
 def reviewed(path: Path, *, jobs: int, only: tuple[str, ...] = ()) -> Log:
@@ -34,20 +41,19 @@ def reviewed(path: Path, *, jobs: int, only: tuple[str, ...] = ()) -> Log:
 
     class Recording(Pool):
         def solve(self, cases: Iterable[Case]) -> Iterator[Answer]:
-            asked, began = tuple(cases), monotonic()
+            asked = tuple(cases)
             for case, answer in zip(asked, super().solve(asked), strict=True):
                 log.asked.append((case, answer))
                 yield answer
-            log.solving_s += monotonic() - began
             log.totals = self.totals
 
     usual, pipeline.Pool = pipeline.Pool, Recording
-    began = monotonic()
+    began, spent = monotonic(), cpu_s()
     try:
         pipeline.review(path, jobs=jobs, only=only)
     finally:
         pipeline.Pool = usual
-    log.wall_s = monotonic() - began
+    log.wall_s, log.cpu_s = monotonic() - began, cpu_s() - spent
     return log
 
 
