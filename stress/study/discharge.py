@@ -11,17 +11,16 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
-from math import inf, isfinite, log
-
-import numpy as np
+from math import inf
 
 from stress.circuit.circuit import Circuit, Kind, Position
-from stress.engine.case import Case, Floats, Ran, Transient, Twin
+from stress.engine.case import Case, Ran, Transient, Twin
 from stress.engine.solver import Solver
 from stress.engine.twin import MOST_LEAKAGE_OHM, insulation_of
 from stress.study import conditions as stock
 from stress.study import in_place
 from stress.study.discharge_advice import NO_PATH_OHM, advice, cautions, no_bleed
+from stress.study.discharge_fall import decay
 from stress.study.discharge_law import class_V, deadly, energy_J, fall_s, resistor
 from stress.study.discharge_result import (
     COLD,
@@ -40,12 +39,10 @@ from stress.study.working import Healthy, unanswered
 STOPS_S = (2.0, 40.0, 800.0, 16000.0)
 STEPS = 1000  # of each run; each starts anew, so that what falls fast is seen finely
 FAST_S = 1e-3  # a period below this is that of a switching supply
-POINTS = 24
 HOLDS_S = 300.0
 SAME = 0.999  # of the highest voltage
 AC_ONLY = 0.05  # share of the peak below which the mean counts as none
 LEAST_V = 1.0  # positions that never bear more are left out
-SLOWEST_S = 1e6  # a time constant beyond this is not told
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -78,8 +75,8 @@ def discharge(circuit: Circuit, *, healthy: Healthy, solver: Solver) -> Discharg
     )
     for fall in falls:
         failed += fall.failed
-        for name, decay in fall.decays.items():
-            decays[name].append(decay)
+        for name, own in fall.decays.items():
+            decays[name].append(own)
     dry = _without_leakage(healthy.twin)
     around = run(
         [in_place.plan(p, circuit=circuit, twin=dry, test_V=starts[p.name][0]) for p in followed],
@@ -179,7 +176,7 @@ def _follow(
     decays = {}
     for p in positions if runs else ():
         seen = [(r.waves.time_s, abs(r.waves.voltage(*p.nodes))) for r in runs]
-        decays[p.name] = _decay(how, seen)
+        decays[p.name] = decay(how, seen)
     return _Fall(decays=decays, failed=tuple(failed))
 
 
@@ -194,7 +191,7 @@ def _off(
     """Return the run from a settled state with the line at 0 V.
 
     A steady supply is taken away instead, for its plug is out; a switching supply no longer
-    switches: its transistors and switches are taken away as well.
+    switches: its transistors and switches are taken away as well, its gates at rest.
     """
     steady = stock.case(
         circuit, condition, twin=healthy.twin, name=f"off from {condition.name}, {stop_s:g} s"
@@ -212,9 +209,10 @@ def _off(
             if part.kind is Kind.TRANSISTOR
             for name in part.elements
         }
-    quiet = dict.fromkeys((*(sources - direct), *circuit.signals, *circuit.gates), 0.0)
+    quiet = dict.fromkeys((*(sources - direct), *circuit.signals), 0.0)
     return replace(
         steady,
+        twin=_ungated(steady.twin, circuit),
         parent=condition.name,
         values={**steady.values, **quiet},
         removed=frozenset(gone),
@@ -226,67 +224,21 @@ def _off(
     )
 
 
-def _decay(how: str, runs: Sequence[tuple[Floats, Floats]]) -> Decay:
-    """Return the fall of one position out of runs of rising length."""
-    below: dict[float, float | None] = {}
-    beyond = []
-    for threshold in THRESHOLDS_V:
-        below[threshold] = next(
-            (
-                at
-                for time, volts in runs
-                if (at := _stays_below(time, volts, threshold)) is not None
-            ),
-            None,
-        )
-        if below[threshold] is None:
-            below[threshold] = _extrapolated(*runs[-1], threshold)
-            beyond += [threshold] if below[threshold] is not None else []
-    seconds, volts = _thinned(runs)
-    return Decay(
-        how=how,
-        start_V=float(runs[0][1][0]),
-        below_s=below,
-        extrapolated=tuple(beyond),
-        seconds=seconds,
-        volts=volts,
+def _ungated(twin: Twin, circuit: Circuit) -> Twin:
+    """Return the twin with its gate sources at rest.
+
+    A pulse without amplitude would still hold the solver at each of its edges.
+    """
+    gates = {name.lower() for name in circuit.gates}
+    if not gates:
+        return twin
+    return replace(
+        twin,
+        elements=tuple(
+            replace(e, wave=None, value=0.0) if e.name.lower() in gates else e
+            for e in twin.elements
+        ),
     )
-
-
-def _stays_below(time: Floats, volts: Floats, threshold: float) -> float | None:
-    """Return from when on the voltage stays below, between samples on a straight line."""
-    over = np.flatnonzero(volts >= threshold)
-    if over.size == 0:
-        return 0.0
-    last = int(over[-1])
-    if last + 1 >= volts.size:
-        return None
-    share = (volts[last] - threshold) / (volts[last] - volts[last + 1])
-    return float(time[last] + share * (time[last + 1] - time[last]))
-
-
-def _extrapolated(time: Floats, volts: Floats, threshold: float) -> float | None:
-    """Return when it will be below by the time constant of the last fifth, or None."""
-    at = int(np.searchsorted(time, 0.8 * time[-1]))
-    if not volts[at] > volts[-1] > 0.0:
-        return None
-    tau = float((time[-1] - time[at]) / log(volts[at] / volts[-1]))
-    if not isfinite(tau) or tau > SLOWEST_S:
-        return None
-    return float(time[-1] + tau * log(volts[-1] / threshold))
-
-
-def _thinned(
-    runs: Sequence[tuple[Floats, Floats]],
-) -> tuple[tuple[float, ...], tuple[float, ...]]:
-    """Return a few points of the fall, evenly spread on the logarithm of time."""
-    longest = float(runs[-1][0][-1])
-    wanted = np.geomspace(STOPS_S[0] / STEPS, longest, POINTS)
-    found = [(0.0, float(runs[0][1][0]))]
-    for second in wanted:
-        time, volts = next(r for r in runs if second <= r[0][-1] * (1.0 + 1e-9))
-        found.append((float(second), float(np.interp(second, time, volts))))
-    return tuple(t for t, _ in found), tuple(v for _, v in found)
 
 
 def grounded(circuit: Circuit) -> frozenset[str]:
@@ -321,7 +273,7 @@ def _charge(
     past = inf if bleed_ohm is None else bleed_ohm
     together = own if past == inf else own * past / (own + past)
     formula = {v: fall_s(together, farad, start_V=start_V, end_V=v) for v in THRESHOLDS_V}
-    slow = [decay.below_s.get(SAFE_V) for decay in decays] or [formula[SAFE_V]]
+    slow = [own.below_s.get(SAFE_V) for own in decays] or [formula[SAFE_V]]
     back = position.style.absorption
     return Charge(
         position=position.name,
