@@ -19,10 +19,12 @@ class Weight(StrEnum):
     FAILURE = "failure"
 
 
-# First match decides; failures stand first, so that no note can hide one.
+# First match decides; failures stand before notes, so that none can hide one.
 _TABLE: tuple[tuple[Weight, re.Pattern[str]], ...] = tuple(
     (weight, re.compile(pattern, re.IGNORECASE))
     for weight, pattern in (
+        # Printed for one try of a step; the step is cut and tried again.
+        (Weight.WARNING, r"out of range for"),
         (Weight.FAILURE, r"simulation\(s\) aborted"),
         (Weight.FAILURE, r"time ?step too small"),
         (Weight.FAILURE, r"transient op failed"),

@@ -11,6 +11,7 @@ SEEN = [
     ("No. of Data Rows : 0", Weight.FAILURE),
     ("No. of Data Rows : 251", Weight.NOTE),
     ("Error on line 3 : r1 a", Weight.FAILURE),
+    ("Error: 4.79955e+252, 2 out of range for ^", Weight.WARNING),
     ("Note: Starting dynamic gmin stepping", Weight.NOTE),
     ("Note: can't find init file.", Weight.NOTE),
     ("Using SPARSE 1.3 as Direct Linear Solver", Weight.NOTE),
