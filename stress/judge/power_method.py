@@ -275,7 +275,10 @@ def _before(circuit: Circuit, build: Build) -> list[str]:
             "minutes. Then put it back."
         )
     elif build.silicon:
-        found.append("The rectifier cannot be pulled: B+ is there from the first step on.")
+        found.append(
+            "The rectifier cannot be pulled, B+ is there from the first step on: first with the "
+            "output tubes out, as far as the ratings bear the unloaded voltage, then with them."
+        )
     if build.mercury:
         found.append(
             "Mercury-vapour rectifiers: filament alone at full voltage for half a minute at "

@@ -13,6 +13,7 @@ from stress.judge.power_caution import power_cautions
 from stress.judge.power_method import look, method
 from stress.study import conditions as stock
 from stress.study.between import leaks_between
+from stress.study.fault import across_ideal_source
 from stress.study.lamp import lamp
 from stress.study.power_danger import dangers
 from stress.study.power_ohms import ohm_probes, ohm_step
@@ -121,4 +122,10 @@ def _missing(circuit: Circuit) -> tuple[str, ...]:
         )
     if circuit.line.sources and not windings:
         found.append("No transformer is drawn: its magnetising current and losses are missing.")
+    across = [p.name for p in circuit.positions if across_ideal_source(circuit, p)]
+    if across:
+        found.append(
+            f"{', '.join(across)}: right across a source that nothing in the netlist limits; a "
+            "short there blows the fuse before any reading warns. Test the part first."
+        )
     return tuple(found)

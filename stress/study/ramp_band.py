@@ -22,8 +22,9 @@ from stress.study.power_probe import meter_ohm, read, resolution
 from stress.study.power_result import Band, Kind, Probe
 
 SEED, SAMPLES = 1, 16
+FAST_S, FEW = 1e-3, 8  # a switching supply settles slowly: fewer samples, a wider band
 PARTS_OFF, LINE_OFF = 0.10, 0.05
-DEVIATIONS = 4.5
+DEVIATIONS, DOUBT = 3.5, 16.0  # of the rest: so many, and more the fewer samples tell
 CARRIED = 1.1  # allowance for a spread taken over from a neighbour
 NO_METER_OHM = 1e11
 FELT = 0.005  # share of a reading by which a meter's load must change it to be solved everywhere
@@ -62,9 +63,12 @@ def _is_part(element: Element, devices: set[str]) -> bool:
 
 
 def sample_cases(
-    circuit: Circuit, healthy: Case, *, seed: int = SEED, count: int = SAMPLES
+    circuit: Circuit, healthy: Case, *, seed: int = SEED, count: int | None = None
 ) -> list[tuple[Case, float]]:
     """Return sampled relatives of a healthy case, and the factor on the line of each."""
+    if count is None:
+        fast = circuit.period_s is not None and circuit.period_s < FAST_S
+        count = FEW if fast else SAMPLES
     chance = random.Random(f"{seed} {healthy.name}")
     found = []
     for index in range(count):
@@ -150,7 +154,8 @@ def _spread(values: Floats, lines: Floats) -> tuple[float, float]:
         return -np.inf, np.inf
     slope, level = np.polyfit(lines, values, 1)
     rest = values - (level + slope * lines)
-    width = abs(slope) * LINE_OFF + DEVIATIONS * sqrt(float(rest @ rest) / (values.size - 2))
+    deviation = sqrt(float(rest @ rest) / (values.size - 2))
+    width = abs(slope) * LINE_OFF + (DEVIATIONS + DOUBT / values.size) * deviation
     return float(min(level - width, values.min())), float(max(level + width, values.max()))
 
 
