@@ -216,7 +216,10 @@ class Ran:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Response:
-    """A small-signal response: complex values of shape (k, number of frequencies)."""
+    """A small-signal response: complex values of shape (k, number of frequencies).
+
+    A current that ngspice does not give there (of a diode or transistor) is nan.
+    """
 
     case: str
     frequencies_Hz: Floats
