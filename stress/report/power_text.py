@@ -116,7 +116,11 @@ def _clean(value: float) -> float:
 def _step(step: Step, probes: dict[str, Probe], out: Lines) -> None:
     line = amount(step.ramp.line_V, "V", missing="its own sources")
     if not step.ramp.share:
-        out.heading("Plug out, discharged, ohmmeter against the common node")
+        out.heading("Plug out, discharged, ohmmeter against the common node where none is named")
+        out.line(
+            "Electrolytics that stood for years read low at first: let the meter charge them.",
+            indent=2,
+        )
     else:
         out.heading(f"{_percent(step)}: {line}" + (f"; {step.text}" if step.text else ""))
     for stop in step.aborts:

@@ -70,7 +70,7 @@ class Probe:
     Attributes:
         key: Unique, such as "b0 DC".
         kind: What the meter is set to.
-        node: Measured against the common node; "" for the line.
+        node: Measured against `against`, the common node but for an ohmmeter; "" for the line.
         text: Where that is, in words.
         effort: 0 at the line, 1 at a terminal of the supply, 2 at a tube's cathode or screen,
             3 at a grid or plate: what has to be opened and how easily a probe slips.
@@ -83,6 +83,7 @@ class Probe:
     text: str
     effort: int
     forbidden: str = ""
+    against: str = "0"
 
     @property
     def unit(self) -> str:
