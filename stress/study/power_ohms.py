@@ -11,7 +11,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from math import inf
 
-from stress.circuit.circuit import Circuit, Position
+from stress.circuit.circuit import Circuit, Position, Role
 from stress.engine.case import Case, Settled, Steady
 from stress.engine.solver import Solver
 from stress.netlist.flat import Element
@@ -23,7 +23,7 @@ from stress.study.power_result import Band, Danger, Kind, Probe, RampStep, Seen
 from stress.study.working import Healthy
 
 NAME = "plug out"
-SHARE = 0.5  # of the healthy resistance, and the largest limit that is told (common practice)
+SHARE = 0.7  # of the healthy resistance, and the largest limit that is told (common practice)
 MOST_OHM = 50e3
 METER_OHM = 100.0  # in series with the test voltage
 NOTHING_OHM = 20e6  # what a meter shows as open
@@ -32,12 +32,12 @@ _SOURCE, _SERIES = "Vohms#meter", "Rohms#meter"
 
 
 def ohm_probes(circuit: Circuit) -> tuple[Probe, ...]:
-    """Return where an ohmmeter is put: the plug, supply nodes, the sections of every can."""
+    """Return where an ohmmeter is put: plug, supply nodes, bypassed cathodes, sections of cans."""
     found: dict[str, Probe] = {}
     for a, b in _plug(circuit):
         found[f"{a} to {b}"] = _probe(a, b, f"at the plug, {a} to {b}")
     for position in circuit.positions:
-        if position.role in SUPPLY:
+        if position.role in SUPPLY or position.role is Role.CATHODE_BYPASS:
             for node in position.nodes:
                 if node != "0" and node not in found:
                     found[node] = _probe(node, "0", f"at {position.name} ({node})")
