@@ -13,8 +13,8 @@ from stress.study.power_result import Peak, SwitchOn
 from stress.study.result import Unanswered
 from stress.study.working import Healthy, unanswered
 
-SECONDS = 0.25  # the charging pulses; the swing of the filter is in the cold run
-PHASES_DEG = (0.0, 45.0, 90.0, 135.0)
+SECONDS = 0.12  # the charging pulses; the swing of the filter is in the cold run
+PHASES_DEG = tuple(45.0 * k for k in range(8))
 PEAKS = frozenset({Kind.RECTIFIER, Kind.DIODE})
 
 
