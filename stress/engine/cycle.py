@@ -23,6 +23,8 @@ OPTIONS = "method=gear trtol=1e7 itl4=100"
 FINE = 1e-6
 MOVED_V = 0.01  # of a junction, before its start is renewed
 MOVED_SHARE = 1e-4
+FAST_F = 2e-7  # farad per second of period: smaller capacitors are tested in groups
+FAST_H = 0.1  # henry per second of period, likewise
 
 
 @dataclass(frozen=True, slots=True)
@@ -167,3 +169,12 @@ def end_state(ngspice: Ngspice, deck: Deck) -> Floats:
             plus = last(state.plus) if state.plus != "0" else 0.0
             end[at] = plus - (last(state.minus) if state.minus != "0" else 0.0)
     return end
+
+
+def groups(deck: Deck) -> tuple[tuple[int, ...], ...]:
+    """Return which states are tested together for a Jacobian: the quick ones, by their size."""
+    period_s = deck.period_s or 1.0
+    least = {"C": FAST_F * period_s, "L": FAST_H * period_s}
+    quick = [at for at, state in enumerate(deck.states) if state.size < least[state.kind]]
+    slow = [at for at in range(len(deck.states)) if at not in set(quick)]
+    return (tuple(quick), *((at,) for at in slow))

@@ -9,7 +9,7 @@ from dataclasses import replace
 import numpy as np
 
 from stress.engine.case import Answer, Floats, Proof, Settled, Wandering, Waves
-from stress.engine.cycle import CycleMap, Grid, end_state
+from stress.engine.cycle import CycleMap, Grid, end_state, groups
 from stress.engine.deck import Deck
 from stress.engine.fixed_point import Point, approach, directional, jacobian, spectral_radius
 from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
@@ -34,9 +34,7 @@ COARSE_TURNS = 2  # before the grid is made finer
 WARM_CYCLES = 14
 UNSTABLE = 1.01
 REFUTATIONS = 3  # of a multiplier that looks unstable, before a whole Jacobian
-FAST_F = 2e-7  # farad per second of period: smaller capacitors are tested in groups
-FAST_H = 0.1  # henry per second of period, likewise
-AFAR = 1e-3  # the same for what can only be run from rest
+AFAR = 1e-3  # accepted distance for what can only be run from rest
 FINEST = 1920  # points a period
 
 
@@ -345,12 +343,3 @@ class Search:
         if point.found and point.x is x and after is not None:
             self.counted(phi, x)  # the last run was one for the Jacobian
         return point
-
-
-def groups(deck: Deck) -> tuple[tuple[int, ...], ...]:
-    """Return which states are tested together for a Jacobian: the quick ones, by their size."""
-    period_s = deck.period_s or 1.0
-    least = {"C": FAST_F * period_s, "L": FAST_H * period_s}
-    quick = [at for at, state in enumerate(deck.states) if state.size < least[state.kind]]
-    slow = [at for at in range(len(deck.states)) if at not in set(quick)]
-    return (tuple(quick), *((at,) for at in slow))
