@@ -156,5 +156,5 @@ def test_a_dried_feedback_reservoir_raises_the_outputs(run):
     opened = run("charthouse_smps", C10=22e-6 * 1e-9)
 
     assert mean(sound, "v12") == pytest.approx(12.0, rel=0.03)
-    assert mean(opened, "v12") > 1.25 * mean(sound, "v12")
-    assert mean(opened, "v170") > 1.2 * mean(sound, "v170")
+    assert mean(opened, "v12") > 1.15 * mean(sound, "v12")
+    assert mean(opened, "v170") > 1.15 * mean(sound, "v170")

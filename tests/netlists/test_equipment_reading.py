@@ -113,8 +113,8 @@ SEEN = [
     Seen("beacon_transmitter", "C4", Role.RESERVOIR),
     Seen("beacon_transmitter", "C17", Role.SNUBBER),
     Seen("charthouse_smps", "C5", Role.OUTPUT_FILTER),
-    Seen("charthouse_smps", "C3", Role.SNUBBER),
-    Seen("charthouse_smps", "C12", Role.FEEDBACK),
+    Seen("charthouse_smps", "C4", Role.SNUBBER),
+    Seen("charthouse_smps", "C13", Role.FEEDBACK),
 ]
 
 
