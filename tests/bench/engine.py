@@ -170,7 +170,7 @@ def outside(log: Log, name: str) -> Line:
 
 
 def stages(count: int) -> Twin:
-    """Return resistance-coupled triode stages, two capacitors each, on one rectifier."""
+    """Return triode stages side by side, two capacitors each, on one rectifier."""
     cards = ["* t", "Vac a 0 SIN(0 300 50)", "Rs a b 50", "D1 b bp DM", "C0 bp 0 47u"]
     cards.append(".model DM D(IS=1n N=1.8)")
     for n in range(count // 2):
@@ -179,10 +179,11 @@ def stages(count: int) -> Twin:
             f"B{n} p{n} k{n} I=1m*pow(max(V(g{n},k{n})+V(p{n},k{n})/50,0),1.5)",
             f"Rk{n} k{n} 0 1.5k",
             f"Ck{n} k{n} 0 10u",
-            f"Cc{n} p{n} g{n + 1} 10n",
+            f"Cc{n} p{n} o{n} 10n",
+            f"Ro{n} o{n} 0 470k",
             f"Rg{n} g{n} 0 470k",
         ]
-    cards += [f"Rg{count // 2} g{count // 2} 0 470k", ".end"]
+    cards.append(".end")
     with tempfile.TemporaryDirectory() as folder:
         path = Path(folder) / "stages.cir"
         path.write_text("\n".join(cards), encoding="ascii")
@@ -196,7 +197,7 @@ def growth() -> Line:
         twin = stages(size)
         cases = [Case(name="root", twin=twin)]
         cases += [
-            Case(name=f"{n}", twin=twin, parent="root", values={f"Rg{n % (size // 2)}": 3e5})
+            Case(name=f"{n}", twin=twin, parent="root", values={f"Ro{n % (size // 2)}": 3e5})
             for n in range(24)
         ]
         with Pool(jobs=1) as pool:
@@ -248,7 +249,7 @@ def memory(count: int) -> Line:
         for start in range(0, count, count // 5):
             list(
                 pool.solve(
-                    Case(name=f"{n}", twin=twin, parent="root", values={"Rg1": 3e5 + n % 7})
+                    Case(name=f"{n}", twin=twin, parent="root", values={"Ro1": 3e5 + n % 7})
                     for n in range(start, start + count // 5)
                 )
             )
