@@ -50,6 +50,7 @@ def power_up(
     nominal = healthy.settled.get(stock.NOMINAL)
     nodes = {n: v[stock.NOMINAL] for n, v in healthy.working.nodes.items() if stock.NOMINAL in v}
     way = method(circuit, nodes=nodes)
+    hot = frozenset(look(circuit, nodes=nodes).mercury)
     found = dangers(leakage, failures)
     climbed = ramp(
         circuit,
@@ -58,7 +59,7 @@ def power_up(
         probes=probes(circuit, nominal=nominal),
         solver=solver,
         shares=tuple(shares) or way.shares,
-        preheated=frozenset(look(circuit, nodes=nodes).mercury),
+        preheated=hot,
     )
     ohms = ohm_probes(circuit)
     dead = ohm_step(
@@ -78,6 +79,7 @@ def power_up(
             dangers=found,
             power_W=_power_W(climbed),
             solver=solver,
+            preheated=hot,
         )
     first = switch_on(circuit, healthy=healthy, solver=solver)
     return PowerUp(
@@ -99,6 +101,7 @@ def power_up(
             *(u for step in climbed.steps for u in step.unanswered),
             *(s.unanswered for step in climbed.steps for s in step.seen if s.unanswered),
             *(first.unanswered if first else ()),
+            *(r.unanswered for r in (bulb.faulty if bulb else ()) if r.unanswered),
         ),
     )
 

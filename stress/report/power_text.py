@@ -137,6 +137,8 @@ def _step(step: Step, probes: dict[str, Probe], out: Lines) -> None:
 
 def _abort(stop: Abort, probe: Probe) -> str:
     side = "above" if stop.above else "below"
+    if stop.limit < 0.0:
+        side = "less negative than" if stop.above else "more negative than"
     what = f"{probe.kind.value} {probe.text}" if probe.node else probe.text
     return f"{what} {side} {figure(stop.limit, probe.unit)}: {_names(stop.tells)}"
 
@@ -170,7 +172,7 @@ def _lamp(lamp: Lamp, out: Lines) -> None:
 def _lamp_row(reading: LampReading) -> list[str]:
     name = reading.fault or "everything healthy"
     if reading.unanswered is not None:
-        return [name, reading.unanswered.kind, "-", "-", "-", "-"]
+        return [name, "-", "-", "-", "-", reading.unanswered.kind]
     supply = max(reading.supply_V.values(), default=0.0)
     return [
         name,

@@ -24,14 +24,14 @@ from stress.study.plan import Plan, run
 from stress.study.power_probe import SUPPLY
 from stress.study.power_result import Danger, Lamp, LampReading
 from stress.study.ramp import emitted, factors
-from stress.study.result import Condition
+from stress.study.result import Condition, Unanswered
 from stress.study.working import Healthy, unanswered
 
 EXPONENT = 0.55  # of current against voltage
 COLD_SHARE = 1.0 / 12.0
 RATINGS_W = (15.0, 25.0, 40.0, 60.0, 100.0, 150.0, 200.0, 300.0, 500.0)
 FACTOR = 1.25  # of the equipment's power: enough left to work, little enough to be safe
-ROUNDS, CLOSE = 6, 0.02
+ROUNDS, CLOSE = 8, 0.02
 GLOWS, MORE = 0.2, 1.25  # of rated voltage from which a filament shows, and what is seen as more
 LAMP = "Rlamp#series"
 MOST_FAULTS = 10
@@ -47,6 +47,7 @@ class _Bench:
     source: str
     rated_W: float
     positions: Mapping[str, Position]
+    preheated: frozenset[str]
 
 
 def resistance_ohm(volts: float, *, rated_W: float, rated_V: float) -> float:
@@ -68,6 +69,7 @@ def lamp(
     dangers: Sequence[Danger],
     power_W: float | None,
     solver: Solver,
+    preheated: frozenset[str] = frozenset(),
 ) -> Lamp | None:
     """Return the lamp and its readings; None where it cannot be put in series in the netlist.
 
@@ -77,6 +79,7 @@ def lamp(
         dangers: Of each position the worst one is tried, at most ten positions.
         power_W: What the healthy equipment takes from the line.
         solver: Solves the repetitions side by side.
+        preheated: Parts whose filaments have full voltage, whatever the lamp leaves.
     """
     if len(circuit.line.sources) != 1 or power_W is None:
         return None
@@ -89,6 +92,7 @@ def lamp(
         source=source,
         rated_W=rating_W(power_W),
         positions={p.name: p for p in (*circuit.positions, *leaks_between(circuit))},
+        preheated=preheated,
     )
     tried = _worst(dangers, coupling=frozenset(_coupling(circuit)))
     (first,) = run([_settle(bench, None, near=None)], solver=solver)
@@ -163,10 +167,13 @@ def _settle(bench: _Bench, danger: Danger | None, *, near: LampReading | None) -
         )
         close = CLOSE * nominal_V
         if abs(across - lamp_V) < close and abs(left - share * nominal_V) < close:
-            break
+            return reading
         # The heaters follow slowly, and their tubes pull the other way: go half the way.
         parent, lamp_V, share = case.name, across, (share + left / nominal_V) / 2.0
-    return reading
+    text = "lamp and heaters pull each other up and down: it flickers"
+    return replace(
+        reading, unanswered=Unanswered(case=case.name, kind="does not settle", text=text)
+    )
 
 
 def _case(
@@ -180,7 +187,7 @@ def _case(
 ) -> Case:
     circuit = bench.circuit
     warm = {
-        part.name: emitted(circuit, part, share)
+        part.name: 1.0 if part.name in bench.preheated else emitted(circuit, part, share)
         for part in circuit.parts
         if part.kind in (Kind.TUBE, Kind.RECTIFIER)
     }
