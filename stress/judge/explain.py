@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from stress.circuit.chain import Chains, Step
-from stress.circuit.circuit import Circuit, Position
+from stress.circuit.circuit import Circuit, Kind, Position
 from stress.finding import Severity
 from stress.judge.curve import nearest
 from stress.judge.grid_reading import grid_reading
@@ -25,6 +25,7 @@ from stress.study.result import (
 )
 from stress.text.figure import figure
 
+LEAST_LEAK_A = 1e-7
 NO_VOLTAGE_V = 1e-3  # less is none to a technician
 DO = {
     Severity.REPLACE: "replace before any power",
@@ -174,23 +175,32 @@ def leak_chain(position: Position, *, chains: Chains, working: Working, found: L
         for node, volts in working.nodes.items()
         if found.condition in volts
     }
-    links = [f"{position.name} leaks {figure(point.leak_A, 'A')}"]
+    steady = point.leak_A > LEAST_LEAK_A  # at the line the mean is none
+    links = [f"{position.name} leaks" + (f" {figure(point.leak_A, 'A')}" if steady else "")]
+    rectifiers = {n for n, kind in chains.kinds.items() if kind is Kind.RECTIFIER}
     for step in chains.steps(position.name, victim.part)[1:-1]:
         if step.kind == "node" and not step.text.startswith("node "):
-            links.append(_node(step, point, healthy))
+            if step.text.rpartition(" ")[2] not in rectifiers:
+                links.append(_node(step, point, healthy))
         elif step.kind == "part":
-            was = working.parts.get(step.name, {}).get(found.condition, {}).get("cathode_A")
-            now = point.stresses.get(step.name, {}).get("cathode_A")
-            if was is not None and now is not None:
-                links.append(
-                    f"{step.name} cathode current {figure(was, 'A')} to {figure(now, 'A')}"
-                )
+            links += _current(step.name, point, working, found.condition)
+    if victim.quantity != "cathode_A":
+        links += _current(victim.part, point, working, found.condition)
     if victim.healthy is not None and victim.quantity in ("cathode_A", "plate_W", "screen_W"):
         unit = victim.quantity.rpartition("_")[2]
         links.append(f"{describe(victim)}, healthy {figure(victim.healthy, unit)}")
     else:
         links.append(describe(victim))
     return " -> ".join(links)
+
+
+def _current(tube: str, point: CurvePoint, working: Working, condition: str) -> list[str]:
+    """Return how the cathode current of a tube has moved; nothing for another part."""
+    was = working.parts.get(tube, {}).get(condition, {}).get("cathode_A")
+    now = point.stresses.get(tube, {}).get("cathode_A")
+    if was is None or now is None:
+        return []
+    return [f"{tube} cathode current {figure(was, 'A')} to {figure(now, 'A')}"]
 
 
 def _node(step: Step, point: CurvePoint, healthy: Mapping[str, float]) -> str:
