@@ -14,6 +14,7 @@ from stress.study.result import Unanswered
 from stress.study.working import Healthy, unanswered
 
 SECONDS = 0.12  # the charging pulses; the swing of the filter is in the cold run
+MOST_PERIODS = 400.0  # of a switching supply
 PHASES_DEG = tuple(45.0 * k for k in range(8))
 PEAKS = frozenset({Kind.RECTIFIER, Kind.DIODE})
 
@@ -32,12 +33,15 @@ def switch_on(circuit: Circuit, *, healthy: Healthy, solver: Solver) -> SwitchOn
         for c in working.conditions
         if c.name == (stock.HIGH if circuit.line.sources else stock.NOMINAL)
     )
+    stop_s = min(SECONDS, MOST_PERIODS * circuit.period_s)
+    waves = [e.wave for e in circuit.netlist.elements if e.name in circuit.line.sources]
+    phases = PHASES_DEG if any(wave is not None for wave in waves) else PHASES_DEG[:1]
     cases = [
         replace(
             stock.case(circuit, high, twin=healthy.twin, name=f"hot restart at {phase:g}°"),
-            analysis=Transient(stop_s=max(SECONDS, 4.0 * circuit.period_s), phase_deg=phase),
+            analysis=Transient(stop_s=stop_s, phase_deg=phase),
         )
-        for phase in (PHASES_DEG if circuit.line.sources else PHASES_DEG[:1])
+        for phase in phases
     ]
     hot: dict[tuple[str, str], tuple[float, float]] = {}
     failed: list[Unanswered] = []
@@ -63,7 +67,7 @@ def switch_on(circuit: Circuit, *, healthy: Healthy, solver: Solver) -> SwitchOn
             for name in ("peak_A", "reverse_V"):
                 cold = working.inrush_parts.get(part.name, {}).get(name)
                 peaks.append(_peak(part.name, name, cold, None, hot))
-    return SwitchOn(peaks=tuple(peaks), seconds=SECONDS, unanswered=tuple(failed))
+    return SwitchOn(peaks=tuple(peaks), seconds=stop_s, unanswered=tuple(failed))
 
 
 def _take(
