@@ -31,9 +31,7 @@ class Commands(click.Group):
         """Return the command of that name, or None."""
         if cmd_name not in COMMANDS:
             return None
-        command: click.Command = getattr(
-            import_module(f"stress.command.{cmd_name}"), cmd_name
-        )
+        command: click.Command = getattr(import_module(f"stress.command.{cmd_name}"), cmd_name)
         return command
 
     def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:

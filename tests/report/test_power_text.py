@@ -88,7 +88,9 @@ def printed():
         missing=("Iron loss.",),
     )  # fmt: skip
     netlist = Netlist(path="set.cir", title="set", elements=())
-    circuit = Circuit(netlist=netlist, sheet=Sheet(), name="Set", positions=(), parts=(), line=Line())
+    circuit = Circuit(
+        netlist=netlist, sheet=Sheet(), name="Set", positions=(), parts=(), line=Line()
+    )
     out = StringIO()
     print_power_up(plan, circuit, Console(file=out, width=100))
     return " ".join(out.getvalue().split())
