@@ -17,7 +17,8 @@ HIGH_V = 1000.0
 def power_cautions(circuit: Circuit, *, working: Working) -> tuple[str, ...]:
     """Return the cautions of a first power-up, those of the review first."""
     found = list(cautions(circuit, working=working))
-    if circuit.line.sources:
+    sources = {name.lower() for name in circuit.line.sources}
+    if any(e.name.lower() in sources and e.wave for e in circuit.netlist.elements):
         found.append(
             "An isolation transformer stands before the variable one, which isolates nothing; a "
             "residual-current device does not protect behind it."

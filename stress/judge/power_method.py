@@ -302,7 +302,10 @@ def _switching(circuit: Circuit, build: Build) -> Method:
         way=Way.DIRECT_CURRENT,
         text="Bench supply of direct current with a current limit, set to the full low-line "
         "voltage at once; a converter takes constant power, so low line means high current.",
-        reasons=("a switching converter: input current rises as the input voltage falls",),
+        reasons=(
+            "a switching converter: its input current rises as its input voltage falls, unless "
+            "something regulates before it",
+        ),
         before=(
             OHMS,
             "Load every output as the sheet says; measure outputs only, on their own terminals.",
