@@ -124,8 +124,8 @@ class Expansion:
             self.problems.notice(
                 "built-in-type",
                 name,
-                f"{name}: the netlist has no subcircuit {call.words[at].text}; the model of the "
-                "part table is used",
+                f"the netlist has no subcircuit {call.words[at].text}; the model of the part table "
+                "is used",
                 span,
                 "include a model file to use another model",
             )

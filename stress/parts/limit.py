@@ -33,6 +33,25 @@ STRESSES = {
     "ripple_A": "A",
 }
 
+# What the trade calls them.
+QUANTITIES = {
+    "plate_W": "plate dissipation",
+    "screen_W": "screen dissipation",
+    "grid_W": "grid dissipation",
+    "grid_A": "grid current",
+    "cathode_A": "cathode current",
+    "plate_V": "plate voltage",
+    "screen_V": "screen voltage",
+    "heater_cathode_V": "heater-cathode voltage",
+    "power_W": "power",
+    "voltage_V": "voltage",
+    "current_A": "current",
+    "average_A": "average current",
+    "peak_A": "peak current",
+    "reverse_V": "reverse voltage",
+    "ripple_A": "ripple current",
+}
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Limit:

@@ -7,7 +7,7 @@ import unicodedata
 
 from stress.circuit.circuit import Position
 from stress.finding import Severity
-from stress.parts.limit import STRESSES
+from stress.parts.limit import QUANTITIES, STRESSES
 from stress.study.result import LeakageIn, Replacement, Review, Victim
 from stress.text.figure import figure
 
@@ -27,24 +27,6 @@ SEVERITIES = {
     Severity.TEST: "test before power",
     Severity.WATCH: "watch",
     Severity.NOTE: "note",
-}
-
-QUANTITIES = {
-    "plate_W": "plate dissipation",
-    "screen_W": "screen dissipation",
-    "grid_W": "grid dissipation",
-    "grid_A": "grid current",
-    "cathode_A": "cathode current",
-    "plate_V": "plate voltage",
-    "screen_V": "screen voltage",
-    "heater_cathode_V": "heater-cathode voltage",
-    "power_W": "power",
-    "voltage_V": "voltage",
-    "current_A": "current",
-    "average_A": "average current",
-    "peak_A": "peak current",
-    "reverse_V": "reverse voltage",
-    "ripple_A": "ripple current",
 }
 
 

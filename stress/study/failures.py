@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from stress.circuit.circuit import Circuit, Kind, Position, Role
 from stress.engine.case import Answer, Case, Settled
 from stress.engine.solver import Solver
+from stress.parts.limit import QUANTITIES
 from stress.study import conditions as stock
 from stress.study.damage_time import timed
 from stress.study.fault import Fault, across_ideal_source, values
@@ -247,28 +248,9 @@ def _text(
 def describe(victim: Victim) -> str:
     """Return a victim in words: who, what, how much, of which limit."""
     unit = victim.quantity.rsplit("_", 1)[1]
-    name = NAMES.get(victim.quantity, victim.quantity)
+    name = QUANTITIES.get(victim.quantity, victim.quantity)
     assumed = " (assumed)" if victim.limit.assumed else ""
     return (
         f"{victim.part} {name} {figure(victim.stress, unit)}, "
         f"limit {figure(victim.limit.value, unit)}{assumed}"
     )
-
-
-NAMES = {
-    "plate_W": "plate dissipation",
-    "screen_W": "screen dissipation",
-    "grid_W": "grid dissipation",
-    "grid_A": "grid current",
-    "cathode_A": "cathode current",
-    "plate_V": "plate voltage",
-    "screen_V": "screen voltage",
-    "heater_cathode_V": "heater-cathode voltage",
-    "power_W": "power",
-    "voltage_V": "voltage",
-    "current_A": "current",
-    "average_A": "average current",
-    "peak_A": "peak current",
-    "reverse_V": "inverse voltage",
-    "ripple_A": "ripple current",
-}
