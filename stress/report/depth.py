@@ -28,11 +28,11 @@ def print_leak(review: Review, name: str, console: Console) -> None:
         mark = ", governs" if found.governs else ""
         console.print()
         console.print(Text(f"{found.condition}{mark}", style="bold"))
-        console.print(Text(f"  damage from {critical(found)}", overflow="fold"))
+        console.print(Text(f"  damage below: {critical(found)}", overflow="fold"))
         if found.victim is not None:
             console.print(Text(f"  {victim(found.victim)}", overflow="fold"))
         reason = f": {found.functional_reason}" if found.functional_reason else ""
-        console.print(Text(f"  off its working point from {functional(found)}{reason}"))
+        console.print(Text(f"  off its working point below: {functional(found)}{reason}"))
         _curve(review, found, console)
     _explanation(review, position, console)
 
@@ -86,7 +86,7 @@ def _curve(review: Review, found: LeakageIn, console: Console) -> None:
                 for point in found.curve
                 if name in point.stresses.get(part, {})
             ]
-            curves.append((f"{part} {quantity(name)} over its limit", shares))
+            curves.append((f"{part} {quantity(name)}, share of its limit", shares))
     for line in plot(curves, width=min(console.width, 100)):
         console.print(Text(line), no_wrap=True)
 

@@ -42,7 +42,7 @@ def print_fitted(before: Review, after: Review, console: Console) -> None:
             _damage(after, old.name),
         )
     console.print(table)
-    print_change(before, after, console, title=TITLE)
+    print_change(before, after, console, title="What that changes in the order of work")
 
 
 def _margin(review: Review, name: str, rated_V: float | None) -> str:
