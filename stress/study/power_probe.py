@@ -34,6 +34,7 @@ PULSE_PERIOD_S, PULSE_V = 1e-3, 50.0
 # How well a reading is known: share of it, and a floor (common practice for handheld meters).
 DIGITAL = {Kind.DC_V: (0.01, 0.1), Kind.AC_V: (0.03, 0.2), Kind.LINE_A: (0.02, 0.01)}
 DIGITAL[Kind.LINE_W] = (0.02, 1.0)
+OSCILLOSCOPE = (0.03, 0.02)  # for ripple that is too fast for a handheld meter
 COIL_SHARE = 0.03  # of full scale, for a moving-coil meter
 COIL_RANGES_V = (3.0, 10.0, 30.0, 100.0, 300.0, 1000.0)
 
@@ -64,7 +65,8 @@ def probes(circuit: Circuit, *, nominal: Settled | None) -> tuple[Probe, ...]:
                 if node != "0":
                     text = f"at {position.name} ({node})"
                     add(Kind.DC_V, node, text, 1)
-                    add(Kind.AC_V, node, text, 1)
+                    scope = ", by oscilloscope" if _fast(circuit) else ""
+                    add(Kind.AC_V, node, text + scope, 1)
     for part in circuit.parts:
         if part.kind not in (PartKind.TUBE, PartKind.TRANSISTOR):
             continue
@@ -83,10 +85,13 @@ def forbidden(circuit: Circuit, node: str, nominal: Settled | None) -> str:
     peak, swing = float(np.abs(volts).max()), float(np.ptp(volts))
     if peak > METER_MOST_V:
         return f"{peak:.0f} V peak, more than a handheld meter stands"
-    fast = circuit.period_s is not None and circuit.period_s < PULSE_PERIOD_S
-    if fast and swing > PULSE_V:
+    if _fast(circuit) and swing > PULSE_V:
         return f"fast pulses of {swing:.0f} V"
     return ""
+
+
+def _fast(circuit: Circuit) -> bool:
+    return circuit.period_s is not None and circuit.period_s < PULSE_PERIOD_S
 
 
 def read(probes: tuple[Probe, ...], waves: Waves, *, circuit: Circuit) -> Mapping[str, float]:
@@ -114,8 +119,12 @@ def _delivered(source: str, waves: Waves, circuit: Circuit) -> float:
     return -waves.mean(waves.voltage(nodes[0], nodes[1]) * waves.current(source))
 
 
-def resolution(probe: Probe, value: float, *, sheet: Sheet) -> float:
+def resolution(probe: Probe, value: float, *, circuit: Circuit) -> float:
     """Return by how much a reading may be off on the user's meter, in the probe's unit."""
+    sheet = circuit.sheet
+    if probe.kind is Kind.AC_V and _fast(circuit):
+        share, floor = OSCILLOSCOPE
+        return share * abs(value) + floor
     if sheet.meter_ohm_per_V is not None and probe.kind in (Kind.DC_V, Kind.AC_V):
         return COIL_SHARE * _range(value)
     share, floor = DIGITAL[probe.kind]

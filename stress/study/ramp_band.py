@@ -98,7 +98,7 @@ def bands(
         if probe.forbidden:
             continue
         value = drawn[probe.key]
-        own = resolution(probe, value, sheet=circuit.sheet)
+        own = resolution(probe, value, circuit=circuit)
         below, above = _spread(
             np.array([row[probe.key] for row, _ in rows]),
             np.array([line - 1.0 for _, line in rows]),
