@@ -1,8 +1,8 @@
 """At which leakage a position damages its neighbours, and at which the equipment limps.
 
 Swept on the logarithm of the leakage resistance from the insulation down to 1 Ω, a decade at a
-time, halved where a limit may be passed in between; the crossing with the highest resistance is
-then closed in on.
+time, halved where a limit may be passed in between; it ends two decades below a crossing, since
+the highest one counts. The crossing with the highest resistance is then closed in on.
 """
 
 from __future__ import annotations
@@ -32,6 +32,7 @@ NEAR = 0.6  # share of a limit from which it may be passed between two points
 MOVES = 0.2  # change of a stress between two points that may hide more
 SAME = 2e-4  # logarithm of a share that is as good as the limit itself
 REFINEMENTS = 12
+FAR = 100.0  # how far below a crossing the sweep goes on
 SEARCHED = (stock.NOMINAL, stock.HIGH, stock.DRIVEN)
 
 
@@ -85,11 +86,14 @@ def sweep(
     top = insulation_of(position)
     readings = {top: read(scene, top, healthy.settled[condition.name])}
     always = yield from _always(scene, top)
-    ladder = rungs(top)
-    parents = [condition.name, *(scene.name(ohm) for ohm in ladder[:-1])]
-    cases = tuple(scene.case(r, parent=p) for r, p in zip(ladder, parents, strict=True))
-    for ohm, reply in zip(ladder, (yield cases), strict=True):
-        readings[ohm] = read(scene, ohm, reply)
+    parent = condition.name
+    for ohm in rungs(top):
+        (answer,) = yield (scene.case(ohm, parent=parent),)
+        readings[ohm] = read(scene, ohm, answer)
+        if readings[ohm].point.unanswered is None:
+            parent = scene.name(ohm)
+        if _far_past(readings, ohm):
+            break
     between = [
         (float(f"{sqrt(a * b):.6g}"), a)
         for a, b in _intervals(readings)
@@ -116,6 +120,13 @@ def rungs(top: float) -> list[float]:
     """Return whole decades below the insulation down to 1 Ω."""
     first = floor(log10(top) - 0.3)
     return [10.0**k for k in range(first, -1, -1)] or [LEAST_OHM]
+
+
+def _far_past(readings: dict[float, Reading], ohm: float) -> bool:
+    """Tell whether both answers lie well above: nothing further down can change them."""
+    solved = [(r, readings[r]) for r in _solved(readings)]
+    critical = any(reading.critical > 0.0 and r >= FAR * ohm for r, reading in solved)
+    return critical and any(reading.functional > 0.0 for _, reading in solved)
 
 
 def _always(scene: Scene, top: float) -> Plan[Victim | None]:
