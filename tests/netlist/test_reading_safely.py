@@ -194,6 +194,15 @@ def test_netlist_that_includes_itself(tmp_path: Path):
     assert '"set.cir" includes itself' in file_refusal(path)
 
 
+def test_includes_nested_too_deep(tmp_path: Path):
+    for k in range(35):
+        written(tmp_path / f"i{k}.inc", f".include i{k + 1}.inc\n")
+    written(tmp_path / "i35.inc", "R1 a 0 1\n")
+    path = written(tmp_path / "set.cir", "title\n.include i0.inc\n")
+
+    assert "includes nested deeper than 30" in file_refusal(path)
+
+
 def test_includes_that_multiply(tmp_path: Path):
     for k in range(25):
         written(tmp_path / f"i{k}.inc", f".include i{k + 1}.inc\n.include i{k + 1}.inc\n")
