@@ -9,6 +9,7 @@ from stress.circuit.circuit import Circuit, Kind, Position
 from stress.finding import Severity
 from stress.judge.curve import nearest
 from stress.judge.grid_reading import grid_reading
+from stress.parts import styles
 from stress.study import conditions as stock
 from stress.study.failures import describe
 from stress.study.result import (
@@ -95,7 +96,7 @@ def bears(
     if worst.brief_V is not None and worst.brief_V > 1.03 * worst.worst_V:
         text += f", but {figure(worst.brief_V, 'V')} {_when(worst.brief_condition or '')}"
     text += _ripple(nominal)
-    return f"{text}: {_fit(replacement)}" if replacement is not None else text
+    return f"{text}: {_fit(replacement, position)}" if replacement is not None else text
 
 
 def _ripple(stress: PositionStress) -> str:
@@ -105,12 +106,15 @@ def _ripple(stress: PositionStress) -> str:
     return f"; ripple current {figure(stress.ripple_rms_A, 'A')} rms{at}"
 
 
-def _fit(replacement: Replacement) -> str:
+def _fit(replacement: Replacement, position: Position) -> str:
     text = f"fit {figure(replacement.value_F, 'F')} {replacement.style}"
     if replacement.rated_V is not None:
         text += f", {figure(replacement.rated_V, 'V')}"
     if replacement.safety_class:
         text += f", class {replacement.safety_class}"
+    turned = position.style.polar and not styles.styles()[replacement.style].polar
+    if turned and not replacement.safety_class:
+        text += ", which goes in either way round"
     return f"{text} ({replacement.arrangement})" if replacement.arrangement else text
 
 

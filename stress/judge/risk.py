@@ -152,11 +152,13 @@ def _rating(position: Position, worst: Worst | None) -> Iterator[Threat]:
             severity=Severity.TEST,
         )
     reverse = position.style.reverse_V(rated)
-    if reverse is not None and worst.reverse_V is not None and worst.reverse_V > reverse:
+    law = position.style.reverse
+    turned = worst.reverse_V or 0.0
+    if law is not None and reverse is not None and turned > reverse:
         yield Threat(
             text=(
-                f"it is driven {figure(worst.reverse_V, 'V')} the wrong way round, "
-                f"it stands {figure(reverse, 'V')}"
+                f"it is driven {figure(turned, 'V')} the wrong way round "
+                f"({worst.reverse_condition}), it stands {figure(reverse, 'V')} ({law.source})"
             ),
             consequence=OTHER_POSITION,
             likelihood=0.5,

@@ -19,6 +19,7 @@ from stress.study.replacement_style import PULSES, StyleChoice, style_for
 from stress.study.replacement_voltage import FILMS, Need, VoltageChoice, choose, needs, sine_V
 from stress.study.result import PositionStress, Replacement, Working, Worst
 from stress.study.touch import safety_class
+from stress.study.worst import most_reversed
 from stress.text.figure import figure
 from stress.text.unit import unit
 
@@ -64,10 +65,12 @@ def replacement(
     lasting = _lasting(position, working)
     kind = safety_class(position, circuit=circuit, working=working)
     own = policy.rule(position.style)
+    reverse_V, turned = most_reversed(lasting)
     chosen = style_for(
         position,
         safety_class=kind,
-        reverse_V=max((s.reverse_V or 0.0 for s in lasting.values()), default=None),
+        reverse_V=reverse_V,
+        reverse_condition=turned,
         slope_V_per_s=max((s.slope_V_per_s for s in lasting.values()), default=0.0),
         reverse_share=own.reverse.share if own is not None and own.reverse is not None else None,
     )
@@ -91,7 +94,11 @@ def replacement(
     value_F, value_why = _value(position, chosen.style, circuit=circuit, most_F=limit_F)
     parts = _arranged(position, value_F, chosen, volts, ripple=ripple, worst=worst, most_F=limit_F)
     notes = [
-        *(note for note in (aside, volts.below, volts.short, parts.short, limit_note) if note),
+        *(
+            note
+            for note in (chosen.note, aside, volts.below, volts.short, parts.short, limit_note)
+            if note
+        ),
         *parts.notes,
         ripple_note(ripple.rms_A, ripple.frequency_Hz, needed_A=ripple.needed_A)
         if chosen.style.electrolytic and ripple.needed_A > LEAST_RIPPLE_A

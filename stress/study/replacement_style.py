@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 from stress.circuit.circuit import Position, Role
 from stress.parts import styles
+from stress.parts.series import standard_value
 from stress.parts.style import Style
 from stress.text.figure import figure
 
@@ -24,6 +25,7 @@ class StyleChoice:
     why: str
     rule: str
     back_to_back: bool = False  # two polar parts, minus to minus
+    note: str = ""  # what would serve as well
 
 
 def style_for(
@@ -33,6 +35,7 @@ def style_for(
     reverse_V: float | None,
     slope_V_per_s: float,
     reverse_share: float | None = None,
+    reverse_condition: str | None = None,
 ) -> StyleChoice:
     """Return the style of part that belongs in a position.
 
@@ -42,6 +45,7 @@ def style_for(
         reverse_V: Largest reverse voltage that lasts; None for non-polar styles.
         slope_V_per_s: Steepest change of its voltage.
         reverse_share: Of the rating that the policy lets be used the wrong way round.
+        reverse_condition: The condition that makes the reverse voltage.
     """
     if safety_class is not None:
         return StyleChoice(
@@ -57,7 +61,12 @@ def style_for(
         if reverse_share is not None and position.rated_V is not None:
             allowed = min(allowed, reverse_share * position.rated_V)
         if reverse_V > allowed:
-            return _non_polar(position, reverse_V=reverse_V, allowed_V=allowed)
+            at = f" ({reverse_condition})" if reverse_condition else ""
+            why = (
+                f"it bears {figure(reverse_V, 'V')} the wrong way round{at}, a polar part "
+                f"{figure(allowed, 'V')} at most"
+            )
+            return _non_polar(position, why=why)
     name = position.style.replacement or position.style.name
     if position.style.name == "aluminium-nonpolar" and (position.value_F or 0.0) > LARGEST_FILM_F:
         name = position.style.name  # film of that size finds no room
@@ -77,11 +86,7 @@ def style_for(
     )
 
 
-def _non_polar(position: Position, *, reverse_V: float, allowed_V: float) -> StyleChoice:
-    why = (
-        f"it bears {figure(reverse_V, 'V')} the wrong way round, a polar part "
-        f"{figure(allowed_V, 'V')} at most"
-    )
+def _non_polar(position: Position, *, why: str) -> StyleChoice:
     reverse = position.style.reverse
     rule = f"reverse voltage: {reverse.source}" if reverse else "reverse voltage"
     value_F, volts = position.value_F or 0.0, position.rated_V or 0.0
@@ -89,7 +94,16 @@ def _non_polar(position: Position, *, reverse_V: float, allowed_V: float) -> Sty
         return StyleChoice(styles.styles()["film"], f"{why}: film has no polarity", rule)
     bipolar = styles.styles()["aluminium-nonpolar"]
     if volts <= bipolar.steps.rated_V[-1]:
-        return StyleChoice(bipolar, f"{why}: a non-polar electrolytic", rule)
+        each, _ = standard_value(2.0 * value_F, position.style)
+        return StyleChoice(
+            bipolar,
+            f"{why}: a non-polar electrolytic, either way round",
+            rule,
+            note=(
+                f"two polar parts of {figure(each, 'F')} and its full rated voltage each, in "
+                "series and minus to minus, serve as well (common practice)"
+            ),
+        )
     return StyleChoice(
         position.style, f"{why}: two back to back, minus to minus", rule, back_to_back=True
     )

@@ -35,6 +35,9 @@ class Condition:
     cold: bool = False
     lasts: bool = True  # False: brief, judged against surge ratings
     driven: bool = False
+    silicon: tuple[str, ...] = ()  # rectifier tubes that silicon diodes replace
+    muted: tuple[str, ...] = ()  # sources that are silent
+    usual: bool = False  # its line voltage is the usual one there, though above the nominal
     text: str = ""
 
 
@@ -128,6 +131,7 @@ class Worst:
     brief_V: float | None = None  # inrush and brief cold
     brief_condition: str | None = None
     reverse_V: float | None = None
+    reverse_condition: str | None = None  # that makes it; None also where nothing is reversed
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -6,7 +6,9 @@ from collections.abc import Mapping
 
 from stress.circuit.circuit import Circuit
 from stress.study import conditions as stock
-from stress.study.result import Working, Worst
+from stress.study.result import PositionStress, Working, Worst
+
+ALIKE = 0.999  # of the largest; the first condition that reaches it stands for all
 
 
 def worst(circuit: Circuit, *, working: Working) -> Mapping[str, Worst]:
@@ -27,15 +29,32 @@ def worst(circuit: Circuit, *, working: Working) -> Mapping[str, Worst]:
         if surge is not None:
             brief[stock.INRUSH] = surge.peak_V
         briefest = max(brief, key=lambda n: brief[n], default=None)
-        reverse = [s.reverse_V for s in by_condition.values() if s.reverse_V is not None]
+        reverse_V, turned = most_reversed(by_condition)
         if surge is not None and surge.reverse_V is not None:
-            reverse.append(surge.reverse_V)
+            if surge.reverse_V > (reverse_V or 0.0):
+                turned = stock.INRUSH
+            reverse_V = max(surge.reverse_V, reverse_V or 0.0)
         found[position.name] = Worst(
             position=position.name,
             worst_V=lasts[name].peak_V,
             condition=name,
             brief_V=brief[briefest] if briefest is not None else None,
             brief_condition=briefest,
-            reverse_V=max(reverse, default=None),
+            reverse_V=reverse_V,
+            reverse_condition=turned,
         )
     return found
+
+
+def most_reversed(
+    by_condition: Mapping[str, PositionStress],
+) -> tuple[float | None, str | None]:
+    """Return the largest reverse voltage in V and the condition that makes it.
+
+    The voltage is None for a style without polarity, the condition also where it is zero.
+    """
+    volts = {n: s.reverse_V for n, s in by_condition.items() if s.reverse_V is not None}
+    most = max(volts.values(), default=None)
+    if not most:
+        return most, None
+    return next((reverse, name) for name, reverse in volts.items() if reverse >= ALIKE * most)

@@ -49,7 +49,7 @@ RUNS = {
     "harbour_midget": Run(1 / 60, 4.0, 1000),
     "hall_amplifier": Run(1 / 50, 14.0, 500),
     "beacon_transmitter": Run(1 / 50, 8.0, 1200),
-    "charthouse_smps": Run(20e-6, 100e-3, 500),
+    "charthouse_smps": Run(20e-6, 200e-3, 500),
 }
 
 

@@ -150,6 +150,17 @@ def test_the_click_filter_bears_the_high_voltage_with_the_key_up(run):
 
 
 @pytest.mark.ngspice
+def test_charging_the_battery_turns_the_indicator_round(run):
+    """A divider of 1 : 2.1 against 12 V: 11.4 V of 24 V, 13.7 V of 28.8 V (closed form)"""
+    feeds, charged = (mean(run("charthouse_smps", c), "v12", "tap") for c in ("nominal", "high"))
+
+    assert 0.0 < feeds < 1.0
+    # The tap moves by 4.8 V / 2.1, less what its resistors drop over the indicator's 15 kohm.
+    behind = 1 / (1 / 1.1e3 + 1 / 1e3)
+    assert feeds - charged == pytest.approx(4.8 / 2.1 * 15e3 / (15e3 + behind), rel=0.02)
+
+
+@pytest.mark.ngspice
 def test_a_dried_feedback_reservoir_raises_the_outputs(run):
     """The unit holds what it reads; where it reads too little, it gives too much."""
     sound = run("charthouse_smps")

@@ -33,7 +33,7 @@ ROWS = [
         1 / 50,
         ("866A", "866A", "5R4GY", "6X4", "6SN7GT", "807", "807"),
     ),
-    Row("charthouse_smps", 16, 20e-6, ()),
+    Row("charthouse_smps", 17, 20e-6, ()),
 ]
 EACH = pytest.mark.parametrize("row", ROWS, ids=lambda row: row.stem)
 
@@ -114,6 +114,7 @@ SEEN = [
     Seen("beacon_transmitter", "C17", Role.SNUBBER),
     Seen("charthouse_smps", "C5", Role.OUTPUT_FILTER),
     Seen("charthouse_smps", "C4", Role.SNUBBER),
+    Seen("charthouse_smps", "C18", Role.DECOUPLING),
     Seen("charthouse_smps", "C13", Role.FEEDBACK),
 ]
 

@@ -51,9 +51,13 @@ def test_steady_state_equals_a_long_transient(row, ideal_equipment, solve):
         amps = waves.current(position.name)
         dc = waves.mean(volts)
         # Below 1 V, 1 mV and 10 uA the share is of these: there the numbers mean nothing. The
-        # mean of an alternating voltage is nothing beside its peak.
+        # mean of an alternating voltage is nothing beside its peak, and the small difference of
+        # two supplies is as sure as these are.
         peak = oracle["peak_V"]
-        assert dc == pytest.approx(oracle["dc_V"], abs=row.dc * max(peak, 1.0)), position.name
+        ends = [abs(waves.mean(waves.voltage(node, "0"))) for node in position.nodes]
+        assert dc == pytest.approx(oracle["dc_V"], abs=row.dc * max(peak, min(ends), 1.0)), (
+            position.name
+        )
         assert np.abs(volts).max() == pytest.approx(peak, rel=row.peak, abs=row.dc), position.name
         assert waves.rms(volts - dc) == pytest.approx(
             oracle["ripple_V"], rel=row.ripple, abs=row.ripple * 1e-3
