@@ -10,7 +10,8 @@ from typing import Any
 
 from stress.circuit.circuit import Part, Position
 from stress.report import borne, words
-from stress.report.power_document import discharge_document, power_up_document
+from stress.report.power_document import discharge_document, power_up_document, unanswered
+from stress.study.other_use import on_offer
 from stress.study.result import (
     Condition,
     CurvePoint,
@@ -20,7 +21,6 @@ from stress.study.result import (
     PositionStress,
     Review,
     Surge,
-    Unanswered,
 )
 
 SCHEMA = "capstress-review/1"
@@ -63,6 +63,10 @@ def document(review: Review) -> dict[str, Any]:
             },
             "engine": {"ngspice": review.versions.ngspice, "pyspice": review.versions.pyspice},
             "conditions": [_condition(each) for each in borne.conditions(review)],
+            "on_offer": [
+                {"name": use.name, "text": use.text, "tests": use.tests}
+                for use in on_offer(circuit)
+            ],
             "positions": [_position(review, each) for each in circuit.positions],
             "parts": [_part(review, each) for each in circuit.parts],
             "power_up": power_up_document(review.power_up) if review.power_up else None,
@@ -76,7 +80,13 @@ def document(review: Review) -> dict[str, Any]:
                 }
                 for each in review.findings
             ],
-            "unanswered": [_unanswered(each) for each in review.working.unanswered],
+            "unanswered": [
+                unanswered(each)
+                for each in (
+                    *review.working.unanswered,
+                    *(review.discharge.unanswered if review.discharge else ()),
+                )
+            ],
             "run": {
                 "cases": review.run.cases,
                 "unsolved": review.run.unsolved,
@@ -99,10 +109,6 @@ def _finite(value: Any) -> Any:
     return value
 
 
-def _unanswered(of: Unanswered) -> dict[str, Any]:
-    return {"case": of.case, "kind": of.kind, "text": of.text}
-
-
 def _condition(of: Condition) -> dict[str, Any]:
     return {
         "name": of.name,
@@ -111,6 +117,9 @@ def _condition(of: Condition) -> dict[str, Any]:
         "open": of.open,
         "short": of.short,
         "cold": of.cold,
+        "silicon": of.silicon,
+        "muted": of.muted,
+        "text": of.text,
     }
 
 

@@ -1,15 +1,32 @@
-"""The power-up plan and the discharge as JSON values, the unit in the end of each key."""
+"""The power-up plan and the discharge as JSON values.
+
+The unit of a number stands in the end of its key, or of the key of the mapping it is in; where it
+differs from record to record, in `unit` beside it. `share_of_nominal` is a plain ratio.
+"""
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import Any
 
-from stress.study.discharge_result import Charge, Decay, Discharge
-from stress.study.power_result import Lamp, LampReading, Peak, PowerUp, Step
+from stress.report.words import unit_of
+from stress.study.discharge_result import Charge, Decay, Discharge, Resistor
+from stress.study.power_result import (
+    Lamp,
+    LampReading,
+    Peak,
+    PowerUp,
+    Probe,
+    Step,
+    SwitchOn,
+    TellTale,
+)
+from stress.study.result import Unanswered
 
 
 def power_up_document(of: PowerUp) -> dict[str, Any]:
-    """Return the plan; readings of a probe are in the `unit` of the probe."""
+    """Return the plan; every reading has the unit of its probe beside it."""
+    units = {probe.key: probe.unit for probe in of.probes}
     return {
         "method": {
             "way": of.method.way.value,
@@ -22,51 +39,58 @@ def power_up_document(of: PowerUp) -> dict[str, Any]:
             {"severity": each.severity.value, "where": each.where, "text": each.text}
             for each in of.work
         ],
-        "probes": [
-            {
-                "key": each.key,
-                "kind": each.kind.value,
-                "node": each.node or None,
-                "text": each.text,
-                "unit": each.unit,
-                "effort": each.effort,
-                "forbidden": each.forbidden or None,
-            }
-            for each in of.probes
-        ],
-        "steps": [_step(each) for each in of.steps],
+        "probes": [_probe(each) for each in of.probes],
+        "steps": [_step(each, units) for each in of.steps],
         "lamp": _lamp(of.lamp) if of.lamp else None,
-        "tell_tales": [
-            {
-                "position": each.position,
-                "fault": each.fault,
-                "step": each.step,
-                "readings": [
-                    {"probe": key, "healthy": healthy, "faulty": faulty}
-                    for key, healthy, faulty in each.readings
-                ],
-                "text": each.text,
-            }
-            for each in of.tell_tales
-        ],
-        "switch_on": [_peak(each) for each in of.switch_on.peaks] if of.switch_on else None,
+        "tell_tales": [_tell_tale(each, units) for each in of.tell_tales],
+        "switch_on": _switch_on(of.switch_on) if of.switch_on else None,
         "missing": of.missing,
         "cautions": of.cautions,
-        "unanswered": [
-            {"case": each.case, "kind": each.kind, "text": each.text} for each in of.unanswered
-        ],
+        "unanswered": [unanswered(each) for each in of.unanswered],
     }
 
 
-def _step(of: Step) -> dict[str, Any]:
+def unanswered(of: Unanswered) -> dict[str, Any]:
+    """Return a case without a number, and why."""
+    return {"case": of.case, "kind": of.kind, "text": of.text}
+
+
+def _probe(of: Probe) -> dict[str, Any]:
+    return {
+        "key": of.key,
+        "kind": of.kind.value,
+        "node": of.node or None,
+        "against": of.against if of.node else None,
+        "text": of.text,
+        "unit": of.unit,
+        "effort": of.effort,
+        "forbidden": of.forbidden or None,
+    }
+
+
+def _tell_tale(of: TellTale, units: Mapping[str, str]) -> dict[str, Any]:
+    return {
+        "position": of.position,
+        "fault": of.fault,
+        "step": of.step,
+        "readings": [
+            {"probe": key, "unit": units[key], "healthy": healthy, "faulty": faulty}
+            for key, healthy, faulty in of.readings
+        ],
+        "text": of.text,
+    }
+
+
+def _step(of: Step, units: Mapping[str, str]) -> dict[str, Any]:
     return {
         "name": of.ramp.name,
-        "share": of.ramp.share,
+        "share_of_nominal": of.ramp.share,
         "line_V": of.ramp.line_V,
         "text": of.text,
         "bands": [
             {
                 "probe": each.probe,
+                "unit": units[each.probe],
                 "value": each.value,
                 "low": each.low,
                 "high": each.high,
@@ -77,6 +101,7 @@ def _step(of: Step) -> dict[str, Any]:
         "aborts": [
             {
                 "probe": each.probe,
+                "unit": units[each.probe],
                 "above": each.above,
                 "limit": each.limit,
                 "tells": each.tells,
@@ -111,10 +136,19 @@ def _lamp_reading(of: LampReading) -> dict[str, Any]:
     }
 
 
+def _switch_on(of: SwitchOn) -> dict[str, Any]:
+    return {
+        "watched_s": of.seconds,
+        "peaks": [_peak(each) for each in of.peaks],
+        "unanswered": [unanswered(each) for each in of.unanswered],
+    }
+
+
 def _peak(of: Peak) -> dict[str, Any]:
     return {
         "part": of.part,
         "quantity": of.quantity,
+        "unit": unit_of(of.quantity),
         "cold": of.cold,
         "hot": of.hot,
         "phase_deg": of.phase_deg,
@@ -122,12 +156,12 @@ def _peak(of: Peak) -> dict[str, Any]:
 
 
 def discharge_document(of: Discharge) -> list[dict[str, Any]]:
-    """Return what every position holds; times by threshold are in seconds, keyed by volts."""
+    """Return what every position holds, and how long until it stays below each threshold."""
     return [_charge(each) for each in of.charges]
 
 
 def _charge(of: Charge) -> dict[str, Any]:
-    resistor = of.resistor
+    es1_V, es2_V = of.class_V
     return {
         "name": of.position,
         "value_F": of.value_F,
@@ -135,23 +169,30 @@ def _charge(of: Charge) -> dict[str, Any]:
         "condition": of.condition,
         "energy_J": of.energy_J,
         "deadly": of.deadly,
+        "class_V": {"ES1": es1_V, "ES2": es2_V},
         "holds": of.holds,
         "floating": of.floating,
         "bleed_ohm": of.bleed_ohm,
         "insulation_ohm": of.insulation_ohm,
-        "formula_s": {f"{volts:g}": seconds for volts, seconds in of.formula_s.items()},
+        "formula": [
+            {"threshold_V": volts, "time_s": seconds} for volts, seconds in of.formula_s.items()
+        ],
         "decays": [_decay(each) for each in of.decays],
         "returns_V": of.returns_V,
-        "resistor": {
-            "ohm": resistor.ohm,
-            "rated_V": resistor.rated_V,
-            "rated_W": resistor.rated_W,
-            "energy_J": resistor.energy_J,
-            "seconds_s": resistor.seconds,
-            "pieces": resistor.pieces,
-        }
-        if resistor
-        else None,
+        "resistor": _resistor(of.resistor) if of.resistor else None,
+    }
+
+
+def _resistor(of: Resistor) -> dict[str, Any]:
+    return {
+        "value_ohm": of.ohm,
+        "rated_V": of.rated_V,
+        "rated_W": of.rated_W,
+        "peak_A": of.peak_A,
+        "energy_J": of.energy_J,
+        "until_V": of.until_V,
+        "time_s": of.seconds,
+        "pieces": of.pieces,
     }
 
 
@@ -159,8 +200,10 @@ def _decay(of: Decay) -> dict[str, Any]:
     return {
         "how": of.how,
         "start_V": of.start_V,
-        "below_s": {f"{volts:g}": seconds for volts, seconds in of.below_s.items()},
-        "extrapolated": [f"{volts:g}" for volts in of.extrapolated],
+        "below": [
+            {"threshold_V": volts, "time_s": seconds, "extrapolated": volts in of.extrapolated}
+            for volts, seconds in of.below_s.items()
+        ],
         "time_s": of.seconds,
         "voltage_V": of.volts,
     }

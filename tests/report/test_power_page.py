@@ -173,10 +173,46 @@ def test_the_document_holds_both(specimen, tmp_path):
     plan = read["power_up"]
     assert plan["method"]["way"] == "slow ramp"
     assert plan["steps"][1]["aborts"] == [
-        {"probe": "g DC", "above": True, "limit": 0.9, "tells": ["C5 leaky 3.91234 MΩ", "C5 short"]}
-    ]
+        {"probe": "g DC", "unit": "V", "above": True, "limit": 0.9,
+         "tells": ["C5 leaky 3.91234 MΩ", "C5 short"]}
+    ]  # fmt: skip
+    assert {each["against"] for each in plan["probes"]} == {"0"}
     assert plan["lamp"]["faulty"][0]["current_A"] is None
     first = read["discharge"][0]
     assert (first["name"], first["energy_J"], first["bleed_ohm"]) == ("C1", 0.7056, None)
-    assert first["decays"][1]["below_s"] == {"120": 9000.0, "60": None, "50": None}
+    assert first["class_V"] == {"ES1": 60.0, "ES2": 120.0}
+    assert first["resistor"]["peak_A"] == 0.09
+    assert first["decays"][1]["below"] == [
+        {"threshold_V": 120.0, "time_s": 9000.0, "extrapolated": True},
+        {"threshold_V": 60.0, "time_s": None, "extrapolated": False},
+        {"threshold_V": 50.0, "time_s": None, "extrapolated": False},
+    ]
     assert document(specimen)["discharge"] is None
+
+
+def numbers(value, keys=(), beside=()):
+    """Yield the way of keys to every number, and the record it stands in."""
+    if isinstance(value, dict):
+        for key, each in value.items():
+            yield from numbers(each, (*keys, key), value)
+    elif isinstance(value, list | tuple):
+        for each in value:
+            yield from numbers(each, keys, beside)
+    elif isinstance(value, int | float) and not isinstance(value, bool):
+        yield keys, beside
+
+
+UNITS = ("_V", "_A", "_ohm", "_F", "_W", "_s", "_J", "_degC", "_Hz", "_deg")
+COUNTS = {"cases", "unsolved", "cycles", "rank", "effort", "pieces", "quantity"}
+RATIOS = {"margin", "share_of_nominal"}
+
+
+def test_every_number_of_the_document_has_its_unit_beside_it(specimen):
+    """In its key or that of a mapping it is in, else in `unit` or the named `quantity`."""
+    whole = document(replace(specimen, power_up=PLAN, discharge=AFTER))
+    found = list(numbers(whole))
+    assert {keys[0] for keys, _ in found} > {"power_up", "discharge", "positions", "parts"}
+    for keys, beside in found:
+        if keys[-1] not in COUNTS | RATIOS and "unit" not in beside:
+            names = [f"_{key}" for key in (*keys, beside.get("quantity"))]
+            assert any(name.endswith(UNITS) for name in names), keys
