@@ -29,7 +29,7 @@ def cautions(circuit: Circuit, *, working: Working) -> tuple[str, ...]:
             "The chassis or common negative is joined to the line: use an isolation transformer, "
             "and remember that a residual-current device does not protect behind one."
         )
-    elif circuit.line.sources:
+    elif circuit.line_connected or alternates(circuit):
         special.append("The line side is live even with the set switched off.")
     highest = max((s.peak_V for by in working.positions.values() for s in by.values()), default=0.0)
     if highest > HAZARDOUS_V:
@@ -52,3 +52,9 @@ def cautions(circuit: Circuit, *, working: Working) -> tuple[str, ...]:
     if any(p.style.name == "paper-oil" for p in circuit.positions):
         special.append("Old oil-filled capacitors may hold PCB: gloves, and proper disposal.")
     return (*special, *ALWAYS)
+
+
+def alternates(circuit: Circuit) -> bool:
+    """Tell whether a line source alternates; a battery that stands for the line does not."""
+    sources = {name.lower() for name in circuit.line.sources}
+    return any(e.name.lower() in sources and e.wave for e in circuit.netlist.elements)

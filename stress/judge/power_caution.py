@@ -6,7 +6,7 @@ Common practice; local codes and licensed practice come first.
 from __future__ import annotations
 
 from stress.circuit.circuit import Circuit, Kind, Role
-from stress.judge.cautions import cautions
+from stress.judge.cautions import alternates, cautions
 from stress.parts import types
 from stress.study.result import Working
 from stress.text.figure import figure
@@ -17,8 +17,7 @@ HIGH_V = 1000.0
 def power_cautions(circuit: Circuit, *, working: Working) -> tuple[str, ...]:
     """Return the cautions of a first power-up, those of the review first."""
     found = list(cautions(circuit, working=working))
-    sources = {name.lower() for name in circuit.line.sources}
-    if any(e.name.lower() in sources and e.wave for e in circuit.netlist.elements):
+    if alternates(circuit):
         found.append(
             "An isolation transformer stands before the variable one, which isolates nothing; a "
             "residual-current device does not protect behind it."

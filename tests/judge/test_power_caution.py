@@ -1,5 +1,6 @@
 import pytest
 
+from stress.judge.cautions import cautions
 from stress.judge.power_caution import power_cautions
 from stress.pipeline import load
 from stress.study.result import PositionStress, Working
@@ -50,6 +51,29 @@ def test_caution_by_what_the_circuit_is(circuit, text, sheet, word):
 def test_no_caution_of_what_is_not_there(circuit, word):
     plain = circuit("XV1 pa b0 0 5Y3GT")
     assert not any(word in text.lower() for text in power_cautions(plain, working=NOTHING))
+
+
+FEEDS = [
+    (
+        "Vline lh 0 SIN(0 325 50)\nRp lh lq 10\nLp lq 0 10\nLa ha 0 1\nK1 Lp La 0.999\nC1 ha 0 1u",
+        True,
+    ),
+    # only the secondary is drawn: its primary hangs on the line
+    ("Vline ha 0 SIN(0 17 50)\nD1 ha b0 D\nC1 b0 0 16u\nRl b0 0 10k\n.model D D", True),
+    # direct current of the mains
+    ("Vline lh 0 DC 220\nD1 lh b0 D\nC1 b0 0 16u\nRl b0 0 10k\n.model D D", True),
+    ("Vline bat 0 DC 24\nRb bat b0 1\nC1 b0 0 16u\nRl b0 0 10k", False),
+]
+
+
+@pytest.mark.parametrize(("text", "live"), FEEDS)
+def test_the_line_side_is_live_only_where_there_is_one(tmp_path, text, live):
+    path = tmp_path / "set.cir"
+    path.write_text(f"test set\n{text}\n.end\n")
+    path.with_suffix(".toml").write_text('[line]\nsource = "Vline"\n')
+    found = cautions(load(path), working=NOTHING)
+    # "joined to the line" where the common negative itself is
+    assert any("line side is live" in t or "joined to the line" in t for t in found) is live
 
 
 def test_high_voltage_supply_is_told_with_its_voltage(circuit):
