@@ -33,6 +33,7 @@ from stress.study.failures import failures
 from stress.study.fault import parse
 from stress.study.inrush import inrush
 from stress.study.leakage import leakage
+from stress.study.other_use import asked
 from stress.study.replacement import replacement
 from stress.study.reservoir import checked
 from stress.study.result import Bench, Leakage, Replacement, Review, Run, Worst
@@ -107,6 +108,7 @@ def review(
     high_V: float | None = None,
     only: Sequence[str] = (),
     also: Sequence[str] = (),
+    ask: Sequence[str] = (),
     policy: str = USUAL_POLICY,
     plan: bool = False,
     libraries: Sequence[Path] = (),
@@ -120,6 +122,7 @@ def review(
     Args:
         only: Names of the positions whose faults are studied; empty: all.
         also: Known faults that are in every case, such as "C5 leaky 1 Meg".
+        ask: Further conditions, of those that are on offer (`Circuit.uses`).
         policy: Name of the derating policy, or a file of the same form.
         plan: Also make the power-up plan and follow the discharge.
         jobs: Worker processes; None: one a core.
@@ -128,7 +131,7 @@ def review(
     Raises:
         SourceErrors, OSError: As `load`.
         KeyError: A position or a policy of no such name.
-        ValueError: A known fault that cannot be read.
+        ValueError: A known fault that cannot be read, or a condition that is not on offer.
     """
     circuit = load(
         path,
@@ -139,7 +142,14 @@ def review(
         dialect=dialect,
     )
     return review_circuit(
-        circuit, only=only, also=also, policy=policy, plan=plan, jobs=jobs, progress=progress
+        circuit,
+        only=only,
+        also=also,
+        ask=ask,
+        policy=policy,
+        plan=plan,
+        jobs=jobs,
+        progress=progress,
     )
 
 
@@ -148,6 +158,7 @@ def review_circuit(
     *,
     only: Sequence[str] = (),
     also: Sequence[str] = (),
+    ask: Sequence[str] = (),
     policy: str = USUAL_POLICY,
     plan: bool = False,
     jobs: int | None = None,
@@ -156,6 +167,7 @@ def review_circuit(
     """Review a circuit that has been built; see `review`."""
     started = monotonic()
     rules = policy_of(policy)
+    circuit = asked(circuit, ask)
     studied = tuple(circuit.position(name) for name in only) or circuit.positions
     faults = tuple(parse(text, circuit) for text in also)
     stage = "working stress"

@@ -18,6 +18,7 @@ from stress.circuit import (
     supply,
     touch,
     tube,
+    use,
 )
 from stress.circuit.circuit import Circuit, Kind, Part
 from stress.circuit.graph import Graph
@@ -65,6 +66,8 @@ def survey(
                 "the capacitors of a device (a tube model) are no positions",
             )
         )
+    uses = use.find(a.surroundings, fed=a.sources, sheet=sheet)
+    errors += names.check_uses(uses, sheet=sheet)
     touchable = [n for n in a.graph.nodes if n in a.touch.touchable]
     line = a.sources.line
     circuit = Circuit(
@@ -99,6 +102,7 @@ def survey(
             *(f"{d.instance.name} ({d.instance.subcircuit}): {d.reason}" for d in a.split.devices),
             *(f"{i.name} ({i.subcircuit}): {reason}" for i, reason in a.split.blocks),
         ),
+        uses=uses,
     )
     return circuit, tuple(errors)
 

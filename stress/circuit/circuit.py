@@ -151,6 +151,32 @@ class Line:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Use:
+    """Another way to run the equipment, offered where the graph shows that it applies.
+
+    Attributes:
+        name: By which it is asked for.
+        text, tests: What is done, and what that shows.
+        open, pulled: Elements that are open and tubes that are out.
+        silicon: Rectifier tubes that silicon diodes replace.
+        muted: Sources that are silent.
+        driven: Whether it runs with its signals where the equipment is asked for so.
+        nominal_V, high_V: Of another line, rms; None: as the equipment is run.
+    """
+
+    name: str
+    text: str
+    tests: str
+    open: tuple[str, ...] = ()
+    pulled: tuple[str, ...] = ()
+    silicon: tuple[str, ...] = ()
+    muted: tuple[str, ...] = ()
+    driven: bool = False
+    nominal_V: float | None = field(default=None, metadata=unit("V"))
+    high_V: float | None = field(default=None, metadata=unit("V"))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Circuit:
     """Everything the studies need, resolved; see `stress.circuit.build`.
 
@@ -170,6 +196,7 @@ class Circuit:
         findings: What is visible without solving.
         assumed: Everything assumed, in words, for the report.
         decisions: Which X was taken for one part and which for a block, and why, in words.
+        uses: Other ways to run it that are on offer.
     """
 
     netlist: Netlist
@@ -188,6 +215,7 @@ class Circuit:
     findings: tuple[Finding, ...] = ()
     assumed: tuple[str, ...] = ()
     decisions: tuple[str, ...] = ()
+    uses: tuple[Use, ...] = ()
 
     def position(self, name: str) -> Position:
         """Return the position of that name; KeyError where there is none."""

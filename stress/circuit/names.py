@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from difflib import get_close_matches
 
+from stress.circuit.circuit import Use
 from stress.circuit.joined import GROUND
 from stress.circuit.touch import GROUND_NAMES
 from stress.netlist.flat import Netlist
@@ -73,11 +74,28 @@ def check(netlist: Netlist, *, sheet: Sheet, inside: frozenset[str]) -> tuple[So
         parts = (*condition.open, *condition.short)
         look("conditions", parts, everything, "part", condition.name)
         look("conditions", condition.pulled, instances, "tube", condition.name)
+        look("conditions", condition.silicon, instances, "tube", condition.name)
+        look("conditions", condition.muted, of("V", "I"), "source", condition.name)
     for fault in sheet.faults:
         look("faults", fault.between, nodes | {GROUND: GROUND}, "node", fault.name)
     grounds = {name: name for name in GROUND_NAMES}
     look("equipment", sheet.equipment.touchable, nodes | grounds, "node")
     return tuple(errors)
+
+
+def check_uses(uses: Sequence[Use], *, sheet: Sheet) -> tuple[SourceError, ...]:
+    """Return an error for every condition that the sheet asks for and that does not apply."""
+    known = {use.name: use.name for use in uses}
+    offered = f"on offer here: {', '.join(known)}" if known else "none is on offer here"
+    return tuple(
+        SourceError(
+            f"[equipment] asks for the condition {name}, which does not apply to this circuit",
+            sheet.span("equipment", "conditions") or _span(sheet, "equipment", "conditions"),
+            offered,
+        )
+        for name in sheet.equipment.conditions
+        if name not in known
+    )
 
 
 def _some(*names: str | None) -> tuple[str, ...]:

@@ -16,6 +16,7 @@ from stress.circuit.graph import Edge, Graph, Pin
 from stress.circuit.joined import GROUND
 from stress.circuit.supply import Supply
 from stress.circuit.touch import STATIC_OHM, Touch
+from stress.netlist.flat import Element
 
 STOPPER_OHM = 100e3  # series resistors at grids and plates that are no place of their own
 SIGNAL_OHM = 5.1e6
@@ -181,6 +182,17 @@ class Surroundings:
                 kinds |= found[there]
                 kinds |= {p.kind for p in self.graph.pins(there)}
             found[node] = frozenset(kinds)
+        return found
+
+    @cached_property
+    def copper(self) -> Mapping[str, tuple[Element, ...]]:
+        """By node of the netlist, nothing joined: the resistors, windings, switches and meters
+        at it, those inside a folded part left out."""
+        found: dict[str, tuple[Element, ...]] = {}
+        for element in self.graph.netlist.elements:
+            if element.letter in "RLSW" and not self.graph.is_folded(element.name):
+                for node in element.nodes[:2]:
+                    found[node] = (*found.get(node, ()), element)
         return found
 
     def loads(self, node: str) -> frozenset[str]:

@@ -35,6 +35,13 @@ if TYPE_CHECKING:
     help="A known fault that is in every case; can be given again.",
 )
 @click.option(
+    "--condition",
+    "ask",
+    multiple=True,
+    metavar="NAME",
+    help="A further condition, of those on offer for this circuit; can be given again.",
+)
+@click.option(
     "--policy",
     default="common-practice",
     show_default=True,
@@ -58,6 +65,7 @@ def review(
     jobs: int | None,
     only: str,
     also: tuple[str, ...],
+    ask: tuple[str, ...],
     policy: str,
     plan: bool,
     fitted: bool,
@@ -88,6 +96,7 @@ def review(
         names = names_of(only, circuit)
         _known_policy(policy)
         _known_faults(also, circuit)
+        circuit = _asked(ask, circuit)
         with progress() as report:
             found = pipeline.review_circuit(
                 circuit,
@@ -141,6 +150,16 @@ def _known_policy(policy: str) -> None:
     except KeyError:
         known = ", ".join(policies())
         click.echo(f"no policy and no file {policy!r}; there are {known}", err=True)
+        sys.exit(UNUSABLE)
+
+
+def _asked(ask: tuple[str, ...], circuit: Circuit) -> Circuit:
+    from stress.study.other_use import asked
+
+    try:
+        return asked(circuit, ask)
+    except ValueError as problem:
+        click.echo(f"--condition: {problem}", err=True)
         sys.exit(UNUSABLE)
 
 

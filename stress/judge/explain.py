@@ -92,9 +92,9 @@ def bears(
     if nominal.peak_V - abs(nominal.dc_V) > max(0.05 * abs(nominal.dc_V), 0.5):
         text += f" with peaks of {figure(nominal.peak_V, 'V')}"
     if worst.worst_V > 1.03 * nominal.peak_V:
-        text += f", {figure(worst.worst_V, 'V')} {_when(worst.condition)}"
+        text += f", {figure(worst.worst_V, 'V')} {stock.told(worst.condition)}"
     if worst.brief_V is not None and worst.brief_V > 1.03 * worst.worst_V:
-        text += f", but {figure(worst.brief_V, 'V')} {_when(worst.brief_condition or '')}"
+        text += f", but {figure(worst.brief_V, 'V')} {stock.told(worst.brief_condition or '')}"
     text += _ripple(nominal)
     return f"{text}: {_fit(replacement, position)}" if replacement is not None else text
 
@@ -116,20 +116,6 @@ def _fit(replacement: Replacement, position: Position) -> str:
     if turned and not replacement.safety_class:
         text += ", which goes in either way round"
     return f"{text} ({replacement.arrangement})" if replacement.arrangement else text
-
-
-def _when(condition: str) -> str:
-    """Return a condition in words that stand after a voltage."""
-    if condition.startswith("pulled "):
-        return f"with {condition.removeprefix('pulled ')} pulled at high line"
-    words = {
-        stock.NOMINAL: "as it is run",
-        stock.HIGH: "at high line",
-        stock.COLD: "with the tubes cold at high line",
-        stock.INRUSH: "for a moment at switch-on",
-        stock.DRIVEN: "with its signals",
-    }
-    return words.get(condition, f"in the condition {condition}")
 
 
 def _why_not(working: Working, condition: str) -> str:

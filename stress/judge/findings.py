@@ -10,6 +10,7 @@ from stress.finding import Finding, Severity
 from stress.study import conditions as stock
 from stress.study.failures import describe
 from stress.study.limits import limits
+from stress.study.other_use import is_own
 from stress.study.result import Failure, Leakage, Risk, Victim, Working, Worst
 from stress.text.figure import figure
 
@@ -61,6 +62,39 @@ def healthy_over_limit(results: Results) -> Iterator[Finding]:
                     "capacitor healthy",
                     action="Check the sheet and the netlist against the real set.",
                     rule="healthy-over-limit",
+                )
+
+
+def past_in_other_uses(results: Results) -> Iterator[Finding]:
+    """Parts past a limit in a condition that the user asked for, and within it otherwise.
+
+    Compared with the equipment as it is meant to be run at the same line voltage; where the
+    condition takes the signal away, with the driven equipment.
+    """
+    for condition in results.working.conditions:
+        if not is_own(condition, results.circuit):
+            continue
+        judged = limits(results.circuit, condition=condition)
+        baseline = stock.NOMINAL if condition.factor <= 1.0 or condition.usual else stock.HIGH
+        if condition.muted:
+            baseline = stock.DRIVEN
+        for part, by_condition in results.working.parts.items():
+            stresses = by_condition.get(condition.name, {})
+            usual = by_condition.get(baseline, {})
+            past = [
+                Victim(part=part, quantity=name, stress=stress, limit=limit)
+                for name, limit in judged.get(part, {}).items()
+                if (stress := stresses.get(name)) is not None
+                and stress > limit.value >= usual.get(name, 0.0)
+                and not limit.assumed
+            ]
+            if past:
+                yield Finding(
+                    severity=Severity.WATCH,
+                    where=part,
+                    condition=condition.name,
+                    text=f"{stock.told(condition.name)}: {'; '.join(describe(v) for v in past)}",
+                    rule="other-use",
                 )
 
 
@@ -187,6 +221,7 @@ Rule = Callable[[Results], Iterator[Finding]]
 RULES: tuple[Rule, ...] = (
     ranked_positions,
     healthy_over_limit,
+    past_in_other_uses,
     ripple_over_rating,
     surge_of_rectifiers,
     leaks_between_nodes,

@@ -25,6 +25,7 @@ class EquipmentEntry:
     kind: str | None = None  # receiver, amplifier, transmitter, television, switch-mode …
     tubes_out: bool = False  # the user says that tubes may be out while it is powered
     driven: bool = False  # ask for the condition `driven`
+    conditions: tuple[str, ...] = ()  # other uses that are asked for
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -90,6 +91,8 @@ class ConditionEntry:
     open: tuple[str, ...] = ()
     short: tuple[str, ...] = ()
     pulled: tuple[str, ...] = ()
+    silicon: tuple[str, ...] = ()  # rectifier tubes replaced by silicon diodes
+    muted: tuple[str, ...] = ()  # sources that are silent
     line: str = "high"  # nominal, high, low
     lasts: bool = True
     driven: bool = False

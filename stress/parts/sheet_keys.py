@@ -107,6 +107,7 @@ EQUIPMENT: Keys = {
     "kind": ("kind", text),
     "tubes_out": ("tubes_out", flag),
     "driven": ("driven", flag),
+    "conditions": ("conditions", _name),
 }
 LINE: Keys = {
     "source": ("sources", _name),
@@ -182,6 +183,8 @@ CONDITION: Keys = {
     "open": ("open", _name),
     "short": ("short", _name),
     "pulled": ("pulled", _name),
+    "silicon": ("silicon", _name),
+    "muted": ("muted", _name),
     "line": ("line", word("nominal", "high", "low")),
     "lasts": ("lasts", flag),
     "driven": ("driven", flag),

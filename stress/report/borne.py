@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 
 from stress.circuit.circuit import Position
+from stress.study import other_use
 from stress.study.conditions import COLD, INRUSH
 from stress.study.result import Condition, PositionStress, Review, Surge
 
@@ -23,6 +24,11 @@ def conditions(review: Review) -> tuple[Condition, ...]:
         text="switched on from rest with the tubes cold, in the worst phase",
     )
     return (*stated, switch_on)
+
+
+def on_offer(review: Review) -> tuple[str, ...]:
+    """Return the conditions that apply and were not asked for, and what each would show."""
+    return tuple(f"{use.name} ({use.tests})" for use in other_use.on_offer(review.circuit))
 
 
 def position(review: Review, of: Position) -> Iterator[tuple[str, PositionStress | Surge | None]]:

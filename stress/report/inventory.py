@@ -75,6 +75,8 @@ def _lines(circuit: Circuit, errors: Sequence[SourceError], width: int) -> Itera
     yield from _sources(circuit, width)
     yield from _listed("Devices and blocks", circuit.decisions, width)
     yield from _listed("Assumed", circuit.assumed, width)
+    uses = [f"{use.name}: {use.text}; {use.tests}" for use in circuit.uses]
+    yield from _listed("Conditions on offer", uses, width)
     ignored = [f"{i.span.file}:{i.span.line}: {i.what}" for i in netlist.ignored]
     yield from _listed("Read and set aside", ignored, width)
     yield from _listed("Read with a notice", map(_notice, netlist.notices), width)

@@ -170,6 +170,9 @@ def _conditions(review: Review) -> tuple[Fact, ...]:
         missing = "" if each.name in answered else words.missing_in(review, each.name)
         text = "; ".join(part for part in (line, each.text, missing) if part)
         facts.append(Fact(name=each.name, text=text or "as drawn"))
+    offered = borne.on_offer(review)
+    if offered:
+        facts.append(Fact(name="on offer with --condition", text="; ".join(offered)))
     facts += [
         Fact(name=each.case, text=f"{each.kind}; {each.text}") for each in review.working.unanswered
     ]

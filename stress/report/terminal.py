@@ -156,6 +156,9 @@ def _conditions(review: Review, out: Lines, *, verbose: bool) -> None:
         out.line("; ".join(parts) or "as drawn", first=f"  {condition.name} ", indent=hang)
     for unanswered in review.working.unanswered:
         out.line(f"{unanswered.case}: {unanswered.kind}; {unanswered.text}", indent=2)
+    offered = borne.on_offer(review)
+    if offered:
+        out.line("; ".join(offered), first="  on offer with --condition: ", indent=4)
     if verbose:
         _method(review, out)
 

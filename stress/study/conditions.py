@@ -3,17 +3,23 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import replace
 
 from stress.circuit.circuit import Circuit, Kind
 from stress.engine.case import Case, Steady, Twin
-from stress.netlist.flat import NOTHING, Element
+from stress.netlist.flat import NOTHING
 from stress.parts.sheet import ConditionEntry
+from stress.study import other_use
 from stress.study.result import Condition
+from stress.study.rewired import rewired
 
 NOMINAL, HIGH, COLD, DRIVEN, INRUSH = "nominal", "high", "cold", "driven", "inrush"
-SHORT_OHM = 0.01
-ROOT = NOMINAL
+WORDS = {
+    NOMINAL: "as it is run",
+    HIGH: "at high line",
+    COLD: "with the tubes cold at high line",
+    INRUSH: "for a moment at switch-on",
+    DRIVEN: "with its signals",
+}
 
 
 def conditions(circuit: Circuit) -> tuple[Condition, ...]:
@@ -56,7 +62,17 @@ def conditions(circuit: Circuit) -> tuple[Condition, ...]:
             for envelope in envelopes(circuit)
         ]
     found += [_own(circuit, entry) for entry in circuit.sheet.conditions]
+    for use in circuit.uses:
+        if use.name in circuit.sheet.equipment.conditions:
+            found += other_use.conditions(circuit, use)
     return tuple(found)
+
+
+def told(name: str) -> str:
+    """Return a condition in words that stand after a voltage: "with the tubes cold at high line"."""
+    if name.startswith("pulled "):
+        return f"with {name.removeprefix('pulled ')} pulled at high line"
+    return WORDS.get(name) or other_use.told(name) or f"in the condition {name}"
 
 
 def _cold_lasts(circuit: Circuit) -> bool:
@@ -78,6 +94,8 @@ def _own(circuit: Circuit, entry: ConditionEntry) -> Condition:
         short=entry.short,
         lasts=entry.lasts,
         driven=entry.driven,
+        silicon=entry.silicon,
+        muted=entry.muted,
         text="from the sheet",
     )
 
@@ -96,7 +114,7 @@ def removed(circuit: Circuit, condition: Condition) -> frozenset[str]:
         for name in (element.name.lower() for element in circuit.netlist.elements)
         if name in opened or name.startswith(tuple(f"{block}." for block in opened))
     }
-    pulled = {name.lower() for name in condition.pulled}
+    pulled = {name.lower() for name in (*condition.pulled, *condition.silicon)}
     for part in circuit.parts:
         out = pulled & {part.name.lower(), part.envelope.lower()}
         cold = condition.cold and part.kind is Kind.TUBE
@@ -112,6 +130,7 @@ def sources(circuit: Circuit, condition: Condition) -> Mapping[str, float]:
         factors.update(dict.fromkeys(circuit.line.sources, condition.factor))
     if not condition.driven:
         factors.update(dict.fromkeys(circuit.signals, 0.0))
+    factors.update(dict.fromkeys(condition.muted, 0.0))
     return factors
 
 
@@ -128,7 +147,7 @@ def case(
     """Return the steady case of a condition, with further values set for a fault."""
     return Case(
         name=name or condition.name,
-        twin=shorted(circuit, condition, twin=twin),
+        twin=rewired(circuit, condition, twin=twin),
         condition=condition.name,
         fault=fault,
         parent=parent,
@@ -147,22 +166,3 @@ def healthy_parent(condition: Condition) -> str | None:
     if condition.name == NOMINAL or condition.cold:
         return None
     return NOMINAL
-
-
-def shorted(circuit: Circuit, condition: Condition, *, twin: Twin) -> Twin:
-    """Return the twin with a small resistor across what the condition shorts."""
-    if not condition.short:
-        return twin
-    named = {element.name.lower(): element for element in circuit.netlist.elements}
-    shorts = tuple(
-        Element(
-            name=f"{name}#short",
-            letter="R",
-            nodes=named[name.lower()].nodes[:2],
-            value=SHORT_OHM,
-            span=named[name.lower()].span,
-        )
-        for name in condition.short
-        if name.lower() in named
-    )
-    return replace(twin, elements=twin.elements + shorts)

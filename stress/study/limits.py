@@ -47,7 +47,7 @@ def limits(circuit: Circuit, *, condition: Condition) -> Limits:
 def _systems(circuit: Circuit, condition: Condition) -> frozenset[Rating]:
     if not circuit.line.sources:
         return frozenset(Rating)
-    if condition.factor > 1.0:
+    if condition.factor > 1.0 and not condition.usual:
         return frozenset({Rating.DESIGN_MAXIMUM, Rating.ABSOLUTE})
     return frozenset({Rating.DESIGN_CENTRE})
 

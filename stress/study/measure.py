@@ -91,7 +91,8 @@ def part_stresses(
     part: Part, waves: Waves, *, removed: frozenset[str] = frozenset(), heater_bias_V: float = 0.0
 ) -> Mapping[str, float]:
     """Return the stresses of a part by name; empty where it was taken out."""
-    if part.elements and frozenset(name.lower() for name in part.elements) <= removed:
+    elements = frozenset(name.lower() for name in part.elements or (part.name,))
+    if elements <= removed or part.name.lower() in removed:
         return {}
     match part.kind:
         case Kind.TUBE:

@@ -154,7 +154,13 @@ def test_error_bad_input_gets_a_message_and_status_2(tmp_path, netlist, sheet, s
 
 @pytest.mark.parametrize(
     "options",
-    [("--only", "C7"), ("--policy", "nobody"), ("--high", "many"), ("--also", "C2 leaky")],
+    [
+        ("--only", "C7"),
+        ("--policy", "nobody"),
+        ("--high", "many"),
+        ("--also", "C2 leaky"),
+        ("--condition", "silicon"),
+    ],
 )
 def test_error_options(supply, options):
     done = run("review", supply, *options)
