@@ -30,8 +30,7 @@ def print_bench(review: Review, console: Console) -> None:
     rank = {risk.position: risk.rank for risk in review.risks}
     last = len(rank) + 1
     for position in sorted(review.circuit.positions, key=lambda p: rank.get(p.name, last)):
-        out.line()
-        out.line(f"{position.name:<4} {position.role_text}; {marked(position)}", bold=True)
+        out.heading(f"{position.name:<4} {position.role_text}; {marked(position)}")
         limits = review.bench.get(position.name)
         if limits is None:
             out.line("no limits: its value or what it bears is not known", indent=INDENT)
@@ -82,8 +81,7 @@ def print_verdicts(found: Verdicts, console: Console) -> None:
                 if point.advice is not advice:
                     out.line(f"{point.advice}: {point.reason}", first="   - ", indent=INDENT)
     if found.drifts:
-        out.line()
-        out.line("Resistors and windings", bold=True)
+        out.heading("Resistors and windings")
         for drift in found.drifts:
             out.line(str(drift), indent=INDENT)
 
@@ -110,8 +108,7 @@ def print_measured(
     out = Lines(console)
     out.line("The equipment as measured", bold=True)
     _order(drawn.risks, order, out)
-    out.line()
-    out.line("Past a limit as measured, nothing else being wrong", bold=True)
+    out.heading("Past a limit as measured, nothing else being wrong")
     if not stressed:
         out.line("nothing", indent=INDENT)
     for one in stressed:
@@ -123,8 +120,7 @@ def print_measured(
     for case in unanswered:
         out.line(f"{case.kind}: {case.text}", first=f"{case.case} ", indent=_hang(case.case))
     if moved:
-        out.line()
-        out.line("Voltages that moved", bold=True)
+        out.heading("Voltages that moved")
     for change in moved:
         out.line(
             f"{figure(change.drawn_V, 'V')} as drawn, {figure(change.measured_V, 'V')} as "
@@ -177,7 +173,6 @@ def _findings(before: Review, after: Review, out: Lines) -> None:
     ):
         if not steps:
             continue
-        out.line()
-        out.line(heading, bold=True)
+        out.heading(heading)
         for step in steps:
             out.line(step.text, first=f"{step.where} ", indent=_hang(step.where))
