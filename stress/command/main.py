@@ -2,7 +2,11 @@
 
 from __future__ import annotations
 
+import signal
+import threading
 from importlib import import_module
+from types import FrameType
+from typing import NoReturn
 
 import click
 
@@ -42,9 +46,18 @@ class Commands(click.Group):
 
 @click.command(cls=Commands)
 @click.version_option(package_name="capstress")
-def main() -> None:
+@click.pass_context
+def main(context: click.Context) -> None:
     """Find out what the capacitors of a piece of equipment really bear.
 
     FILE is a SPICE netlist; a part sheet of the same name with the ending .toml is read with it.
     High voltage kills: nothing that is printed here is leave to work on live equipment.
     """
+    if threading.current_thread() is threading.main_thread():
+        before = signal.signal(signal.SIGTERM, _end)
+        context.call_on_close(lambda: signal.signal(signal.SIGTERM, before))
+
+
+def _end(number: int, frame: FrameType | None) -> NoReturn:
+    """End as an interruption from the keyboard does: workers and files go first."""
+    raise SystemExit(128 + number)

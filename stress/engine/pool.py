@@ -83,11 +83,14 @@ class Pool:
         """
         library = find_library()
         self._folder = Path(tempfile.mkdtemp(prefix="capstress-"))
-        empty = self._folder / "empty"
-        empty.mkdir()
-        self._slots = [
-            Slot(str(empty), library, memory_bytes=self._memory_bytes) for _ in range(self._jobs)
-        ]
+        try:
+            empty = self._folder / "empty"
+            empty.mkdir()
+            for _ in range(self._jobs):
+                self._slots.append(Slot(str(empty), library, memory_bytes=self._memory_bytes))
+        except BaseException:  # nobody else would clean up after an interruption here
+            self._clear()
+            raise
         return self
 
     def __exit__(
@@ -96,6 +99,9 @@ class Pool:
         error: BaseException | None,
         trace: TracebackType | None,
     ) -> None:
+        self._clear()
+
+    def _clear(self) -> None:
         for slot in self._slots:
             slot.end()
         with ThreadPoolExecutor(max_workers=max(len(self._slots), 1)) as threads:

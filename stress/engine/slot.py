@@ -15,7 +15,7 @@ from typing import Any, TypeVar
 
 from pebble import ProcessPool
 
-from stress.engine.worker import enter
+from stress.engine.orphan import start
 
 Found = TypeVar("Found")
 
@@ -61,7 +61,8 @@ class Slot:
     """A place for one worker; a new one takes over when the old one is lost.
 
     Args:
-        folder: Empty; the worker stands in it.
+        folder: Empty; the worker stands in it. What it lies in is the pool's own, and goes with the
+            workers when the pool's process is killed.
         library: The ngspice library, as `stress.engine.ngspice.find_library` gives it.
         memory_bytes: Its address space, or None for no limit.
     """
@@ -97,7 +98,7 @@ class Slot:
         context = _Context()
         return ProcessPool(
             max_workers=1,
-            initializer=enter,
+            initializer=start,
             initargs=self._place,
             context=context,
         )
