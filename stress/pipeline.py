@@ -17,6 +17,7 @@ from stress.engine.solver import Solver
 from stress.judge.cautions import cautions
 from stress.judge.explain import explain
 from stress.judge.findings import Results, findings
+from stress.judge.pair import pair_texts
 from stress.judge.power_up import power_up
 from stress.judge.risk import risks
 from stress.netlist.read import read as read_netlist
@@ -34,6 +35,7 @@ from stress.study.fault import parse
 from stress.study.inrush import inrush
 from stress.study.leakage import leakage
 from stress.study.other_use import asked
+from stress.study.pairs import pairs as likely_pairs
 from stress.study.replacement import replacement
 from stress.study.reservoir import checked
 from stress.study.result import Bench, Leakage, Replacement, Review, Run, Worst
@@ -109,6 +111,7 @@ def review(
     only: Sequence[str] = (),
     also: Sequence[str] = (),
     ask: Sequence[str] = (),
+    pairs: int = 0,
     policy: str = USUAL_POLICY,
     plan: bool = False,
     libraries: Sequence[Path] = (),
@@ -123,6 +126,7 @@ def review(
         only: Names of the positions whose faults are studied; empty: all.
         also: Known faults that are in every case, such as "C5 leaky 1 Meg".
         ask: Further conditions, of those that are on offer (`Circuit.uses`).
+        pairs: Most pairs of likely faults to be tried; 0: none.
         policy: Name of the derating policy, or a file of the same form.
         plan: Also make the power-up plan and follow the discharge.
         jobs: Worker processes; None: one a core.
@@ -146,6 +150,7 @@ def review(
         only=only,
         also=also,
         ask=ask,
+        pairs=pairs,
         policy=policy,
         plan=plan,
         jobs=jobs,
@@ -159,6 +164,7 @@ def review_circuit(
     only: Sequence[str] = (),
     also: Sequence[str] = (),
     ask: Sequence[str] = (),
+    pairs: int = 0,
     policy: str = USUAL_POLICY,
     plan: bool = False,
     jobs: int | None = None,
@@ -185,6 +191,12 @@ def review_circuit(
         leaks = leakage(circuit, studied, healthy=healthy, solver=pool)
         stage = "failures"
         failed = failures(circuit, studied, healthy=healthy, leakage=leaks, solver=pool)
+        both = None
+        if pairs:
+            stage = "two faults at once"
+            both = likely_pairs(
+                circuit, studied, healthy=healthy, leakage=leaks, count=pairs, solver=pool
+            )
         worsts = worst(circuit, working=healthy.working)
         order = risks(circuit, worst=worsts, leakage=leaks, failures=failed)
         stage = "what to fit, what may be read"
@@ -211,6 +223,7 @@ def review_circuit(
         leakage=leaks,
         failures=failed,
         risks=order,
+        pairs=both,
     )
     return Review(
         circuit=circuit,
@@ -234,6 +247,8 @@ def review_circuit(
         policy=policy,
         power_up=power,
         discharge=after,
+        pairs=both,
+        pair_texts=pair_texts(both, circuit) if both is not None else (),
     )
 
 

@@ -42,6 +42,13 @@ if TYPE_CHECKING:
     help="A further condition, of those on offer for this circuit; can be given again.",
 )
 @click.option(
+    "--pairs",
+    type=click.IntRange(1, 500),
+    default=None,
+    metavar="COUNT",
+    help="Also try so many of the likeliest pairs of faults at once, such as 24.",
+)
+@click.option(
     "--policy",
     default="common-practice",
     show_default=True,
@@ -66,6 +73,7 @@ def review(
     only: str,
     also: tuple[str, ...],
     ask: tuple[str, ...],
+    pairs: int | None,
     policy: str,
     plan: bool,
     fitted: bool,
@@ -102,6 +110,7 @@ def review(
                 circuit,
                 only=names,
                 also=also,
+                pairs=pairs or 0,
                 policy=policy,
                 plan=plan,
                 jobs=jobs,

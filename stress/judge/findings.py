@@ -5,12 +5,15 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass
 
+from stress.circuit.chain import Chains
 from stress.circuit.circuit import Circuit
 from stress.finding import Finding, Severity
+from stress.judge.pair import named, pair_text
 from stress.study import conditions as stock
 from stress.study.failures import describe
 from stress.study.limits import limits
 from stress.study.other_use import is_own
+from stress.study.pairs import Pairs
 from stress.study.result import Failure, Leakage, Risk, Victim, Working, Worst
 from stress.text.figure import figure
 
@@ -25,6 +28,7 @@ class Results:
     leakage: Mapping[str, Leakage]
     failures: Mapping[str, tuple[Failure, ...]]
     risks: tuple[Risk, ...]
+    pairs: Pairs | None = None
 
 
 def findings(results: Results) -> tuple[Finding, ...]:
@@ -117,6 +121,21 @@ def leaks_between_nodes(results: Results) -> Iterator[Finding]:
             )
 
 
+def two_faults(results: Results) -> Iterator[Finding]:
+    """Pairs of faults that pass a limit which neither passes alone."""
+    if results.pairs is None or not results.pairs.found:
+        return
+    chains = Chains(results.circuit)
+    for pair in results.pairs.found:
+        yield Finding(
+            severity=Severity.WATCH,
+            where=pair.victims[0].victim.part,
+            condition=pair.condition,
+            text=f"{named(pair)} together: {pair_text(pair, chains)}",
+            rule="two-faults",
+        )
+
+
 def assumed_limits(results: Results) -> Iterator[Finding]:
     """Leaks and failures that would pass a limit nobody stated: name the key that settles it."""
     seen: dict[str, tuple[Victim, list[str]]] = {}
@@ -186,6 +205,8 @@ def without_number(results: Results) -> Iterator[Finding]:
         whys += [why for found in leak.by_condition for why in found.unanswered]
     for failures in results.failures.values():
         whys += [f.unanswered for f in failures if f.unanswered is not None]
+    if results.pairs is not None:
+        whys += [why for pair in results.pairs.tried for why in pair.unanswered]
     for why in dict.fromkeys(whys):
         if why.kind == "not limited by the netlist":
             continue
@@ -225,6 +246,7 @@ RULES: tuple[Rule, ...] = (
     ripple_over_rating,
     surge_of_rectifiers,
     leaks_between_nodes,
+    two_faults,
     without_number,
     seen_without_solving,
     assumed_limits,

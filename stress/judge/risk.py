@@ -15,10 +15,9 @@ from math import log2, log10
 from stress.circuit.circuit import Circuit, Kind, Position
 from stress.finding import Severity
 from stress.study.failures import NOT_LIMITED, describe
+from stress.study.likelihood import likelihood
 from stress.study.result import Failure, Leakage, Risk, Victim, Worst
 from stress.text.figure import figure
-
-YEAR = 2026  # against which the age of a part with a stated year is taken
 
 # How hard the victim is to replace; common practice.
 WEIGHT = {
@@ -103,17 +102,9 @@ def _risk(position: Position, rank: int, threats: list[Threat]) -> Risk:
     )
 
 
-def _share(circuit: Circuit, position: Position, fault: str) -> float:
-    """Return how likely a fault is; where the table has none of this kind, one in a thousand."""
-    entry = circuit.sheet.capacitors.get(position.name.lower())
-    years = float(YEAR - entry.year) if entry is not None and entry.year else None
-    weight = circuit.sheet.likelihood.get(position.style.name, 1.0)
-    return min(max(position.style.fault_share(fault, years=years), 1e-3) * weight, 1.0)
-
-
 def _seen(circuit: Circuit, position: Position) -> Iterator[Threat]:
     """What the circuit shows without solving: a plain part at the line, one fitted backwards."""
-    share = max(_share(circuit, position, "leaky"), _share(circuit, position, "short"))
+    share = max(likelihood(circuit, position, "leaky"), likelihood(circuit, position, "short"))
     for finding in circuit.findings:
         if finding.where != position.name or finding.severity.rank > Severity.TEST.rank:
             continue
@@ -170,7 +161,7 @@ def _leak(circuit: Circuit, position: Position, leakage: Leakage | None) -> Iter
     found = leakage.governing if leakage is not None else None
     if found is None:
         return
-    share = _share(circuit, position, "leaky")
+    share = likelihood(circuit, position, "leaky")
     if found.critical_ohm is not None and found.victim is not None:
         enough = _small_leak(found.critical_ohm)
         likely = share >= LIKELY and found.critical_ohm > SURE_OHM
@@ -226,7 +217,7 @@ def _failures(
 ) -> Iterator[Threat]:
     for failure in failures:
         fault = failure.fault if failure.fault != "low" else "dried"
-        share = _share(circuit, position, fault)
+        share = likelihood(circuit, position, fault)
         known = [v for v in failure.victims if not v.limit.assumed]
         if known:
             victim = max(known, key=lambda v: consequence(circuit, v))

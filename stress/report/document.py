@@ -10,6 +10,7 @@ from typing import Any
 
 from stress.circuit.circuit import Part, Position
 from stress.report import borne, words
+from stress.report.pair_document import pairs_document
 from stress.report.power_document import discharge_document, power_up_document, unanswered
 from stress.study.other_use import on_offer
 from stress.study.result import (
@@ -71,6 +72,7 @@ def document(review: Review) -> dict[str, Any]:
             "parts": [_part(review, each) for each in circuit.parts],
             "power_up": power_up_document(review.power_up) if review.power_up else None,
             "discharge": discharge_document(review.discharge) if review.discharge else None,
+            "pairs": pairs_document(review.pairs) if review.pairs else None,
             "findings": [
                 {
                     "severity": each.severity.value,

@@ -170,6 +170,7 @@ def _conditions(review: Review) -> tuple[Fact, ...]:
         missing = "" if each.name in answered else words.missing_in(review, each.name)
         text = "; ".join(part for part in (line, each.text, missing) if part)
         facts.append(Fact(name=each.name, text=text or "as drawn"))
+    facts += [Fact(name="two faults at once", text=text) for text in review.pair_texts]
     offered = borne.on_offer(review)
     if offered:
         facts.append(Fact(name="on offer with --condition", text="; ".join(offered)))

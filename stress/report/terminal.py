@@ -45,6 +45,7 @@ def print_review(review: Review, console: Console, *, verbose: bool = False) -> 
     _explanations(review, out)
     _parts(review, out)
     _conditions(review, out, verbose=verbose)
+    _listed("Two faults at once", review.pair_texts, out)
     _listed("Assumed, because neither netlist nor sheet tells", review.circuit.assumed, out)
     _listed("Held, tied down or quieted in the simulation", review.working.notices, out)
     _listed("Cautions", review.cautions, out)

@@ -19,6 +19,7 @@ from stress.parts.limit import Limit
 
 if TYPE_CHECKING:
     from stress.study.discharge_result import Discharge
+    from stress.study.pairs import Pairs
     from stress.study.power_result import PowerUp
 
 
@@ -284,6 +285,8 @@ class Review:
         cautions: What can hurt the reader, by what the circuit is.
         power_up, discharge: The plan of the first switch-on and what stays charged; None where
             they were not asked for.
+        pairs: Two likely faults at once; None where they were not asked for.
+        pair_texts: The same in words, a summary first and then every pair that was found.
     """
 
     circuit: Circuit
@@ -302,3 +305,5 @@ class Review:
     policy: str = ""
     power_up: PowerUp | None = None
     discharge: Discharge | None = None
+    pairs: Pairs | None = None
+    pair_texts: tuple[str, ...] = ()
