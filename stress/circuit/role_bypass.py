@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from stress.circuit.circuit import Kind, Role
 from stress.circuit.graph import Edge, Pin
 from stress.circuit.joined import GROUND
@@ -12,6 +14,20 @@ from stress.circuit.surroundings import RADIO_F, SIGNAL_OHM, STOPPER_OHM, Ends, 
 RETURN_OHM = 47e3  # less between grid and return is a stopper (common practice)
 DETECTOR_F = 5e-9  # behind resistors; more there filters AVC
 LOAD_F = 60e-9  # at the detector itself
+SMOOTHING_F = 1e-6  # a capacitor from this size smooths what a part in series passes on
+
+
+def compensation(s: Surroundings, c: Edge, e: Ends) -> Found:
+    """From a node of a control loop through a resistor of its own to ground or a supply."""
+    for node, middle in ((c.a, c.b), (c.b, c.a)):
+        if node not in s.controls or s.still(middle) or s.graph.pins(middle):
+            continue
+        others = [x for x in s.graph.around(middle) if x.name != c.name]
+        if len(others) == 1 and others[0].letter == "R" and s.still(others[0].other(middle)):
+            return Role.FEEDBACK, f"compensates the loop with {others[0].name}, {node} to " + (
+                s.words(others[0].other(middle))
+            )
+    return None
 
 
 def bypass(s: Surroundings, c: Edge, e: Ends) -> Found:
@@ -26,6 +42,9 @@ def bypass(s: Surroundings, c: Edge, e: Ends) -> Found:
         return Role.FEEDBACK, f"compensates the loop, {node} to {s.words(quiet)}"
     if "common" in pins and not s.direct(node, "output"):
         if _is_regulated(s, pins["common"]):
+            larger = s.larger(c)
+            if larger is not None:
+                return Role.DECOUPLING, f"radio-frequency bypass beside {larger}, {node}"
             return Role.SMOOTHING, f"smoothing of the regulated supply {node}"
         return _at_cathode(s, pins["common"], quiet)
     if "output" in pins:
@@ -48,10 +67,28 @@ def _is_regulated(s: Surroundings, pin: Pin) -> bool:
         return False
     at = {Pin(part.name, role).kind: s.graph.at(node) for role, node in part.pins.items()}
     held = at.get("input", "")
+    if _passes_supply(s, at):
+        return True
     clamped = any(j.cathode == held and not j.tube for j in s.graph.junctions_at(held))
     rail = at.get("output", "")
     fed = rail in s.supply.feeds and (s.is_held(rail) or rail in s.supply.outputs)
     return fed and held != GROUND and (s.still(held) or clamped)
+
+
+def _passes_supply(s: Surroundings, at: Mapping[str, str]) -> bool:
+    """Say whether the output of a part lies on a supply itself, with neither load nor winding in
+    between, and what its common pin feeds is smoothed by a large capacitor to ground: a part in
+    series with the supply, whatever works its input."""
+    rail, fed = at.get("output", GROUND), at.get("common", GROUND)
+    supplied = rail in s.supply.outputs or (rail in s.supply.feeds and s.is_held(rail))
+    smoothed = any(
+        x.letter == "C" and (x.value or 0.0) >= SMOOTHING_F and x.other(fed) == GROUND
+        for x in s.graph.around(fed)
+    )
+    loaded = any(
+        x.letter != "C" and x.other(fed) not in (rail, GROUND) for x in s.graph.around(fed)
+    )
+    return supplied and smoothed and loaded and fed != GROUND
 
 
 def _at_cathode(s: Surroundings, pin: Pin, quiet: str) -> Found:

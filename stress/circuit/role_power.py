@@ -13,6 +13,7 @@ AFTER_RECTIFIER_OHM = 1000.0
 COPPER_OHM = 1000.0
 STARTER_OHM = 1000.0
 DAMPING_F = 5e-9
+DAMPING_OHM = 470.0  # in series with a capacitor across a choke (common practice)
 DECOUPLING_OHM = 10e3  # filter resistors are smaller, those of one stage larger (common practice)
 
 
@@ -71,6 +72,9 @@ def across_winding(s: Surroundings, c: Edge, e: Ends) -> Found:
     if plate:
         return Role.TONE, f"tone, {plate[0].text}, across the winding {edge.name}"
     if e.a in s.supply.feeds and e.b in s.supply.feeds:
+        # A resistor in series would spoil a resonance: it takes the kick of the choke.
+        if e.ohm >= DAMPING_OHM:
+            return Role.SNUBBER, f"damps the choke {edge.name}, {e.ohm:.0f} ohm in series"
         return Role.TUNING, f"tunes the choke {edge.name} to the ripple"
     if len(s.graph.windings_with(edge.name)) > 1 and (edge.value or 0.0) < 0.1:
         return Role.TUNING, f"tunes the winding {edge.name}"
@@ -158,7 +162,7 @@ def _starter(s: Surroundings, node: str) -> str | None:
     for edge in s.graph.around(node):
         there = edge.other(node)
         feed = s.supply.feeds.get(there)
-        if edge.letter != "R" or edge.ohm < STARTER_OHM or feed is None:
+        if edge.letter != "R" or edge.ohm < STARTER_OHM or feed is None or not s.still(there):
             continue
         if feed.output.origin in ("line", "source") and feed.output.sign > 0:
             return f"started through {edge.name}"

@@ -39,6 +39,7 @@ RULES: tuple[Rule, ...] = (
     role_power.across_winding,
     role_line.buffer,
     role_power.supply,
+    role_bypass.compensation,
     role_bypass.bypass,
     role_signal.coupling,
     _filter,
