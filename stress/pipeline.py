@@ -29,6 +29,7 @@ from stress.parts.sheet import Sheet
 from stress.study.bench import bench
 from stress.study.bench_in_place import survey
 from stress.study.conditions import HIGH, NOMINAL, case, conditions
+from stress.study.detune import timings
 from stress.study.discharge import discharge
 from stress.study.failures import failures
 from stress.study.fault import parse
@@ -306,6 +307,7 @@ def _explanations(
     results: Results, fit: Mapping[str, Replacement], limits: Mapping[str, Bench]
 ) -> Mapping[str, tuple[str, ...]]:
     chains = Chains(results.circuit)
+    tuned = timings(results.circuit)
     ranked = {risk.position: risk for risk in results.risks}
     return {
         p.name: explain(
@@ -319,6 +321,7 @@ def _explanations(
             replacement=fit.get(p.name),
             bench=limits.get(p.name),
             risk=ranked[p.name],
+            timing=tuned.get(p.name),
         )
         for p in results.circuit.positions
     }

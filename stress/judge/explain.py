@@ -24,6 +24,7 @@ from stress.study.result import (
     Working,
     Worst,
 )
+from stress.study.timing import Timing, told
 from stress.text.figure import figure
 
 LEAST_LEAK_A = 1e-7
@@ -48,6 +49,7 @@ def explain(
     replacement: Replacement | None,
     bench: Bench | None,
     risk: Risk,
+    timing: Timing | None = None,
 ) -> tuple[str, ...]:
     """Return the paragraphs about one position, what to do first."""
     paragraphs = [
@@ -66,6 +68,8 @@ def explain(
                     found=leakage.governing,
                 )
             )
+    if timing is not None:
+        paragraphs.append(told(timing, circuit=circuit))
     paragraphs += [
         failure.text for failure in failures if failure.dangerous or failure.consequences
     ]
@@ -145,8 +149,7 @@ def _leak(position: Position, *, chains: Chains, working: Working, leakage: Leak
         paragraphs.append(f"no leak down to 1 Ω passes a known limit ({found.condition})")
     if found.functional_ohm is not None:
         paragraphs.append(
-            f"from {figure(found.functional_ohm, 'ohm')} of leakage on "
-            f"{found.functional_reason} by more than it may"
+            f"from {figure(found.functional_ohm, 'ohm')} of leakage on {found.functional_reason}"
         )
     return paragraphs
 

@@ -181,7 +181,7 @@ def _leak(circuit: Circuit, position: Position, leakage: Leakage | None) -> Iter
         yield Threat(
             text=(
                 f"from {figure(found.functional_ohm, 'ohm')} of leakage on "
-                f"{found.functional_reason} by more than it may; no known limit is passed"
+                f"{found.functional_reason}; no known limit is passed"
             ),
             consequence=ONLY_FUNCTION,
             likelihood=share * _small_leak(found.functional_ohm),

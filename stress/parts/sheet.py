@@ -129,6 +129,7 @@ class Sheet:
         safety: Factor on the leakage that is allowed.
         tester_V: Voltages the user's tester has.
         functional_share: Share by which a bias may move (0.1).
+        detuned_share: Share by which a tuned circuit or a timing may be off (0.01).
         likelihood: The user's factors on the likelihood of a fault, by style.
         spans: Where each entry stands, by its table and its name in lower case, and each key
             of it by its path, such as ("capacitors", "c5", "plus").
@@ -157,6 +158,7 @@ class Sheet:
     safety: float = field(default=2.0, metadata=unit("1"))
     tester_V: tuple[float, ...] = ()
     functional_share: float = field(default=0.1, metadata=unit("1"))
+    detuned_share: float = field(default=0.01, metadata=unit("1"))
     likelihood: Mapping[str, float] = NOTHING
     spans: Mapping[tuple[str, ...], Span] = field(default_factory=dict, compare=False, repr=False)
 

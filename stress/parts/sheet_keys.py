@@ -205,6 +205,7 @@ BENCH: Keys = {
     "safety": ("safety", amount("1", least=1.0, most=100.0, above=False)),
     "tester": ("tester_V", several(amount("V"))),
     "functional": ("functional_share", _share),
+    "detuned": ("detuned_share", _share),
 }
 
 

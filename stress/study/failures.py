@@ -11,11 +11,13 @@ from stress.engine.solver import Solver
 from stress.parts.limit import QUANTITIES
 from stress.study import conditions as stock
 from stress.study.damage_time import timed
+from stress.study.detune import timings
 from stress.study.fault import Fault, across_ideal_source, values
-from stress.study.gain import GainLoss, gain_losses
+from stress.study.gain import gain_losses
 from stress.study.leak_reading import Scene, open_scene
 from stress.study.limits import all_stresses, over
 from stress.study.result import Failure, Leakage, Unanswered, Victim
+from stress.study.timing import Timing, detuning
 from stress.study.working import Healthy, unanswered
 from stress.text.figure import figure
 
@@ -79,12 +81,19 @@ def failures(
         for (scene, fault), answer in zip(wanted, solver.solve(cases), strict=True)
     ]
     gains = gain_losses(circuit, studied, healthy=healthy, solver=solver)
+    tuned = timings(circuit)
     results = {}
     for position in studied:
         if position.value_F:
             own = [t for t in tries if t.fault.position == position.name]
-            losses = gains.get(position.name, ())
-            results[position.name] = tuple(_failures_of(circuit, position, own, losses))
+            heard = {
+                kind: (
+                    *_detuned(circuit, tuned.get(position.name), kind),
+                    *(str(loss) for loss in gains.get(position.name, ()) if loss.fault == kind),
+                )
+                for kind in KINDS
+            }
+            results[position.name] = tuple(_failures_of(circuit, position, own, heard))
     return results
 
 
@@ -108,14 +117,14 @@ def _case(scene: Scene, fault: Fault, leakage: Leakage | None) -> Case:
 
 
 def _failures_of(
-    circuit: Circuit, position: Position, tries: Sequence[Try], losses: Sequence[GainLoss]
+    circuit: Circuit, position: Position, tries: Sequence[Try], heard: Mapping[str, tuple[str, ...]]
 ) -> list[Failure]:
     found = []
     for kind in kinds_of(position):
         like = "short" if kind == "reversed" else kind
         own = [t for t in tries if t.fault.kind == like]
         if own:
-            found.append(_failure(circuit, position, kind, own, losses))
+            found.append(_failure(circuit, position, kind, own, heard[kind]))
         elif like == "short":
             found.append(
                 Failure(
@@ -140,14 +149,13 @@ def _failure(
     position: Position,
     kind: str,
     tries: Sequence[Try],
-    losses: Sequence[GainLoss],
+    heard: tuple[str, ...],
 ) -> Failure:
     """Return the failure in the condition with the worst victim, nominal where none has one."""
     judged = [(t, _victims(t)) for t in tries]
     worst, victims = max(judged, key=lambda pair: _severity(pair[1]))
     why = next((u for t in tries if (u := unanswered(t.answer, _name(t))) is not None), None)
-    lost = tuple(str(loss) for loss in losses if loss.fault == kind)
-    consequences = () if kind == "reversed" else (*lost, *_consequences(circuit, worst))
+    consequences = () if kind == "reversed" else (*heard, *_consequences(circuit, worst))
     return Failure(
         position=position.name,
         fault=kind,
@@ -158,6 +166,11 @@ def _failure(
         consequences=consequences,
         unanswered=why,
     )
+
+
+def _detuned(circuit: Circuit, timing: Timing | None, kind: str) -> tuple[str, ...]:
+    text = detuning(timing, kind, circuit=circuit) if timing is not None else ""
+    return (text,) if text else ()
 
 
 def _name(one: Try) -> str:

@@ -18,6 +18,7 @@ from stress.engine.solver import Solver
 from stress.engine.twin import MOST_LEAKAGE_OHM, insulation_of
 from stress.study import conditions as stock
 from stress.study.between import leaks_between
+from stress.study.detune import timings, with_detuning
 from stress.study.fault import across_ideal_source
 from stress.study.leak_reading import Reading, Scene, open_scene, read
 from stress.study.limits import all_stresses
@@ -52,9 +53,14 @@ def leakage(
     ]
     pairs = [(p, c) for p in limited for c in searched]
     found = run([sweep(circuit, healthy, p, c) for p, c in pairs], solver=solver)
+    tuned = timings(circuit)
     results = {}
     for position in positions:
-        own = tuple(r for (p, _), r in zip(pairs, found, strict=True) if p is position)
+        own = tuple(
+            with_detuning(r, tuned.get(p.name), top_ohm=insulation_of(p))
+            for (p, _), r in zip(pairs, found, strict=True)
+            if p is position
+        )
         results[position.name] = _governed(position, own, limited=position in limited)
     return results
 
@@ -254,7 +260,7 @@ def _result(
         always=always is not None,
         functional_ohm=functional,
         functional_reason=(
-            f"{readings[functional].functional_text} moves" if functional is not None else None
+            readings[functional].functional_text if functional is not None else None
         ),
         assumed_critical_ohm=assumed,
         assumed_victim=(

@@ -114,7 +114,7 @@ CASES = [
     Explained(
         "shore_receiver",
         "C11",
-        ("leakage on", "the bias of XV3 moves"),
+        ("leakage on", "the bias of XV3 is off"),
         "the grid leak is megohms: the diode's voltage leaks to the grid though nothing burns",
     ),
     Explained(
@@ -144,7 +144,7 @@ CASES = [
     Explained(
         "harbour_midget",
         "C11",
-        ("leakage on", "the voltage at C11 moves"),
+        ("leakage on", "the voltage at C11 is off"),
         "the AVC line is fed through megohms: tens of megohms pull it down",
     ),
 ]
