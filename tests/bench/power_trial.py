@@ -1,6 +1,6 @@
 """Would the plan's abort readings stop the ramp before damage? A seeded trial.
 
-    python tests/bench/power_trial.py [--faults 40] [--seed 7] [--jobs 2] [NETLIST ...]
+    python tests/bench/power_trial.py [--faults 40] [--seed 211] [--jobs 2] [NETLIST ...]
 
 Each reference equipment gets random single faults that would do damage at full line, and healthy
 samples; both have parts up to 10 % and the line up to 5 % off, all by seed. The table is printed
@@ -44,7 +44,7 @@ from stress.study.worst import worst
 HOME = Path(__file__).parents[2]
 NETLISTS = sorted((HOME / "netlists").glob("*.cir"))
 TABLE = HOME / "examples" / "power_trial.md"
-SEED = 7
+SEED = 211  # its faults were never looked at while the conventions below were settled
 DEEPEST = 1e-3  # of the critical leakage, for the smallest leakage resistance that is drawn
 QUICK_S = 10.0  # a part that stands its overload this long outlasts a look at the clipped meters
 # Times its limit that a part stands for minutes: a resistor's power, below which no law tells a
@@ -298,7 +298,8 @@ climbed until an abort reading stops it.
 
 Faulty sets and healthy samples have all parts up to 10 % off and the line up to 5 %, evenly spread,
 a faulty set the same ones at every step; an alarm is any abort reading at any step. A limit that a
-set passes without the fault counts for none.
+set passes without the fault counts for none. What an ohmmeter is taken to show, and how long a part
+stands its overload, are conventions of this trial; they were settled on faults of other seeds.
 
 | equipment | faults | harmless | ohmmeter | before | quick | late | never | unsolved | in time (95 % bound) \
 | false alarms |
