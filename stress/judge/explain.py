@@ -25,6 +25,7 @@ from stress.study.result import (
     Worst,
 )
 from stress.study.timing import Timing, told
+from stress.study.unjudged import MOST, Unjudged, not_judged
 from stress.text.figure import figure
 
 LEAST_LEAK_A = 1e-7
@@ -73,9 +74,25 @@ def explain(
     paragraphs += [
         failure.text for failure in failures if failure.dangerous or failure.consequences
     ]
+    paragraphs.append(_missing(leakage, failures))
     if bench is not None:
         paragraphs.append(bench_line(bench))
     return tuple(paragraph for paragraph in paragraphs if paragraph)
+
+
+def _missing(leakage: Leakage | None, failures: tuple[Failure, ...]) -> str:
+    """Return which limits nobody knows of parts that a fault here strains, each part once."""
+    found = list(leakage.governing.unjudged) if leakage and leakage.governing else []
+    for failure in failures:
+        found += failure.unjudged
+    worst: dict[tuple[str, str], Unjudged] = {}
+    for each in found:
+        held = worst.get((each.part, each.quantity))
+        if held is None or each.stress > held.stress:
+            worst[each.part, each.quantity] = each
+    return not_judged(
+        tuple(sorted(worst.values(), key=lambda u: -u.stress / max(u.healthy, 1e-9))[:MOST])
+    )
 
 
 def bears(

@@ -23,6 +23,7 @@ from stress.study.result import (
     Review,
     Surge,
 )
+from stress.study.unjudged import Unjudged
 
 SCHEMA = "capstress-review/1"
 WORKING = (
@@ -213,6 +214,7 @@ def _leakage(of: Leakage | None) -> dict[str, Any] | None:
             }
             for each in of.by_condition
         },
+        "unjudged": [_unjudged(each) for each in governing.unjudged] if governing else [],
         "curve": [_point(each) for each in governing.curve] if governing else [],
     }
 
@@ -271,7 +273,18 @@ def _failure(of: Failure) -> dict[str, Any]:
         "text": of.text,
         "dangerous": of.dangerous,
         "consequences": of.consequences,
+        "unjudged": [_unjudged(each) for each in of.unjudged],
         "reason": of.unanswered.kind if of.unanswered else None,
+    }
+
+
+def _unjudged(of: Unjudged) -> dict[str, Any]:
+    return {
+        "part": of.part,
+        "quantity": of.quantity,
+        "healthy": of.healthy,
+        "stress": of.stress,
+        "key": of.key,
     }
 
 

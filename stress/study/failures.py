@@ -18,6 +18,7 @@ from stress.study.leak_reading import Scene, open_scene
 from stress.study.limits import all_stresses, over
 from stress.study.result import Failure, Leakage, Unanswered, Victim
 from stress.study.timing import Timing, detuning
+from stress.study.unjudged import Unjudged, unjudged
 from stress.study.working import Healthy, unanswered
 from stress.text.figure import figure
 
@@ -164,6 +165,7 @@ def _failure(
         text=_text(position, kind, victims, consequences, why),
         dangerous=any(not v.limit.assumed for v in victims),
         consequences=consequences,
+        unjudged=_unjudged(worst),
         unanswered=why,
     )
 
@@ -192,6 +194,13 @@ def _victims(one: Try) -> tuple[Victim, ...]:
         stresses, scene.judged, healthy=scene.stresses, but=scene.position.name, assumed=True
     )
     return timed(victims, scene.circuit)
+
+
+def _unjudged(one: Try) -> tuple[Unjudged, ...]:
+    if not isinstance(one.answer, Settled):
+        return ()
+    stresses = all_stresses(one.scene.circuit, one.answer.waves, removed=one.scene.removed)
+    return unjudged(one.scene.circuit, stresses, healthy=one.scene.stresses)
 
 
 def _consequences(circuit: Circuit, one: Try) -> tuple[str, ...]:

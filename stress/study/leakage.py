@@ -24,6 +24,7 @@ from stress.study.leak_reading import Reading, Scene, open_scene, read
 from stress.study.limits import all_stresses
 from stress.study.plan import Plan, run
 from stress.study.result import Condition, CurvePoint, Leakage, LeakageIn, Victim
+from stress.study.unjudged import Unjudged, unjudged
 from stress.study.working import Healthy
 
 LEAST_OHM = 1.0
@@ -268,11 +269,20 @@ def _result(
             if assumed_at
             else None
         ),
+        unjudged=_unjudged(scene, readings),
         curve=_curve(readings),
         unanswered=tuple(
             r.point.unanswered for r in readings.values() if r.point.unanswered is not None
         ),
     )
+
+
+def _unjudged(scene: Scene, readings: dict[float, Reading]) -> tuple[Unjudged, ...]:
+    """Return what the largest leak does to parts without a limit."""
+    solved = _solved(readings)
+    if not solved:
+        return ()
+    return unjudged(scene.circuit, readings[solved[-1]].point.stresses, healthy=scene.stresses)
 
 
 def _curve(readings: dict[float, Reading]) -> tuple[CurvePoint, ...]:

@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from stress.study.discharge_result import Discharge
     from stress.study.pairs import Pairs
     from stress.study.power_result import PowerUp
+    from stress.study.unjudged import Unjudged
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -181,6 +182,7 @@ class LeakageIn:
     assumed_critical_ohm: float | None = None
     assumed_victim: Victim | None = None
     governs: bool = False
+    unjudged: tuple[Unjudged, ...] = ()  # at the smallest resistance with numbers
     curve: tuple[CurvePoint, ...] = ()
     unanswered: tuple[Unanswered, ...] = ()
 
@@ -207,6 +209,7 @@ class Failure:
     text: str
     dangerous: bool
     consequences: tuple[str, ...] = ()  # hum, loss of gain, silence
+    unjudged: tuple[Unjudged, ...] = ()  # raised stresses of parts without a known limit
     unanswered: Unanswered | None = None
 
 

@@ -99,6 +99,42 @@ def test_a_known_fault_is_in_every_case(supply, tmp_path):
     assert c2["working"]["nominal"]["dc_V"] == pytest.approx(b_V * 1.0 / 1.57, rel=1e-3)
 
 
+@pytest.mark.ngspice
+def test_pairs_are_counted_and_what_is_on_offer_is_named(supply, tmp_path):
+    sheet = supply.with_suffix(".toml")
+    text = sheet.read_text(encoding="utf-8").replace('"117 V"', '"110 V"')
+    sheet.write_text(text, encoding="utf-8")
+    out, page = tmp_path / "out.json", tmp_path / "out.html"
+    done = run("review", supply, "--pairs", "3", "--json", out, "--html", page)
+
+    assert done.exit_code == 0, done.output
+    found = json.loads(out.read_text(encoding="utf-8"))
+    assert (found["pairs"]["asked"], found["pairs"]["tried"]) == (3, 3)
+    assert found["pairs"]["unsolved"] == 0
+    assert [use["name"] for use in found["on_offer"]] == ["todays-line"]
+    printed = " ".join(done.output.split())
+    assert "3 of the" in printed
+    assert "on offer with --condition: todays-line" in printed
+    assert "two faults at once" in page.read_text(encoding="utf-8")
+    assert "todays-line" in page.read_text(encoding="utf-8")
+
+
+@pytest.mark.ngspice
+def test_a_condition_is_run_when_asked_for(supply, tmp_path):
+    sheet = supply.with_suffix(".toml")
+    text = sheet.read_text(encoding="utf-8").replace('"117 V"', '"110 V"')
+    sheet.write_text(text, encoding="utf-8")
+    out = tmp_path / "out.json"
+    done = run("review", supply, "--condition", "todays-line", "--only", "C1", "--json", out)
+
+    assert done.exit_code == 0, done.output
+    found = json.loads(out.read_text(encoding="utf-8"))
+    lines = {each["name"]: each["line_V"] for each in found["conditions"]}
+    assert (lines["todays-line"], lines["todays-line high"]) == (120.0, 126.0)
+    assert found["on_offer"] == []
+    assert found["positions"][0]["working"]["todays-line"]["dc_V"] > 0.0
+
+
 @pytest.mark.parametrize(
     ("netlist", "sheet", "said"),
     [

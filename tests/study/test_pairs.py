@@ -44,8 +44,8 @@ def circuit_of(*, power="30 mW", ohm="470k", more=""):
     return build(read_text(NODE.format(ohm=ohm)), sheet)
 
 
-@pytest.fixture(scope="module")
-def pool():
+@pytest.fixture
+def pool():  # one a circuit: a pool remembers answers by the names of their cases
     with Pool(jobs=1) as workers:
         yield workers
 
@@ -99,7 +99,7 @@ def test_no_more_pairs_than_asked_for_the_likeliest_first(tried):
 
 def test_sections_of_one_can_fail_together(tried):
     can = '[cans.K1]\nsections = ["C1", "C2"]\ncommon = "g"\n'
-    apart, together = tried(circuit_of(), 20), tried(circuit_of(more=can), 20)
+    apart, together = tried(circuit_of(), 20), tried(circuit_of(more=can), 20)  # solved alike
 
     def open_open(found):
         return next(
