@@ -40,8 +40,8 @@ class Supplied:
 
 
 TODAY = (
-    Supplied((105.0, 119.0), 120.0, 126.0, "ANSI C84.1, range A [memory M]"),
-    Supplied((200.0, 229.0), 230.0, 253.0, "IEC 60038 [memory H]"),
+    Supplied((105.0, 119.0), 120.0, 126.0, "ANSI C84.1, range A"),  # [memory M]
+    Supplied((200.0, 229.0), 230.0, 253.0, "IEC 60038"),  # [memory H]
 )
 NOMINAL_HIGHER, HIGH_HIGHER = 1.03, 1.01  # less is within what the sheet's own line covers
 

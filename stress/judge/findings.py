@@ -12,10 +12,12 @@ from stress.judge.pair import named, pair_text
 from stress.study import conditions as stock
 from stress.study.failures import describe
 from stress.study.limits import limits
-from stress.study.other_use import is_own
+from stress.study.other_use import is_own, use_of
 from stress.study.pairs import Pairs
-from stress.study.result import Failure, Leakage, Risk, Victim, Working, Worst
+from stress.study.result import Condition, Failure, Leakage, Risk, Victim, Working, Worst
 from stress.text.figure import figure
+
+SHOWN_VICTIMS = 4  # of one condition, the furthest past their limits
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -73,33 +75,45 @@ def past_in_other_uses(results: Results) -> Iterator[Finding]:
     """Parts past a limit in a condition that the user asked for, and within it otherwise.
 
     Compared with the equipment as it is meant to be run at the same line voltage; where the
-    condition takes the signal away, with the driven equipment.
+    condition takes the signal away, with the driven equipment. At the highest line voltage only
+    what is not past a limit at the usual one already.
     """
+    told: dict[str, set[str]] = {}
     for condition in results.working.conditions:
         if not is_own(condition, results.circuit):
             continue
-        judged = limits(results.circuit, condition=condition)
-        baseline = stock.NOMINAL if condition.factor <= 1.0 or condition.usual else stock.HIGH
-        if condition.muted:
-            baseline = stock.DRIVEN
-        for part, by_condition in results.working.parts.items():
-            stresses = by_condition.get(condition.name, {})
-            usual = by_condition.get(baseline, {})
-            past = [
-                Victim(part=part, quantity=name, stress=stress, limit=limit)
-                for name, limit in judged.get(part, {}).items()
-                if (stress := stresses.get(name)) is not None
-                and stress > limit.value >= usual.get(name, 0.0)
-                and not limit.assumed
-            ]
-            if past:
-                yield Finding(
-                    severity=Severity.WATCH,
-                    where=part,
-                    condition=condition.name,
-                    text=f"{stock.told(condition.name)}: {'; '.join(describe(v) for v in past)}",
-                    rule="other-use",
-                )
+        use = use_of(condition)
+        found = _past_in(results, condition)
+        victims = [v for v in found if v.part not in told.get(use, ())]
+        told.setdefault(use, set()).update(v.part for v in found)
+        if victims:
+            more = len({v.part for v in victims[SHOWN_VICTIMS:]})
+            rest = f"; {more} more part{'s' if more > 1 else ''}" if more else ""
+            yield Finding(
+                severity=Severity.WATCH,
+                where=victims[0].part,
+                condition=condition.name,
+                text=f"{stock.told(condition.name)}: "
+                f"{'; '.join(describe(v) for v in victims[:SHOWN_VICTIMS])}{rest}",
+                rule="other-use",
+            )
+
+
+def _past_in(results: Results, condition: Condition) -> list[Victim]:
+    """Return what a condition takes past a known limit, the furthest past first."""
+    judged = limits(results.circuit, condition=condition)
+    baseline = stock.NOMINAL if condition.factor <= 1.0 or condition.usual else stock.HIGH
+    if condition.muted:
+        baseline = stock.DRIVEN
+    found = [
+        Victim(part=part, quantity=name, stress=stress, limit=limit)
+        for part, by_condition in results.working.parts.items()
+        for name, limit in judged.get(part, {}).items()
+        if (stress := by_condition.get(condition.name, {}).get(name)) is not None
+        and stress > limit.value >= by_condition.get(baseline, {}).get(name, 0.0)
+        and not limit.assumed
+    ]
+    return sorted(found, key=lambda v: -v.stress / v.limit.value)
 
 
 def leaks_between_nodes(results: Results) -> Iterator[Finding]:

@@ -9,6 +9,8 @@ from stress.study.fault import Fault
 from stress.study.pairs import Pair, Pairs
 from stress.text.figure import figure
 
+LONGEST_WAY = 6  # steps that one still reads
+
 
 def pair_text(pair: Pair, chains: Chains) -> str:
     """Return what a pair does, its worst victim with numbers and both ways to it.
@@ -22,9 +24,7 @@ def pair_text(pair: Pair, chains: Chains) -> str:
         f"{short(fault)} alone {figure(stress, unit)}"
         for fault, stress in zip(pair.faults, worst.alone, strict=True)
     )
-    ways = "; ".join(
-        " -> ".join(chains.words(fault.position, worst.victim.part)) for fault in pair.faults
-    )
+    ways = "; ".join(_way(fault, worst.victim.part, chains) for fault in pair.faults)
     text = f"{describe(worst.victim)}; {alone} ({ways})"
     if len(pair.victims) > 1:
         text += "; also " + "; ".join(describe(v.victim) for v in pair.victims[1:3])
@@ -40,6 +40,14 @@ def pair_texts(pairs: Pairs, circuit: Circuit) -> tuple[str, ...]:
         for p in pairs.unsolved
     ]
     return (summary(pairs), *found, *lost)
+
+
+def _way(fault: Fault, part: str, chains: Chains) -> str:
+    """Return the way from a fault to a part, a long one by its ends."""
+    words = chains.words(fault.position, part)
+    if len(words) > LONGEST_WAY:
+        words = (*words[:3], "…", *words[-2:])
+    return " -> ".join(words)
 
 
 def named(pair: Pair) -> str:
@@ -60,6 +68,8 @@ def _full(fault: Fault) -> str:
 
 def summary(pairs: Pairs) -> str:
     """Return how many pairs were tried, of which faults, and what came of it."""
+    if not pairs.possible:
+        return "no pairs: the likely faults that were studied are all of one position"
     text = (
         f"{len(pairs.tried)} of the {pairs.possible} pairs of the {len(pairs.faults)} likeliest "
         f"faults were tried (likelihood by style and age, common practice; leaks are half of "

@@ -56,6 +56,14 @@ def is_own(condition: Condition, circuit: Circuit) -> bool:
     )
 
 
+def use_of(condition: Condition) -> str:
+    """Return the name of the use that a condition belongs to, or its own."""
+    for ending in ENDINGS:
+        if condition.name.removesuffix(ending) in WORDS:
+            return condition.name.removesuffix(ending)
+    return condition.name
+
+
 def told(name: str) -> str:
     """Return the condition of a use in words, or "" where the name is none of these."""
     for ending, at in ENDINGS.items():

@@ -156,6 +156,9 @@ def test_the_screen_takes_the_current_when_the_primary_is_out(run):
     found = _findings(circuit, healthy)
     assert any(f.where == "X4" and "screen dissipation" in f.text for f in found)
     assert all(f.condition not in ("nominal", "high") for f in found)
+    conditions = [f.condition for f in found]
+    assert len(set(conditions)) == len(conditions)  # one a condition, not one a part
+    assert "primary-out high" not in conditions  # the same parts again
 
 
 def _findings(circuit, healthy):
