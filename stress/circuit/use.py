@@ -49,6 +49,8 @@ NOMINAL_HIGHER, HIGH_HIGHER = 1.03, 1.01  # less is within what the sheet's own 
 def find(s: Surroundings, *, fed: Sources, sheet: Sheet) -> tuple[Use, ...]:
     """Return every use that applies and that the sheet does not have as its own."""
     found = [use for rule in RULES for use in rule(s, fed)]
+    if sheet.equipment.heaters == "series":  # pulling a tube cools all others
+        found = [use for use in found if not use.pulled]
     names = {condition.name.lower() for condition in sheet.conditions}
     stated = [(_lower(c.open), _lower(c.pulled)) for c in sheet.conditions if not c.short]
     return tuple(

@@ -166,7 +166,7 @@ def _leak(position: Position, *, chains: Chains, working: Working, leakage: Leak
         paragraphs.append(f"no leak down to 1 Ω passes a known limit ({found.condition})")
     if found.functional_ohm is not None:
         paragraphs.append(
-            f"from {figure(found.functional_ohm, 'ohm')} of leakage on {found.functional_reason}"
+            f"from {figure(found.functional_ohm, 'ohm')} of leakage on, {found.functional_reason}"
         )
     return paragraphs
 

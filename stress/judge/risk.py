@@ -180,7 +180,7 @@ def _leak(circuit: Circuit, position: Position, leakage: Leakage | None) -> Iter
     elif found.functional_ohm is not None:
         yield Threat(
             text=(
-                f"from {figure(found.functional_ohm, 'ohm')} of leakage on "
+                f"from {figure(found.functional_ohm, 'ohm')} of leakage on, "
                 f"{found.functional_reason}; no known limit is passed"
             ),
             consequence=ONLY_FUNCTION,

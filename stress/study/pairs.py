@@ -28,6 +28,7 @@ JUDGED = (stock.NOMINAL, stock.HIGH)
 KINDS = ("leaky", "short", "open", "dried")
 USUAL_LEAK_OHM = 1e6  # of an old part where no leak passes a limit (common practice)
 HARMLESS = 2.0  # times the critical leakage: a leak that passes nothing by itself
+CLEAR = 1.02  # times a limit: two leaks of half the critical one each come to it by themselves
 MUCH = 1.5  # times as far past a limit as either alone
 SAME_CAN = 0.5  # how likely a section is bad whose neighbour is (common practice)
 
@@ -318,7 +319,7 @@ def _victims(
         was = scene.healthy.get(part, {}).get(name, 0.0)
         alone = (first.get(part, {}).get(name, 0.0), second.get(part, {}).get(name, 0.0))
         passed = max(*alone, was)
-        if stress > limit.value and (passed <= limit.value or stress > MUCH * passed):
+        if stress > CLEAR * limit.value and (passed <= limit.value or stress > MUCH * passed):
             victim = Victim(part=part, quantity=name, stress=stress, limit=limit, healthy=was)
             found.append(PairVictim(victim=victim, alone=alone))
     return tuple(sorted(found, key=lambda v: -v.victim.stress / v.victim.limit.value))

@@ -147,6 +147,11 @@ def test_a_stage_that_only_its_drive_biases_can_lose_it(circuit):
     assert "bias-lost" not in found  # nothing hangs on that supply
 
 
+def test_nobody_is_asked_to_pull_a_tube_of_a_series_string(circuit):
+    text = TRANSMITTER.format(grid="gf", cathode="0", grid_circuit=LEAK)
+    assert "drive-lost" not in names(circuit(text, '[equipment]\nheaters = "series"\n'))
+
+
 @pytest.mark.parametrize("grid_circuit", [SELF, HIGH_OHM], ids=["cathode-bias", "contact-bias"])
 def test_a_stage_with_another_bias_does_not_need_its_drive(circuit, grid_circuit):
     cathode = "kf" if "Rk" in grid_circuit else "0"

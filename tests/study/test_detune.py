@@ -13,7 +13,8 @@ from stress.circuit.build import build
 from stress.netlist.read import read_text
 from stress.parts import read_sheet
 from stress.parts.models import subcircuit
-from stress.pipeline import load
+from stress.pipeline import load, review_circuit
+from stress.report.document import document
 from stress.study.detune import timings, with_detuning
 from stress.study.result import LeakageIn
 from stress.study.timing import detuning, told
@@ -208,3 +209,35 @@ def test_the_larger_resistance_is_the_functional_one():
         functional_ohm=1e9, functional_reason="the bias of X1 is off by more than 10 %",
     )  # fmt: skip
     assert with_detuning(strong, timing, top_ohm=1e10) is strong
+
+
+SET = """Intermediate-frequency stage on batteries
+V1 b 0 DC 90
+X1 p g k TRI
+Rk k 0 1k
+Rg g 0 1meg
+L1 b x 1m
+R1 x p 10
+C1 b p 100p
+C2 b p 20p
+C3 b 0 0.1u
+"""
+
+
+@pytest.mark.ngspice
+def test_a_review_tells_it_everywhere():
+    """The same closed forms in leak, failures, explanation and document."""
+    circuit = circuit_of(SET, '[capacitors.C1]\nstyle = "mica"\n')
+    found = review_circuit(circuit, only=["C1"], jobs=1)
+    timing = timings(circuit)["C1"]
+    leak = found.leakage["C1"].governing
+    assert leak.functional_ohm == pytest.approx(timing.leak_ohm)
+    assert "the Q of L1 falls by more than 10 %" in leak.functional_reason
+    failed = {failure.fault: failure for failure in found.failures["C1"]}
+    assert "the tank of L1 goes from 459 kHz to 602 kHz, 31 % off" in failed["low"].text
+    assert "the tank of L1" in failed["open"].text
+    told_ = " ".join(found.explanations["C1"])
+    assert "sets the tank of L1 at 459 kHz: off by 1 % once 2.4 % of its capacitance" in told_
+    (c1,) = (p for p in document(found)["positions"] if p["name"] == "C1")
+    assert c1["leakage"]["functional_ohm"] == pytest.approx(timing.leak_ohm)
+    assert any("459 kHz" in text for text in c1["failures"]["low"]["consequences"])
