@@ -97,6 +97,7 @@ def survey(
             *a.sources.assumed,
             *a.touch.assumed,
             *a.envelopes,
+            *use.without_drive(uses, signals=a.sources.signals, sheet=sheet),
         ),
         decisions=(
             *(f"{d.instance.name} ({d.instance.subcircuit}): {d.reason}" for d in a.split.devices),

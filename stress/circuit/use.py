@@ -61,6 +61,20 @@ def find(s: Surroundings, *, fed: Sources, sheet: Sheet) -> tuple[Use, ...]:
     )
 
 
+def without_drive(
+    uses: tuple[Use, ...], *, signals: tuple[str, ...], sheet: Sheet
+) -> tuple[str, ...]:
+    """Return what is assumed of stages that only their drive biases, while signals are silent."""
+    if not signals or sheet.equipment.driven:
+        return ()
+    return tuple(
+        f"{', '.join(signals)} silent, as in all conditions but `driven`: {use.tests}, so what "
+        "stands here of these tubes is without it; state [equipment] driven = true"
+        for use in uses
+        if use.name == "drive-lost"
+    )
+
+
 def _lower(names: tuple[str, ...]) -> frozenset[str]:
     return frozenset(name.lower() for name in names)
 

@@ -9,6 +9,7 @@ from stress.circuit.chain import Chains
 from stress.circuit.circuit import Circuit
 from stress.finding import Finding, Severity
 from stress.judge.pair import named, pair_text
+from stress.judge.silicon import series_resistors
 from stress.study import conditions as stock
 from stress.study.failures import describe
 from stress.study.limits import limits
@@ -97,6 +98,11 @@ def past_in_other_uses(results: Results) -> Iterator[Finding]:
                 f"{'; '.join(describe(v) for v in victims[:SHOWN_VICTIMS])}{rest}",
                 rule="other-use",
             )
+
+
+def silicon_resistor(results: Results) -> Iterator[Finding]:
+    """What drops the voltage that silicon brings."""
+    yield from series_resistors(results.circuit, results.working)
 
 
 def _past_in(results: Results, condition: Condition) -> list[Victim]:
@@ -257,6 +263,7 @@ RULES: tuple[Rule, ...] = (
     ranked_positions,
     healthy_over_limit,
     past_in_other_uses,
+    silicon_resistor,
     ripple_over_rating,
     surge_of_rectifiers,
     leaks_between_nodes,

@@ -147,6 +147,14 @@ def test_a_stage_that_only_its_drive_biases_can_lose_it(circuit):
     assert "bias-lost" not in found  # nothing hangs on that supply
 
 
+def test_a_silent_drive_is_said(circuit):
+    text = TRANSMITTER.format(grid="gf", cathode="0", grid_circuit=LEAK)
+    (said,) = [each for each in circuit(text).assumed if "silent" in each]
+    assert "only its drive biases X1" in said
+    driven = circuit(text, "[equipment]\ndriven = true\n")
+    assert not [each for each in driven.assumed if "silent" in each]
+
+
 def test_nobody_is_asked_to_pull_a_tube_of_a_series_string(circuit):
     text = TRANSMITTER.format(grid="gf", cathode="0", grid_circuit=LEAK)
     assert "drive-lost" not in names(circuit(text, '[equipment]\nheaters = "series"\n'))

@@ -1,7 +1,7 @@
 """Conditions that are asked for: how they are run, and that everything else then sees them."""
 
 from dataclasses import replace
-from math import sqrt
+from math import log, sqrt
 
 import pytest
 
@@ -10,6 +10,7 @@ from stress.circuit.circuit import Use
 from stress.engine.pool import Pool
 from stress.engine.twin import build as twin_of
 from stress.judge.findings import Results, past_in_other_uses
+from stress.judge.silicon import series_resistors
 from stress.netlist.read import read_text
 from stress.parts import read_sheet
 from stress.parts.models import subcircuit
@@ -159,6 +160,19 @@ def test_the_screen_takes_the_current_when_the_primary_is_out(run):
     conditions = [f.condition for f in found]
     assert len(set(conditions)) == len(conditions)  # one a condition, not one a part
     assert "primary-out high" not in conditions  # the same parts again
+
+
+@pytest.mark.ngspice
+def test_a_resistor_makes_up_for_the_tube(run):
+    """Ohm's law with the direct current of the tube; E12 (IEC 60063)."""
+    circuit, healthy = run
+    (note,) = series_resistors(circuit, healthy.working)
+    held, parts = healthy.working.nodes["b0"], healthy.working.parts["XR"]["nominal"]
+    exact = (held["silicon"] - held["nominal"]) / parts["average_A"]
+    chosen = min((68.0, 82.0, 100.0, 120.0, 150.0, 180.0, 220.0, 270.0, 330.0, 390.0, 470.0),
+                 key=lambda ohm: abs(log(ohm / exact)))  # fmt: skip
+    assert f"about {chosen:g} Ω" in note.text
+    assert (note.where, note.condition) == ("XR", "silicon")
 
 
 def _findings(circuit, healthy):
