@@ -40,6 +40,7 @@ from stress.study.pairs import pairs as likely_pairs
 from stress.study.replacement import replacement
 from stress.study.reservoir import checked
 from stress.study.result import Bench, Leakage, Replacement, Review, Run, Worst
+from stress.study.silicon import series_resistors
 from stress.study.working import Healthy, work
 from stress.study.worst import worst
 from stress.text.span import SourceErrors
@@ -188,6 +189,7 @@ def review_circuit(
         healthy = work(circuit, solver=pool, also=faults)
         stage = "switch-on"
         healthy = inrush(circuit, healthy=healthy, solver=pool)
+        dropping = series_resistors(circuit, healthy=healthy, solver=pool)
         stage = "leakage"
         leaks = leakage(circuit, studied, healthy=healthy, solver=pool)
         stage = "failures"
@@ -225,6 +227,7 @@ def review_circuit(
         failures=failed,
         risks=order,
         pairs=both,
+        silicon=dropping,
     )
     return Review(
         circuit=circuit,

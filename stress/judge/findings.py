@@ -9,13 +9,14 @@ from stress.circuit.chain import Chains
 from stress.circuit.circuit import Circuit
 from stress.finding import Finding, Severity
 from stress.judge.pair import named, pair_text
-from stress.judge.silicon import series_resistors
+from stress.judge.silicon import resistor_findings
 from stress.study import conditions as stock
 from stress.study.failures import describe
 from stress.study.limits import limits
 from stress.study.other_use import is_own, use_of
 from stress.study.pairs import Pairs
 from stress.study.result import Condition, Failure, Leakage, Risk, Victim, Working, Worst
+from stress.study.silicon import SeriesResistor
 from stress.text.figure import figure
 
 SHOWN_VICTIMS = 4  # of one condition, the furthest past their limits
@@ -32,6 +33,7 @@ class Results:
     failures: Mapping[str, tuple[Failure, ...]]
     risks: tuple[Risk, ...]
     pairs: Pairs | None = None
+    silicon: tuple[SeriesResistor, ...] = ()
 
 
 def findings(results: Results) -> tuple[Finding, ...]:
@@ -102,7 +104,7 @@ def past_in_other_uses(results: Results) -> Iterator[Finding]:
 
 def silicon_resistor(results: Results) -> Iterator[Finding]:
     """What drops the voltage that silicon brings."""
-    yield from series_resistors(results.circuit, results.working)
+    yield from resistor_findings(results.silicon)
 
 
 def _past_in(results: Results, condition: Condition) -> list[Victim]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import replace
 
 from stress.circuit.circuit import Circuit, Part
@@ -14,9 +14,11 @@ from stress.study.result import Condition
 
 SHORT_OHM = 0.01
 SILICON = "#silicon"  # ends the name of such a diode, and is the name of its model
-# A 1 A silicon rectifier: some 0.8 V at 0.1 A and 1 V at 1 A [memory M]. Sharper ones make
-# ngspice lose its step on a stiff line.
-DIODE = {"is": 2e-8, "n": 1.9, "rs": 0.15}
+# A 1 A silicon rectifier: some 0.8 V at 0.1 A and 1.2 V at 1 A [memory M]. Sharper ones make
+# ngspice lose its step on a stiff line, or where two share an input choke.
+DIODE = {"is": 2e-8, "n": 1.9, "rs": 0.3}
+SERIES = "#series"  # ends the name of the resistor behind the diodes of a tube, and its node
+WIRE_OHM = 0.05
 
 
 def rewired(circuit: Circuit, condition: Condition, *, twin: Twin) -> Twin:
@@ -46,22 +48,39 @@ def _shorts(circuit: Circuit, condition: Condition) -> Iterator[Element]:
             )
 
 
+def joints(part: Part) -> Mapping[str, str]:
+    """Return, by the node of each cathode of a rectifier tube, the name of the resistor behind
+    the diodes that replace it there; in lower case it is their common node."""
+    found: dict[str, str] = {}
+    for pin in part.pins:
+        cathode = cathode_of(part, pin)
+        if Pin(part.name, pin).kind == "output" and cathode is not None:
+            found.setdefault(cathode, f"{part.name}{SERIES}{len(found) or ''}")
+    return found
+
+
 def _silicon(circuit: Circuit, condition: Condition) -> Iterator[Element]:
     for name in condition.silicon:
         part = circuit.part(name)
-        metered = metered_pins(part)
+        metered, behind = metered_pins(part), joints(part)
         for pin, node in part.pins.items():
             cathode = cathode_of(part, pin)
             if Pin(part.name, pin).kind == "output" and cathode is not None:
-                inner = f"{part.name}#{pin}".lower() if pin in metered else node
-                yield _diode(part, pin, inner, cathode)
-
-
-def _diode(part: Part, pin: str, anode: str, cathode: str) -> Element:
-    return Element(
-        name=f"{part.name}#{pin}{SILICON}",
-        letter="D",
-        nodes=(anode, cathode),
-        model=SILICON,
-        span=part.span,
-    )
+                yield Element(
+                    name=f"{part.name}#{pin}{SILICON}",
+                    letter="D",
+                    nodes=(
+                        f"{part.name}#{pin}".lower() if pin in metered else node,
+                        behind[cathode].lower(),
+                    ),
+                    model=SILICON,
+                    span=part.span,
+                )
+        for cathode, joint in behind.items():
+            yield Element(
+                name=joint,
+                letter="R",
+                nodes=(joint.lower(), cathode),
+                value=WIRE_OHM,
+                span=part.span,
+            )

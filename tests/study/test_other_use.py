@@ -1,7 +1,7 @@
 """Conditions that are asked for: how they are run, and that everything else then sees them."""
 
 from dataclasses import replace
-from math import log, sqrt
+from math import sqrt
 
 import pytest
 
@@ -10,13 +10,14 @@ from stress.circuit.circuit import Use
 from stress.engine.pool import Pool
 from stress.engine.twin import build as twin_of
 from stress.judge.findings import Results, past_in_other_uses
-from stress.judge.silicon import series_resistors
+from stress.judge.silicon import resistor_findings
 from stress.netlist.read import read_text
 from stress.parts import read_sheet
 from stress.parts.models import subcircuit
 from stress.study import conditions as stock
 from stress.study.other_use import asked, on_offer, told
 from stress.study.rewired import rewired
+from stress.study.silicon import series_resistors
 from stress.study.working import work
 from stress.study.worst import worst
 
@@ -109,7 +110,8 @@ def test_the_diodes_stand_between_the_tubes_own_nodes(equipment):
     assert {"xr.bplate"} <= stock.removed(circuit, condition)
     twin = stock.case(circuit, condition, twin=twin_of(circuit)).twin
     (diode,) = [e for e in twin.elements if e.letter == "D"]
-    assert diode.nodes == ("xr#plate", "b0")
+    assert diode.nodes == ("xr#plate", "xr#series")
+    assert ("xr#series", "b0") in {e.nodes for e in twin.elements if e.letter == "R"}
     assert diode.model in twin.models
     assert rewired(circuit, by_name(circuit)["high"], twin=twin_of(circuit)) == twin_of(circuit)
 
@@ -163,16 +165,29 @@ def test_the_screen_takes_the_current_when_the_primary_is_out(run):
 
 
 @pytest.mark.ngspice
-def test_a_resistor_makes_up_for_the_tube(run):
-    """Ohm's law with the direct current of the tube; E12 (IEC 60063)."""
-    circuit, healthy = run
-    (note,) = series_resistors(circuit, healthy.working)
-    held, parts = healthy.working.nodes["b0"], healthy.working.parts["XR"]["nominal"]
-    exact = (held["silicon"] - held["nominal"]) / parts["average_A"]
-    chosen = min((68.0, 82.0, 100.0, 120.0, 150.0, 180.0, 220.0, 270.0, 330.0, 390.0, 470.0),
-                 key=lambda ohm: abs(log(ohm / exact)))  # fmt: skip
-    assert f"about {chosen:g} Ω" in note.text
-    assert (note.where, note.condition) == ("XR", "silicon")
+def test_a_resistor_makes_up_for_the_tube(equipment):
+    """What it says is tried in a netlist of its own that has the diode and the resistor; by
+    direct current alone (voltage over current) it would be far too much."""
+    circuit = asked(equipment, ["silicon"])
+    with Pool(jobs=2) as pool:
+        healthy = work(circuit, solver=pool)
+        (found,) = series_resistors(circuit, healthy=healthy, solver=pool)
+    assert found.tubes == ("XR",)
+    assert found.ohm in {k * 10.0**e for k in E12 for e in (0, 1, 2)}
+    assert found.with_V == pytest.approx(found.tube_V, rel=0.04)  # a step of E12 is 20 %
+    amps = healthy.working.parts["XR"]["nominal"]["average_A"]
+    assert found.ohm < 0.8 * (found.silicon_V - found.tube_V) / amps
+    diode = f"D1 a d DS\nRser d b0 {found.ohm}\n.model DS D(IS=2e-8 N=1.9 RS=0.15)"
+    text = SET.replace("XR a b0 35Z5GT", diode)
+    plain = build(read_text(text, built_in=subcircuit), read_sheet.read_text(SHEET, path="s.toml"))
+    with Pool(jobs=2) as pool:
+        held = work(plain, solver=pool).working.nodes["b0"]["nominal"]
+    assert held == pytest.approx(found.with_V, rel=2e-3)
+    (note,) = resistor_findings((found,))
+    assert f"{found.ohm:g} Ω in series" in note.text
+
+
+E12 = (1.0, 1.2, 1.5, 1.8, 2.2, 2.7, 3.3, 3.9, 4.7, 5.6, 6.8, 8.2)  # IEC 60063
 
 
 def _findings(circuit, healthy):
