@@ -45,7 +45,14 @@ class Twin:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Steady:
-    """Ask for the settled state: a period of it, or the operating point without a period."""
+    """Ask for the settled state: a period of it, or the operating point without a period.
+
+    Attributes:
+        own: Its multipliers are its own, not those of a relative: without a load or with a part
+            less a circuit may leave its steady state where the relative did not.
+    """
+
+    own: bool = False
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

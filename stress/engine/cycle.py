@@ -37,7 +37,7 @@ class Grid:
         more: Further options.
     """
 
-    points: int = 240
+    points: int = 170
     reltol: float = FINE
     more: str = ""
 
@@ -100,6 +100,7 @@ class CycleMap:
         except RunFailed:
             # Without node voltages to start from the first point is solved from nothing.
             self._load({})
+            self._loaded_V = None  # the next start has node voltages again
             self._run(x, periods)
         end = end_state(self._ngspice, self.deck)
         if not np.isfinite(end).all():

@@ -9,7 +9,7 @@ from dataclasses import dataclass, replace
 from stress.engine import card
 from stress.engine.case import Twin
 from stress.engine.deck import Deck, Hysteresis, Probe, State
-from stress.engine.ease import NODE, eased
+from stress.engine.ease import NODE, eased, held, holders
 from stress.engine.periodic import has_amplitude, repeats, scaled, settled, shifted
 from stress.engine.topology import gaps
 from stress.engine.tree import reads_time
@@ -39,13 +39,20 @@ class Draft:
         removed: Elements that are left out; what couples or senses them goes with them.
         forever: Whether sources are taken in the form that they settle to.
         easy: Whether laws are written as ngspice computes them fastest.
+        changed: Voltage sources that cases change; the laws take the others as they are.
 
     Raises:
         LoopOfSources: Where voltage sources form a loop.
     """
 
     def __init__(
-        self, twin: Twin, removed: frozenset[str], *, forever: bool, easy: bool = True
+        self,
+        twin: Twin,
+        removed: frozenset[str],
+        *,
+        forever: bool,
+        easy: bool = True,
+        changed: frozenset[str] = frozenset(),
     ) -> None:
         self.twin = twin
         self._removed = frozenset(name.lower() for name in removed)
@@ -53,7 +60,10 @@ class Draft:
         self._notices: list[str] = []
         kept = _without(twin.elements, self._removed)
         kept = tuple(element for element in kept if not _is_nothing(element))
-        kept = self._metered(eased(kept) if easy else kept)
+        self._held = frozenset(holders(kept)) - changed if easy else frozenset()
+        if easy:
+            kept = eased(kept, held_V=held(kept, but=changed))
+        kept = self._metered(kept)
         found = gaps(kept)
         self._floating, self._stiff = found.floating, frozenset(n.lower() for n in found.stiff)
         self.names = card.name_all(kept, twin.models)
@@ -81,7 +91,13 @@ class Draft:
             phase_deg: Added to the phase of every sine.
             driven: The source of a small-signal response.
             keep: Names of the rows wanted; empty: all.
+
+        Raises:
+            ValueError: Where a source is changed that the laws have taken as it is.
         """
+        fixed = self._held & {name.lower() for name in (*values, driven)}
+        if fixed:
+            raise ValueError(f"the draft holds {', '.join(sorted(fixed))}")
         cards, entries = dict(self._cards), dict(self._entries)
         for name, value in values.items():
             key = name.lower()

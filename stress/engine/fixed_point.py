@@ -32,12 +32,15 @@ from stress.engine.case import Floats
 Map: TypeAlias = Callable[[Floats], Floats]
 Yardstick: TypeAlias = Callable[[Floats], Floats]
 
+FAR, PLAIN_STEPS = 10.0, 1  # a residual in yardsticks; periods that are just followed
 STEP_LIMIT = 2.0  # of one Newton step, in yardsticks
+CUT = 0.3  # of a step that was too long
 GROWS = 3.0  # the distance after a step that is still taken, against the one before
 LEAST_SHARE = 0.02  # of a step that led astray
 SHRINKS = 0.5  # what a confirmed step leaves of a residual, at most
 SILENT = 1e-3  # of the tolerance: a residual so small need not shrink further
 PERTURBATION = 1e-3  # in yardsticks
+FORGOTTEN = 1e-3  # of a deviation is as good as nothing
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,6 +105,28 @@ def jacobian(
     return result
 
 
+def renewed(phi: Map, x: Floats, y: Floats, known: Floats, *, yardstick: Yardstick) -> Floats:
+    """Return the Jacobian at x from one that was known nearby, shape (n, n).
+
+    After one period little is left of most states, so that what the map makes of a
+    neighbourhood has far fewer dimensions than there are states (15 of 50 in an amplifier). The
+    known Jacobian tells which; only along those, and along the residual, the map is tried.
+
+    Args:
+        phi: The map.
+        x, y: Shape (n,): a state and what the map makes of it.
+        known: Shape (n, n).
+        yardstick: Gives what a deviation of each state is measured against, from a state.
+    """
+    scale = yardstick(x)
+    scaled = known * scale / scale[:, None]
+    reached, sizes, _ = np.linalg.svd(np.column_stack((scaled, (y - x) / scale)))
+    matrix = known
+    for along in reached.T[: np.count_nonzero(sizes > FORGOTTEN)]:
+        matrix = directional(phi, x, y, matrix, along=along * scale, yardstick=yardstick)
+    return matrix
+
+
 def directional(
     phi: Map, x: Floats, y: Floats, matrix: Floats, *, along: Floats, yardstick: Yardstick
 ) -> Floats:
@@ -137,7 +162,7 @@ def approach(
     Jacobian makes any small residual look like arrival, and only the next cycle tells.
 
     Args:
-        phi: The map.
+        phi: The map; not finite where it has no value, which makes the step before it shorter.
         start: Shape (n,).
         known: Shape (n, n): a Jacobian, which is corrected on the way.
         after: Shape (n,): what the map makes of the start, where that is known.
@@ -146,43 +171,87 @@ def approach(
         most: Evaluations at most.
         limit: Longest step, in yardsticks.
     """
-    matrix = np.eye(start.size) - known
-    x, point = start, None
-    before: tuple[Floats, Floats] | None = None
-    share, promised = 1.0, np.inf
+    walk = _Walk(start, known, yardstick=yardstick, tolerance=tolerance, limit=limit)
+    point = None
     for _ in range(most):
-        y = phi(x) if after is None else after
+        y = phi(walk.x) if after is None else after
         after = None
-        residual, scale = y - x, yardstick(x)
-        if before is not None:
-            # Measured by the matrix that chose the step, a good step brings the end nearer.
-            nearer = _length(_solved(matrix, residual), scale) <= GROWS * promised
-            matrix = _corrected(matrix, x - before[0], before[1] - residual, scale)
-            if not nearer and share > LEAST_SHARE:
-                share *= 0.3
-                step = _solved(matrix, before[1])
-                x = before[0] + step * min(share, limit / max(_length(step, scale), 1e-300))
-                continue
-            share = min(1.0, 3.0 * share)
-        step = _solved(matrix, residual)
-        distance = _length(step, scale)
-        change = np.abs(residual) / scale
-        previous = None if before is None else np.abs(before[1]) / scale
-        found = distance <= tolerance and _confirmed(change, previous, tolerance)
-        point = Point(
-            x,
-            y,
-            np.eye(start.size) - matrix,
-            distance,
-            float(np.max(change, initial=0.0)),
-            found,
-        )
-        if found or not np.isfinite(distance):
+        reached = walk.entered(y)
+        if reached is not None:
+            point = reached
+            if point.found or not np.isfinite(point.distance):
+                break
+            walk.advance(point)
+        elif walk.share <= LEAST_SHARE and not np.isfinite(y).all():
             break
-        before, promised = (x, residual), distance
-        x = x + step * min(share, limit / max(distance, 1e-300))
     assert point is not None
     return point
+
+
+class _Walk:
+    """An iteration on its way: where it stands, what it knows, how long its steps may be."""
+
+    def __init__(
+        self,
+        start: Floats,
+        known: Floats,
+        *,
+        yardstick: Yardstick,
+        tolerance: float,
+        limit: float,
+    ) -> None:
+        self.x, self.share = start, 1.0
+        self._matrix: Floats = np.eye(start.size) - known
+        self._yardstick, self._tolerance, self._limit = yardstick, tolerance, limit
+        self._before: tuple[Floats, Floats] | None = None
+        self._promised = np.inf
+        self._cut, self._plain = False, PLAIN_STEPS
+
+    def entered(self, y: Floats) -> Point | None:
+        """Enter what the map makes of the state; None where the step before it was too long."""
+        before, residual, scale = self._before, y - self.x, self._yardstick(self.x)
+        if before is not None:
+            if not np.isfinite(y).all():
+                self._shorten()
+                self.x = before[0] + CUT * (self.x - before[0])
+                return None
+            # Measured by the matrix that chose the step, a good step brings the end nearer.
+            nearer = _length(_solved(self._matrix, residual), scale) <= GROWS * self._promised
+            self._matrix = _corrected(self._matrix, self.x - before[0], before[1] - residual, scale)
+            if not nearer and self.share > LEAST_SHARE:
+                self._shorten()
+                self.x = before[0] + self._step(before[1], scale)
+                return None
+            # Not at once after a step that had to be cut.
+            self.share = self.share if self._cut else min(1.0, self.share / CUT)
+            self._cut = False
+        distance = _length(_solved(self._matrix, residual), scale)
+        change = np.abs(residual) / scale
+        previous = None if before is None else np.abs(before[1]) / scale
+        return Point(
+            self.x,
+            y,
+            np.eye(y.size) - self._matrix,
+            distance,
+            float(np.max(change, initial=0.0)),
+            distance <= self._tolerance and _confirmed(change, previous, self._tolerance),
+        )
+
+    def advance(self, point: Point) -> None:
+        """Go on from a point: where it is far off, first by what the circuit does by itself."""
+        residual = point.y - point.x
+        self._before, self._promised = (point.x, residual), point.distance
+        if point.residual > FAR and self._plain > 0:
+            self.x, self._plain = point.y, self._plain - 1
+        else:
+            self.x = point.x + self._step(residual, self._yardstick(point.x))
+
+    def _step(self, residual: Floats, scale: Floats) -> Floats:
+        step = _solved(self._matrix, residual)
+        return step * min(self.share, self._limit / max(_length(step, scale), 1e-300))
+
+    def _shorten(self) -> None:
+        self.share, self._cut = CUT * self.share, True
 
 
 def _solved(matrix: Floats, residual: Floats) -> Floats:

@@ -3,17 +3,17 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Callable
 from dataclasses import replace
 
 import numpy as np
 
 from stress.engine.case import Answer, Floats, Proof, Settled, Wandering, Waves
-from stress.engine.cycle import CycleMap, Grid, end_state, groups
+from stress.engine.cycle import CycleMap, Grid, end_state
 from stress.engine.deck import Deck
-from stress.engine.fixed_point import Point, approach, directional, jacobian, spectral_radius
-from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
-from stress.engine.ngspice import Ngspice, RunFailed
+from stress.engine.fixed_point import Point, directional, spectral_radius
+from stress.engine.memory import Memory, Outcome, start_from
+from stress.engine.ngspice import Ngspice
 from stress.engine.plain import (
     CHUNK,
     MOST_PERIODS,
@@ -24,36 +24,35 @@ from stress.engine.plain import (
     holding,
     told,
 )
-from stress.engine.refine import alike
+from stress.engine.seek import DISTANCE, Seeker
 
-DISTANCE = 1e-4  # accepted distance to the fixed point, in yardsticks
-PLAIN_PERIODS = 8  # from rest, before the first Jacobian
-MORE_PERIODS = 3  # before each further one
-TURNS, TURN_CYCLES = 8, 12
-COARSE_TURNS = 2  # before the grid is made finer
-WARM_CYCLES = 14
 UNSTABLE = 1.01
 REFUTATIONS = 3  # of a multiplier that looks unstable, before a whole Jacobian
 AFAR = 1e-3  # accepted distance for what can only be run from rest
-FINEST = 1920  # points a period
 
 
-class Search:
-    """The search for the settled state of one deck.
+class Search(Seeker):
+    """The search for the settled state of one deck, and what is told of it.
 
-    Attributes:
-        cycles, jacobian_cycles: Periods simulated so far.
+    Args:
+        ngspice: The library.
+        deck: The circuit, with laws as ngspice computes them fastest.
+        spare: Gives the deck with laws as they stand.
+        case: Name of the case.
+        own: As in `Steady`.
     """
 
-    def __init__(self, ngspice: Ngspice, deck: Deck, *, case: str) -> None:
-        self.ngspice, self.deck, self.case = ngspice, deck, case
-        self.cycles = self.jacobian_cycles = 0
-        self.groups = groups(deck)
-
-    @property
-    def spent(self) -> int:
-        """Periods simulated, with those for Jacobians."""
-        return self.cycles + self.jacobian_cycles
+    def __init__(
+        self,
+        ngspice: Ngspice,
+        deck: Deck,
+        *,
+        spare: Callable[[], Deck],
+        case: str,
+        own: bool = False,
+    ) -> None:
+        super().__init__(ngspice, deck, spare=spare)
+        self.case, self._own = case, own
 
     def run(self, memory: Memory | None, *, grid: Grid | None = None) -> Outcome:
         """Return the settled state, starting from a relative's where there is one.
@@ -67,7 +66,7 @@ class Search:
             return self.from_afar(grid or Grid(), self.deck.plain)
         if grid is None:
             grid = Grid() if memory is None else memory.grid
-        phi, point = self.search(grid, memory)
+        phi, point = self.seek(grid, memory)
         if not point.found:
             return self.plainly(phi, point.x)
         if memory is None:
@@ -78,70 +77,6 @@ class Search:
         if kept:
             return self.from_afar(phi.grid, f"{', '.join(kept)} keeps its state over the period")
         return self.stable(phi, point, waves)
-
-    def search(self, grid: Grid, memory: Memory | None) -> tuple[CycleMap, Point]:
-        """Search near a relative's state where that leads anywhere, else from rest."""
-        if memory is None:
-            return self.from_rest(grid)
-        node_V = translated(self.deck, memory)
-        phi = self.map(grid, node_V)
-        x, matrix = inherited(self.deck, memory, start_from(self.deck, node_V))
-        try:
-            if matrix is not None and memory.removed == self.deck.removed:
-                point = self.near(phi, x, matrix, most=WARM_CYCLES)
-                if point.found:
-                    return phi, point
-                x, y = point.x, point.y
-            else:
-                y = self.counted(phi, x)
-            matrix = self.jacobian(phi, x, y)
-            point = self.near(phi, x, matrix, most=WARM_CYCLES, after=y)
-            if point.found:
-                return phi, point
-        except RunFailed:
-            pass  # from rest it may still be reached
-        return self.from_rest(grid)
-
-    def from_rest(self, grid: Grid) -> tuple[CycleMap, Point]:
-        """Search from rest, or from `.ic`, with a Jacobian of its own every few cycles.
-
-        Raises:
-            RunFailed: Where not even the plain transient runs.
-        """
-        phi = self.map(grid, self.deck.initial_V)
-        x = start_from(self.deck, self.deck.initial_V)
-        x = self.counted(phi, x, periods=PLAIN_PERIODS)
-        for turn in range(TURNS):
-            y = self.counted(phi, x)
-            try:
-                matrix = self.jacobian(phi, x, y)
-                point = self.near(phi, x, matrix, most=TURN_CYCLES, after=y)
-                if point.found:
-                    break
-                y = point.y
-            except RunFailed:
-                phi.put_nodes({})  # a step led to where nothing can be solved
-                point = Point.lost(x, y)
-            x = self.counted(phi, y, periods=MORE_PERIODS)
-            if turn >= COARSE_TURNS and phi.grid.points < FINEST:
-                # Where the step is too coarse for an edge the map is not smooth.
-                finer = replace(phi.grid, points=2 * phi.grid.points)
-                phi = self.map(finer, phi.node_V)
-        return phi, point
-
-    def refined(self, phi: CycleMap, point: Point) -> tuple[CycleMap, Point, Waves]:
-        """Halve the steps until the stresses hold still; keep the coarser of the last two."""
-        waves = phi.waves()
-        while phi.grid.points < FINEST:
-            finer = self.map(replace(phi.grid, points=2 * phi.grid.points), phi.node_V)
-            better = self.near(finer, point.x, point.jacobian, most=WARM_CYCLES)
-            if not better.found:
-                break
-            found = finer.waves()
-            if alike(waves, found):
-                break
-            phi, point, waves = finer, better, found
-        return phi, point, waves
 
     def stable(self, phi: CycleMap, point: Point, waves: Waves) -> Outcome:
         """Return a point that was found, unless the circuit leaves it by itself."""
@@ -162,6 +97,8 @@ class Search:
         looks unstable is tried in its own direction before a whole Jacobian is paid for.
         """
         matrix, node_V = point.jacobian, phi.node_V
+        if self._own:
+            matrix = self.jacobian(phi, point.x, point.y)
         for trial in range(REFUTATIONS + 1):
             growth = spectral_radius(matrix)
             if growth <= UNSTABLE:
@@ -294,52 +231,3 @@ class Search:
             grid=phi.grid,
             removed=self.deck.removed,
         )
-
-    def map(self, grid: Grid, node_V: Mapping[str, float]) -> CycleMap:
-        """Return the cycle map on a grid."""
-        return CycleMap(self.ngspice, self.deck, grid=grid, node_V=node_V)
-
-    def counted(self, phi: CycleMap, x: Floats, *, periods: int = 1) -> Floats:
-        """Return the state after some periods, which count."""
-        self.cycles += periods
-        return phi(x, periods=periods)
-
-    def tried(self, phi: CycleMap, x: Floats) -> Floats:
-        """Return the state after one period, counted with those for Jacobians."""
-        self.jacobian_cycles += 1
-        return phi(x)
-
-    def jacobian(self, phi: CycleMap, x: Floats, y: Floats) -> Floats:
-        """Return the Jacobian at x, its cycles counted apart."""
-        node_V = phi.node_V
-
-        def step(x: Floats) -> Floats:
-            phi.put_nodes(node_V)
-            return self.tried(phi, x)
-
-        matrix = jacobian(step, x, y, yardstick=phi.scale, groups=self.groups)
-        phi.put_nodes(node_V)
-        return matrix
-
-    def near(
-        self,
-        phi: CycleMap,
-        x: Floats,
-        matrix: Floats,
-        *,
-        most: int,
-        after: Floats | None = None,
-    ) -> Point:
-        """Search from a state near the fixed point."""
-        point = approach(
-            lambda x: self.counted(phi, x),
-            x,
-            matrix,
-            after=after,
-            yardstick=phi.scale,
-            tolerance=DISTANCE,
-            most=most,
-        )
-        if point.found and point.x is x and after is not None:
-            self.counted(phi, x)  # the last run was one for the Jacobian
-        return point

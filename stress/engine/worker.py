@@ -14,6 +14,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from importlib.metadata import version
 from pathlib import Path
+from typing import TypeAlias
 
 import numpy as np
 
@@ -34,6 +35,7 @@ from stress.engine.case import (
 from stress.engine.cycle import CAREFUL, Grid
 from stress.engine.deck import Deck
 from stress.engine.draft import Draft
+from stress.engine.ease import holders
 from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
 from stress.engine.ngspice import VARIABLE, Broken, DeckRefused, Ngspice, RunFailed
 from stress.engine.oscillation import Tank, oscillates, tanks
@@ -82,13 +84,18 @@ class Result:
     poisoned: str = ""
 
 
+# Twin, what is left out, which sources are changed, forever, easy.
+_Key: TypeAlias = tuple[str, frozenset[str], frozenset[str], bool, bool]
+
+
 class _Process:
     """What a worker process keeps from job to job."""
 
     def __init__(self) -> None:
         self._ngspice: Ngspice | None = None
         self._twins: OrderedDict[str, Twin] = OrderedDict()
-        self._drafts: OrderedDict[tuple[str, frozenset[str], bool, bool], Draft] = OrderedDict()
+        self._holders: dict[str, frozenset[str]] = {}
+        self._drafts: OrderedDict[_Key, Draft] = OrderedDict()
 
     @property
     def ngspice(self) -> Ngspice:
@@ -99,10 +106,15 @@ class _Process:
     def draft(self, job: Job, *, forever: bool, easy: bool = True) -> Draft:
         quieted = frozenset() if job.memory is None else job.memory.quieted
         removed = job.removed | quieted | job.quieted
-        key = (job.twin, removed, forever, easy)
+        twin = self._twin(job.twin)
+        moved = {name.lower() for name in job.values}
+        if isinstance(job.analysis, SmallSignal):
+            moved.add(job.analysis.source.lower())
+        changed = frozenset(moved & self._holders[job.twin])
+        key = (job.twin, removed, changed, forever, easy)
         draft = self._drafts.get(key)
         if draft is None:
-            draft = Draft(self._twin(job.twin), removed, forever=forever, easy=easy)
+            draft = Draft(twin, removed, forever=forever, easy=easy, changed=changed)
             self._drafts[key] = draft
             if len(self._drafts) > KEPT_DRAFTS:
                 self._drafts.popitem(last=False)
@@ -115,6 +127,7 @@ class _Process:
             twin = pickle.loads(Path(path).read_bytes())
             assert isinstance(twin, Twin)
             self._twins[path] = twin
+            self._holders[path] = frozenset(holders(twin.elements))
             if len(self._twins) > KEPT_TWINS:
                 self._twins.popitem(last=False)
         return twin
@@ -169,24 +182,24 @@ def _unsolved(job: Job, reason: str) -> Outcome:
 
 def _solved(job: Job) -> Outcome:
     match job.analysis:
-        case Steady():
-            return _steady(job)
+        case Steady(own=own):
+            return _steady(job, own=own)
         case Transient():
             return _transient(job, job.analysis)
         case SmallSignal():
             return _small_signal(job, job.analysis)
 
 
-def _steady(job: Job) -> Outcome:
+def _steady(job: Job, *, own: bool) -> Outcome:
     """Settle, and quiet what oscillates by itself where there is no relative to tell."""
-    outcome = _settled(job)
+    outcome = _settled(job, own=own)
     if job.memory is not None or outcome.memory is None or job.quieted:
         return outcome
     found = _oscillating(job, outcome.memory)
     if not found:
         return outcome
     quieted = frozenset(name.lower() for tank in found for name in tank.couplings)
-    again = _settled(replace(job, quieted=quieted)) if quieted else outcome
+    again = _settled(replace(job, quieted=quieted), own=own) if quieted else outcome
     answer, memory = again.answer, again.memory
     if isinstance(answer, Settled | Wandering):
         told = tuple(tank.told for tank in found)
@@ -212,15 +225,18 @@ def _oscillating(job: Job, memory: Memory) -> tuple[Tank, ...]:
     )
 
 
-def _settled(job: Job) -> Outcome:
+def _settled(job: Job, *, own: bool) -> Outcome:
     """Settle; after a numerical failure once more from rest with more careful settings."""
     deck = _PROCESS.draft(job, forever=True).deck(job.values)
-    search = Search(_PROCESS.ngspice, deck, case=job.case)
+
+    def spare() -> Deck:
+        return _PROCESS.draft(job, forever=True, easy=False).deck(job.values)
+
+    search = Search(_PROCESS.ngspice, deck, spare=spare, case=job.case, own=own)
     try:
         return search.run(job.memory)
     except RunFailed as error:
-        deck = _PROCESS.draft(job, forever=True, easy=False).deck(job.values)
-        again = Search(_PROCESS.ngspice, deck, case=job.case)
+        again = Search(_PROCESS.ngspice, spare(), spare=spare, case=job.case, own=own)
         try:
             outcome = again.run(None, grid=CAREFUL)
         except RunFailed:

@@ -10,6 +10,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Mapping
 
+from stress.netlist.bound import least
 from stress.netlist.expression import (
     Binary,
     Call,
@@ -84,18 +85,9 @@ def _plain(name: str, *arguments: Expression) -> str:
     return f"{name}({','.join(_text(argument) for argument in arguments)})"
 
 
-def _at_least(part: Expression, least: float) -> Expression:
+def _at_least(part: Expression, bound: float) -> Expression:
     """Return a part that ngspice never sees below a bound."""
-    return part if _bounded(part, least) else Call("max", (part, Number(least)))
-
-
-def _bounded(part: Expression, least: float) -> bool:
-    """Whether a part is by its form never below a bound, so that a guard is there already."""
-    if isinstance(part, Number):
-        return part.value >= least
-    if isinstance(part, Call) and part.function == "max":
-        return any(_bounded(argument, least) for argument in part.arguments)
-    return isinstance(part, Call) and part.function in ("abs", "sqrt") and least <= 0
+    return part if least(part) >= bound else Call("max", (part, Number(bound)))
 
 
 def _within_one(part: Expression) -> Expression:
@@ -109,20 +101,20 @@ def _within_one(part: Expression) -> Expression:
 
 def _size(base: Expression, power: Expression) -> Expression:
     """Return the size of a base; ngspice takes it by itself, but not the sign of its slope."""
-    size = base if _bounded(base, 0.0) else Call("abs", (base,))
+    size = base if least(base) >= 0.0 else Call("abs", (base,))
     steep = not isinstance(power, Number) or power.value < 1
     return _at_least(size, _SMALL) if steep else size
 
 
 def _signed(x: Expression, y: Expression) -> Expression:
     raised = Call("pow", (x, y))
-    return raised if _bounded(x, 0.0) else Binary("*", Call("sgn", (x,)), raised)
+    return raised if least(x) >= 0.0 else Binary("*", Call("sgn", (x,)), raised)
 
 
 def _real(x: Expression, y: Expression) -> Expression:
     """x to the y where that is real, else 0."""
     raised = Call("pow", (x, y))
-    if _bounded(x, 0.0):
+    if least(x) >= 0.0:
         return raised
     if isinstance(y, Number):
         if y.value != int(y.value):

@@ -153,7 +153,7 @@ def case(
         parent=parent,
         values={**sources(circuit, condition), **values},
         removed=removed(circuit, condition),
-        analysis=Steady(),
+        analysis=Steady(own=not fault),
     )
 
 

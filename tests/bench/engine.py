@@ -27,9 +27,10 @@ from record import MIDGET, RECEIVER, Log, cpu_s, leaks, reviewed
 
 from stress.engine.case import Case, Twin
 from stress.engine.cycle import Grid
+from stress.engine.deck import Deck
 from stress.engine.draft import Draft
 from stress.engine.pool import Pool
-from stress.engine.steady import Search
+from stress.engine.seek import Seeker
 from stress.netlist.read import read
 
 FINER = 3
@@ -63,14 +64,18 @@ def condition(log: Log, name: str) -> Case:
     return Case(name=f"{name} from rest", twin=case.twin, values=case.values, removed=case.removed)
 
 
+def from_rest_cycles(deck: Deck) -> int:
+    search = Seeker(ngspice(), deck, spare=lambda: deck)
+    search.from_rest(Grid())
+    return search.cycles
+
+
 def from_rest(log: Log, name: str) -> Line:
     counts = []
     for which in ("nominal", "high"):
         case = condition(log, which)
         deck = Draft(case.twin, case.removed, forever=True).deck(case.values)
-        search = Search(ngspice(), deck, case=case.name)
-        search.from_rest(Grid())
-        counts.append(search.cycles)
+        counts.append(from_rest_cycles(deck))
     return Line(f"cycles from rest, loaded, {name}", "≤ 25", str(counts), max(counts) <= 25)
 
 

@@ -10,7 +10,7 @@ from stress.engine.cycle import CycleMap, Grid
 from stress.engine.draft import Draft
 from stress.engine.memory import start_from
 from stress.engine.ngspice import Ngspice
-from stress.engine.steady import Search
+from stress.engine.seek import Seeker
 
 _KEPT: list[Ngspice] = []
 
@@ -33,7 +33,7 @@ def settled_plainly(case: Case, *, grid: Grid, within: float, most: int) -> tupl
     periods counts with what it has spent.
     """
     deck = Draft(case.twin, case.removed, forever=True).deck(case.values)
-    search = Search(ngspice(), deck, case=case.name)
+    search = Seeker(ngspice(), deck, spare=lambda: deck)
     _, point = search.from_rest(grid)
     target = point.best
     phi = CycleMap(ngspice(), deck, grid=grid, node_V=deck.initial_V)

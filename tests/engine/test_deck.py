@@ -77,13 +77,24 @@ def test_a_current_that_is_sensed_gets_a_meter(twin_of):
 
 def test_long_laws_are_split_without_losing_the_circuit(twin_of):
     law = "V(a)*sqrt(V(a)*V(a)+1)/(1+sqrt(V(a)*V(a)+1)*V(a)*V(a)*V(a))"
-    twin = twin_of(f"V1 a 0 5\nB1 b 0 V=1+({law})\nB2 c 0 V=2*({law})\nR1 b c 1")
+    twin = twin_of(f"R2 a 0 5\nB1 b 0 V=1+({law})\nB2 c 0 V=2*({law})\nR1 b c 1")
     easy = Draft(twin, frozenset(), forever=True).deck({})
     plain = Draft(twin, frozenset(), forever=True, easy=False).deck({})
 
     assert len(card_of(plain, "b")) == 2
     assert len(card_of(easy, "b")) == 4  # the root and the quotient, each once
     assert [probe.name for probe in easy.probes] == [probe.name for probe in plain.probes]
+
+
+def test_what_a_source_holds_is_a_number_in_the_laws(twin_of):
+    twin = twin_of("V1 a 0 2\nV2 s 0 SIN(0 1 50)\nB1 b 0 V=3*V(a)*abs(exp(V(s)))\nR1 b 0 1")
+    held = Draft(twin, frozenset(), forever=True)
+    free = Draft(twin, frozenset(), forever=True, changed=frozenset({"v1"}))
+
+    assert card_of(held.deck({}), "b") == ["b3 n3 0 v=(6.0 * exp(v(n2)))"]
+    assert card_of(free.deck({"V1": 2.0}), "b") == ["b3 n3 0 v=(3.0 * (v(n1) * exp(v(n2))))"]
+    with pytest.raises(ValueError, match="v1"):
+        held.deck({"V1": 2.0})
 
 
 def test_only_what_is_kept_is_saved(twin_of):
