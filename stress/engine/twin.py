@@ -100,9 +100,23 @@ def build(circuit: Circuit, *, frequency_Hz: Mapping[str, float] = NOTHING) -> T
         period_s=circuit.period_s,
         options=options,
         temperature_degC=circuit.netlist.temperature_degC,
-        initial_V=circuit.netlist.initial_V,
+        initial_V=_initial_V(circuit),
         currents=(*(position.name for position in circuit.positions), *diodes),
     )
+
+
+def _initial_V(circuit: Circuit) -> dict[str, float]:
+    """Return `.ic` with the nodes that the twin puts in series with those of the netlist."""
+    given = {node.lower(): volts for node, volts in circuit.netlist.initial_V.items()}
+    added = {f"{position.name}#": position.nodes[1] for position in circuit.positions}
+    for part in circuit.parts:
+        added |= {f"{part.name}#{pin}": part.pins[pin] for pin in metered_pins(part)}
+    inside = {
+        node.lower(): given[outer.lower()]
+        for node, outer in added.items()
+        if outer.lower() in given
+    }
+    return given | inside
 
 
 def _three(element: Element, position: Position, *, frequency_Hz: float) -> tuple[Element, ...]:

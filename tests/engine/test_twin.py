@@ -1,5 +1,7 @@
 """The twin: every position as C, ESR and leakage; every pin behind a meter."""
 
+from dataclasses import replace
+
 import pytest
 
 from stress.circuit.circuit import Circuit, Kind, Line, Part, Position, Role
@@ -113,6 +115,15 @@ def test_resistors_carry_no_meter():
     part = Part(name="R1", kind=Kind.RESISTOR, pins={"plus": "a", "minus": "b"}, span=SPAN)
 
     assert metered_pins(part) == ()
+
+
+def test_nodes_put_in_series_start_where_the_netlist_says():
+    """Else a capacitor that `.ic` charges against a node would start with that node at 0 V."""
+    drawn = circuit(replace(capacitor(), nodes=("p", "k")), pins=PINS)
+    netlist = replace(drawn.netlist, initial_V={"P": 200.0, "k": 5.0})
+    twin = build(replace(drawn, netlist=netlist))
+
+    assert twin.initial_V == {"p": 200.0, "k": 5.0, "c1#": 5.0, "xu1#plate": 200.0}
 
 
 def test_insulation_without_a_value_is_the_best_there_is():
