@@ -286,16 +286,20 @@ def _corrected(matrix: Floats, moved: Floats, answered: Floats, scale: Floats) -
     return result
 
 
-def spectral_radius(matrix: Floats) -> float:
-    """Return the largest absolute eigenvalue of a Jacobian."""
+def fastest(matrix: Floats) -> tuple[float, Floats]:
+    """Return the largest absolute eigenvalue of a Jacobian and the direction it belongs to.
+
+    Where the eighth power tells that nothing is near 1 the number is a bound, the direction 0.
+    """
+    none = np.zeros(len(matrix))
     if not matrix.size:
-        return 0.0
+        return 0.0, none
     power: Floats = matrix
     for _ in range(3):
         power = power @ power
-    # The eighth power tells cheaply that nothing is near 1; only then the number is exact.
     rough = float(np.sqrt(np.sum(power * power)))
     if rough < 0.5**8:
-        return math.pow(rough, 0.125)
-    values: Floats = np.abs(np.linalg.eigvals(matrix))
-    return float(np.max(values))
+        return math.pow(rough, 0.125), none
+    values, vectors = np.linalg.eig(matrix)
+    at = int(np.argmax(np.abs(values)))
+    return float(np.abs(values[at])), np.asarray(np.real(vectors[:, at]), dtype=np.float64)

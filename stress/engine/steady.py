@@ -11,7 +11,7 @@ import numpy as np
 from stress.engine.case import Answer, Floats, Proof, Settled, Wandering, Waves
 from stress.engine.cycle import CycleMap, Grid, end_state
 from stress.engine.deck import Deck
-from stress.engine.fixed_point import Point, directional, spectral_radius
+from stress.engine.fixed_point import Point, directional, fastest
 from stress.engine.memory import Memory, Outcome, start_from
 from stress.engine.ngspice import Ngspice
 from stress.engine.plain import (
@@ -27,7 +27,7 @@ from stress.engine.plain import (
 from stress.engine.seek import DISTANCE, Seeker
 
 UNSTABLE = 1.01
-REFUTATIONS = 3  # of a multiplier that looks unstable, before a whole Jacobian
+REFUTATIONS = 3  # of a multiplier that looks unstable, before the Jacobian is renewed
 AFAR = 1e-3  # accepted distance for what can only be run from rest
 
 
@@ -94,33 +94,29 @@ class Search(Seeker):
         """Return a Jacobian, its largest multiplier and the direction of it.
 
         Broyden's corrections are made for the next step, not for the multipliers: one that
-        looks unstable is tried in its own direction before a whole Jacobian is paid for.
+        looks unstable is tried in its own direction before it is renewed.
         """
         matrix, node_V = point.jacobian, phi.node_V
         if self._own:
             matrix = self.jacobian(phi, point.x, point.y)
-        for trial in range(REFUTATIONS + 1):
-            growth = spectral_radius(matrix)
+        for trial in range(REFUTATIONS + 2):
+            growth, along = fastest(matrix)
             if growth <= UNSTABLE:
-                return matrix, growth, np.zeros_like(point.x)
-            if trial == REFUTATIONS:
-                matrix = self.jacobian(phi, point.x, point.y)
-            values, vectors = np.linalg.eig(matrix)
-            fastest = int(np.argmax(np.abs(values)))
-            along = np.real(vectors[:, fastest])
-            if trial == REFUTATIONS:
-                return matrix, float(np.abs(values[fastest])), along
-            phi.put_nodes(node_V)
-            matrix = directional(
-                lambda x: self.tried(phi, x),
-                point.x,
-                point.y,
-                matrix,
-                along=along,
-                yardstick=phi.scale,
-            )
-            phi.put_nodes(node_V)
-        raise AssertionError("the last turn returns")
+                break
+            if trial < REFUTATIONS:
+                phi.put_nodes(node_V)
+                matrix = directional(
+                    lambda x: self.tried(phi, x),
+                    point.x,
+                    point.y,
+                    matrix,
+                    along=along,
+                    yardstick=phi.scale,
+                )
+                phi.put_nodes(node_V)
+            elif trial == REFUTATIONS:
+                matrix = self.renewed(phi, point.x, point.y, matrix)
+        return matrix, growth, along
 
     def settled(self, phi: CycleMap, point: Point, waves: Waves, growth: float) -> Outcome:
         """Return the answer of a point that was found."""
