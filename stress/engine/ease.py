@@ -1,10 +1,10 @@
 """Behavioural laws made easier for ngspice, without a change of what they compute.
 
 ngspice differentiates an expression symbolically for every voltage in it, so the work grows
-with the square of its size; half the time of a receiver's simulation goes there. Roots, arc
-tangents, ln(1 + exp x) and long quotients, which tube models repeat, become nodes of their own.
-Other parts stay where they are: their slope has no bound, and Newton's iteration over them
-diverged. What sources hold is put in as numbers first.
+with the square of its size; half the time of a receiver's simulation goes there. What sources
+hold is put in as numbers. Roots, arc tangents and long quotients, which tube models repeat, become
+nodes of their own. Other parts stay where they are: their slope has no bound, and Newton's
+iteration over them diverged; with ln(1 + exp x) apart it did so more often and was no faster.
 """
 
 from __future__ import annotations
@@ -14,7 +14,7 @@ from dataclasses import replace
 
 from stress.engine.fold import folded
 from stress.engine.tree import everything, inner, rebuilt, varies
-from stress.netlist.expression import Binary, Call, Expression, Number, Voltage
+from stress.netlist.expression import Binary, Call, Expression, Voltage
 from stress.netlist.flat import Element, Law
 
 NODE = "part#"  # how the names of the nodes begin; no netlist can hold it
@@ -90,7 +90,7 @@ def _eased(
     """Return an expression with its parts replaced; new nodes are entered in both lists."""
     if expression in made:
         return Voltage(made[expression])
-    eased = _rebuilt(expression, made, found)
+    eased = rebuilt(expression, [_eased(part, made, found) for part in inner(expression)])
     if not (_wanted(expression) and varies(expression)):
         return eased
     node = f"{NODE}{len(made) + 1}"
@@ -99,44 +99,7 @@ def _eased(
     return Voltage(made[expression])
 
 
-def _rebuilt(
-    expression: Expression, made: dict[Expression, str], found: list[tuple[str, Expression]]
-) -> Expression:
-    if isinstance(expression, Binary) and _is_soft_ramp(expression):
-        # Only the two together have a smooth slope.
-        return rebuilt(
-            expression,
-            [
-                rebuilt(part, [_eased(inside, made, found) for inside in inner(part)])
-                for part in inner(expression)
-            ],
-        )
-    return rebuilt(expression, [_eased(part, made, found) for part in inner(expression)])
-
-
-def _is_soft_ramp(expression: Expression) -> bool:
-    """Whether an expression is max(x, 0) + ln(1 + exp(-|x|)), which is ln(1 + exp x)."""
-    match expression:
-        case Binary("+", Call("max", (_, Number(0.0))), Call("ln", _) as other):
-            return _is_soft(other)
-        case _:
-            return False
-
-
-def _is_soft(expression: Expression) -> bool:
-    """Whether an expression is ln(1 + exp x), whose slope stays below that of x."""
-    match expression:
-        case Call("ln", (Binary("+", Number(1.0), Call("exp", _)),)):
-            return True
-        case Call("ln", (Binary("+", Call("exp", _), Number(1.0)),)):
-            return True
-        case _:
-            return False
-
-
 def _wanted(expression: Expression) -> bool:
-    if _is_soft(expression) or _is_soft_ramp(expression):
-        return True
     match expression:
         case Call(function, _):
             return function in _BOUNDED

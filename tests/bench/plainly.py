@@ -48,8 +48,10 @@ def settled_plainly(case: Case, *, grid: Grid, within: float, most: int) -> tupl
     return spent, periods
 
 
-def averaged_plainly(case: Case, *, points: int, periods: int) -> dict[str, tuple[float, float]]:
-    """Return (mean, ripple rms) of every row after a fine plain transient from rest."""
+def averaged_plainly(
+    case: Case, *, points: int, periods: int
+) -> dict[str, tuple[float, float, float]]:
+    """Return (mean, ripple rms, peak) of every row after a fine plain transient from rest."""
     deck = Draft(case.twin, case.removed, forever=True).deck(case.values)
     phi = CycleMap(ngspice(), deck, grid=Grid(points=points), node_V=deck.initial_V)
     x = start_from(deck, deck.initial_V)
@@ -57,6 +59,6 @@ def averaged_plainly(case: Case, *, points: int, periods: int) -> dict[str, tupl
         x = phi(x, periods=10)
     waves = phi.waves()
     return {
-        name: (waves.mean(row), waves.rms(row - waves.mean(row)))
+        name: (waves.mean(row), waves.rms(row - waves.mean(row)), float(row.max()))
         for name, row in zip(waves.names, waves.values, strict=True)
     }
