@@ -116,12 +116,22 @@ def review(
                 jobs=jobs,
                 progress=report,
             )
+        after = None
+        if fitted:
+            with progress() as report:
+                after = pipeline.review_circuit(
+                    chosen_parts(circuit, found.replacements),
+                    only=names,
+                    policy=policy,
+                    jobs=jobs,
+                    progress=report,
+                )
         if json_file is not None:
             write_json(found, json_file)
         if html_file is not None:
             from stress.report.page import write_page
 
-            write_page(found, html_file)
+            write_page(found, html_file, fitted=after)
         if csv_folder is not None:
             from stress.report.tables import write_csv
 
@@ -132,15 +142,7 @@ def review(
             print_power_up(found.power_up, circuit, console)
         if found.discharge is not None:
             print_discharge(found.discharge, circuit, console)
-        if fitted:
-            with progress() as report:
-                after = pipeline.review_circuit(
-                    chosen_parts(circuit, found.replacements),
-                    only=names,
-                    policy=policy,
-                    jobs=jobs,
-                    progress=report,
-                )
+        if after is not None:
             print_fitted(found, after, console)
     if found.run.unsolved:
         sys.exit(UNSOLVED)

@@ -9,8 +9,8 @@ from rich.console import Console
 from stress.circuit.circuit import Position
 from stress.judge.measured import Moved, Past
 from stress.judge.verdict import Advice, Verdicts
+from stress.report.change import order_changes, step_changes
 from stress.report.lines import Lines
-from stress.report.order import order_of_work
 from stress.report.words import amount, marked, unit_of, victim
 from stress.study.result import Bench, Review, Risk, Unanswered
 from stress.text.figure import figure
@@ -145,34 +145,15 @@ def print_change(before: Review, after: Review, console: Console, *, title: str)
     out = Lines(console)
     out.line(title, bold=True)
     _order(before.risks, after.risks, out)
-    _findings(before, after, out)
-
-
-def _order(before: Sequence[Risk], after: Sequence[Risk], out: Lines) -> None:
-    places = {risk.position: (risk.rank, risk.severity) for risk in before}
-    changed = [risk for risk in after if places.get(risk.position) != (risk.rank, risk.severity)]
-    if not changed:
-        out.line("the order of work stays as it was", indent=INDENT)
-    for risk in changed:
-        old = places.get(risk.position)
-        was = f"was {old[0]} ({old[1]})" if old is not None else "was not ranked"
-        out.line(
-            f"now {risk.rank} ({risk.severity}), {was}: {risk.reason}",
-            first=f"{risk.position} ",
-            indent=_hang(risk.position),
-        )
-
-
-def _findings(before: Review, after: Review, out: Lines) -> None:
-    """Print what is new among the steps, and what is gone; a step is known by place and rule."""
-    old = {(step.where, step.rule): step for step in order_of_work(before)}
-    new = {(step.where, step.rule): step for step in order_of_work(after)}
-    for heading, steps in (
-        ("New findings", [step for key, step in new.items() if key not in old]),
-        ("No longer found", [step for key, step in old.items() if key not in new]),
-    ):
-        if not steps:
-            continue
+    for heading, steps in step_changes(before, after):
         out.heading(heading)
         for step in steps:
             out.line(step.text, first=f"{step.where} ", indent=_hang(step.where))
+
+
+def _order(before: Sequence[Risk], after: Sequence[Risk], out: Lines) -> None:
+    changes = tuple(order_changes(before, after))
+    if not changes:
+        out.line("the order of work stays as it was", indent=INDENT)
+    for position, text in changes:
+        out.line(text, first=f"{position} ", indent=_hang(position))

@@ -15,13 +15,14 @@ from markupsafe import Markup
 from stress.finding import Severity
 from stress.report import borne, tables, words
 from stress.report.card import Card, Fact, capacitance, cards
+from stress.report.change import fitted_table, order_changes, step_changes
 from stress.report.circuit_map import circuit_map
 from stress.report.discharge_page import after_view
 from stress.report.leak_curve import VERDICTS
 from stress.report.order import Step, order_of_work
 from stress.report.power_page import plan_view
 from stress.report.shopping import shopping_list
-from stress.report.table import PAGE
+from stress.report.table import PAGE, Table
 from stress.report.words import amount
 from stress.study.conditions import INRUSH
 from stress.study.result import Review
@@ -60,16 +61,30 @@ class BenchRow:
     lift: str
 
 
-def write_page(review: Review, path: Path) -> None:
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Fitted:
+    """What the chosen parts change: by position, in the order of work, among the findings."""
+
+    table: Table
+    orders: tuple[tuple[str, str], ...]
+    changes: tuple[tuple[str, tuple[Step, ...]], ...]
+
+
+def write_page(review: Review, path: Path, *, fitted: Review | None = None) -> None:
     """Write the page of a review to a file, UTF-8.
+
+    Args:
+        review: The equipment as it is.
+        path: The file.
+        fitted: The same with the chosen parts in place, where that was asked for.
 
     Raises:
         OSError: Where the file cannot be written.
     """
-    path.write_text(page(review), encoding="utf-8")
+    path.write_text(page(review, fitted=fitted), encoding="utf-8")
 
 
-def page(review: Review) -> str:
+def page(review: Review, *, fitted: Review | None = None) -> str:
     """Return the page of a review: nothing in it is fetched from anywhere."""
     environment = Environment(
         loader=FileSystemLoader(_TEMPLATES),
@@ -94,6 +109,7 @@ def page(review: Review) -> str:
         positions=tables.positions(review).place(PAGE),
         parts=tables.parts(review).place(PAGE),
         shopping=shopping_list(review).place(PAGE),
+        fitted=_fitted(review, fitted) if fitted is not None else None,
         proofs=tables.proofs(review).place(PAGE),
         conditions=_conditions(review),
         severities=words.SEVERITIES,
@@ -108,6 +124,14 @@ def page(review: Review) -> str:
         script=Markup(script),
         script_hash=_integrity(script),
         style=Markup((_TEMPLATES / "page.css").read_text(encoding="utf-8")),
+    )
+
+
+def _fitted(before: Review, after: Review) -> Fitted:
+    return Fitted(
+        table=fitted_table(before, after).place(PAGE),
+        orders=tuple(order_changes(before.risks, after.risks)),
+        changes=tuple(step_changes(before, after)),
     )
 
 

@@ -167,3 +167,19 @@ def test_forty_positions_with_long_curves_stay_small(specimen, tmp_path):
     path = tmp_path / "many.html"
     write_page(many, path)
     assert 0.3 * MEGABYTES < path.stat().st_size < 3 * MEGABYTES
+
+
+def test_the_chosen_parts_stand_before_and_after(specimen):
+    """A part of twice the rating: the margin is worked out by hand from the worst voltage."""
+    name = next(iter(specimen.replacements))
+    old = specimen.circuit.position(name)
+    better = replace(old, rated_V=2.0 * specimen.worst[name].worst_V)
+    positions = tuple(better if each.name == name else each for each in specimen.circuit.positions)
+    after = replace(specimen, circuit=replace(specimen.circuit, positions=positions), risks=())
+    read = Reader(page(specimen, fitted=after))
+    rows = {row[0]: row for row in read.tables["fitted"] if row}
+
+    assert set(rows) - {"part"} == set(specimen.replacements)
+    assert rows[name][5] == "50 %"
+    assert "The order of work stays as it was." in " ".join(read.texts)
+    assert "fitted" not in Reader(page(specimen)).tables
