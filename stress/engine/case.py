@@ -133,6 +133,7 @@ class Waves:
     time_s: Floats
     names: tuple[str, ...]
     values: Floats
+    _weights: Floats = field(init=False, repr=False)  # of the trapezoidal rule
 
     def __post_init__(self) -> None:
         if self.time_s.ndim != 1 or self.time_s.size < 2:
@@ -143,8 +144,13 @@ class Waves:
             )
         if not (np.isfinite(self.values).all() and np.isfinite(self.time_s).all()):
             raise ValueError("values that are not finite")
-        if not (np.diff(self.time_s) > 0).all():
+        steps = np.diff(self.time_s)
+        if not (steps > 0).all():
             raise ValueError("time does not rise")
+        weights = np.zeros_like(self.time_s)
+        weights[:-1] += steps
+        weights[1:] += steps
+        object.__setattr__(self, "_weights", weights / weights.sum())
 
     def voltage(self, plus: str, minus: str = "0") -> Floats:
         """Return the voltage of `plus` against `minus`, shape (m,); ground is all zero."""
@@ -160,7 +166,7 @@ class Waves:
 
     def mean(self, samples: Floats) -> float:
         """Return the mean over time of samples of shape (m,), by the trapezoidal rule."""
-        return float(np.trapezoid(samples, self.time_s) / (self.time_s[-1] - self.time_s[0]))
+        return float(self._weights @ samples)
 
     def rms(self, samples: Floats) -> float:
         """Return the root mean square over time of samples of shape (m,)."""

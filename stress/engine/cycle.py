@@ -20,7 +20,6 @@ from stress.engine.ngspice import Ngspice, RunFailed
 # The truncation error does not steer the step, so that neighbouring starts use the same grid
 # and the map is smooth; the Newton iteration at each point is the other source of roughness.
 OPTIONS = "method=gear trtol=1e7 itl4=100"
-FINE = 1e-6
 MOVED_V = 0.01  # of a junction, before its start is renewed
 MOVED_SHARE = 1e-4
 FAST_F = 2e-7  # farad per second of period: smaller capacitors are tested in groups
@@ -37,8 +36,8 @@ class Grid:
         more: Further options.
     """
 
-    points: int = 170
-    reltol: float = FINE
+    points: int = 160
+    reltol: float = 1e-4
     more: str = ""
 
     @property
@@ -48,7 +47,7 @@ class Grid:
 
 
 # After a numerical failure: smaller steps, a tolerance that is easier to meet, more patience.
-CAREFUL = Grid(points=400, reltol=1e-4, more="itl1=500 itl2=500 abstol=1e-10 vntol=1e-5")
+CAREFUL = Grid(points=400, reltol=1e-3, more="itl1=500 itl2=500 abstol=1e-10 vntol=1e-5")
 
 
 class CycleMap:

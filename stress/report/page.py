@@ -12,6 +12,7 @@ from urllib.parse import quote
 from jinja2 import Environment, FileSystemLoader, StrictUndefined
 from markupsafe import Markup
 
+from stress.circuit.circuit import Kind
 from stress.finding import Severity
 from stress.report import borne, tables, words
 from stress.report.card import Card, Fact, capacitance, cards
@@ -35,6 +36,9 @@ _GROUPS = (
     (Severity.WATCH, "Watch"),
     (Severity.NOTE, "Notes"),
 )
+
+
+_HEATED = {Kind.TUBE.value, Kind.RECTIFIER.value}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -169,12 +173,13 @@ def _glance(review: Review) -> tuple[Fact, ...]:
         fed = f"{figure(line.nominal_V, 'V')} nominal, {figure(line.high_V, 'V')} high"
     kinds = Counter(part.kind.value for part in circuit.parts)
     todo = ", ".join(f"{counts[severity]} {words.SEVERITIES[severity]}" for severity, _ in _GROUPS)
+    others = ", ".join(f"{n} {kind}{'s' if n > 1 else ''}" for kind, n in kinds.items())
+    heated = [Fact(name="heaters", text=circuit.heaters)] if _HEATED & set(kinds) else []
     return (
         Fact(name="positions", text=f"{len(circuit.positions)}: {todo}"),
         Fact(name="line", text=fed),
-        Fact(name="heaters", text=circuit.heaters),
-        Fact(name="other parts", text=", ".join(f"{n} {kind}" for kind, n in kinds.items())
-             or "none"),
+        *heated,
+        Fact(name="other parts", text=others or "none"),
         Fact(name="around the chassis", text=figure(circuit.ambient_degC, "degC")),
         Fact(name="netlist", text=circuit.netlist.path),
         Fact(name="part sheet", text=circuit.sheet.path or "none: styles and ratings are assumed"),

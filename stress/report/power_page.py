@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Sequence
 from dataclasses import dataclass
@@ -9,7 +10,7 @@ from dataclasses import dataclass
 from stress.report.card import Fact
 from stress.report.table import Cell, Column, Table, number
 from stress.report.words import amount, quantity, unit_of
-from stress.study.power_result import Abort, Lamp, LampReading, PowerUp, Probe, Step, TellTale
+from stress.study.power_result import Abort, Band, Lamp, LampReading, PowerUp, Probe, Step, TellTale
 from stress.text.figure import figure
 
 
@@ -73,11 +74,18 @@ def readings(plan: PowerUp) -> Table:
             elif band is None:
                 cells.append(Cell("no reading"))
             else:
-                low, high = sorted((band.low * band.loading, band.high * band.loading))
-                spread = f"{figure(low, probe.unit)} to {figure(high, probe.unit)}"
-                cells.append(Cell(spread, band.shown))
+                cells.append(Cell(_spread(band, probe), band.shown))
         rows.append(tuple(cells))
     return Table("readings", tuple(columns), tuple(rows))
+
+
+def _spread(band: Band, probe: Probe) -> str:
+    low, high = sorted((band.low * band.loading, band.high * band.loading))
+    if math.isinf(high):
+        return f"{figure(low, probe.unit)} or more"
+    if low <= probe.least:
+        return f"up to {figure(high, probe.unit)}"
+    return f"{figure(low, probe.unit)} to {figure(high, probe.unit)}"
 
 
 def _share(step: Step) -> str:

@@ -90,6 +90,11 @@ class Probe:
         """V, A, W or ohm."""
         return UNITS[self.kind]
 
+    @property
+    def least(self) -> float:
+        """What it never reads below: only a direct voltage has a sign."""
+        return -inf if self.kind is Kind.DC_V else 0.0
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Band:

@@ -107,7 +107,7 @@ def bands(
             Band(
                 probe=probe.key,
                 value=value,
-                low=min(below, value) - own,
+                low=max(min(below, value) - own, probe.least),
                 high=max(above, value) + own,
                 shown=shown.get(probe.key, value),
             )
@@ -140,7 +140,7 @@ def carried(
             Band(
                 probe=probe.key,
                 value=value,
-                low=value + (band.low - band.value) * factor * CARRIED,
+                low=max(value + (band.low - band.value) * factor * CARRIED, probe.least),
                 high=value + (band.high - band.value) * factor * CARRIED,
                 shown=shown.get(probe.key, value),
             )

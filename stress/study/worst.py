@@ -23,7 +23,8 @@ def worst(circuit: Circuit, *, working: Working) -> Mapping[str, Worst]:
         lasts = {name: s for name, s in by_condition.items() if name in lasting}
         if not lasts:
             continue
-        name = max(lasts, key=lambda n: lasts[n].peak_V)
+        most = max(stress.peak_V for stress in lasts.values())
+        name = next(n for n, stress in lasts.items() if stress.peak_V >= ALIKE * most)
         brief = {n: s.peak_V for n, s in by_condition.items() if n not in lasting}
         surge = working.inrush.get(position.name)
         if surge is not None:
