@@ -9,6 +9,7 @@ import numpy as np
 from stress.engine.case import Floats, Waves
 from stress.engine.cycle import CycleMap
 from stress.engine.deck import Deck
+from stress.text.figure import figure
 
 CHUNK = 25  # periods between two looks
 MOST_PERIODS = 1000
@@ -148,9 +149,7 @@ def told(deck: Deck, course: Course, *, unstable: bool, cycles: int) -> str:
     if span.size:
         state = deck.states[widest]
         what, symbol = ("voltage", "V") if state.kind == "C" else ("current", "A")
-        where = (
-            f"; the {what} of {state.element} was seen between "
-            f"{course.low[widest]:.4g} {symbol} and {course.high[widest]:.4g} {symbol}"
-        )
+        low, high = (figure(float(end[widest]), symbol) for end in (course.low, course.high))
+        where = f"; the {what} of {state.element} was seen between {low} and {high}"
     verb = "leaves its steady state by itself (it motorboats)" if unstable else "does not settle"
     return f"{verb} within {cycles} periods{where}"

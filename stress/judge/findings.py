@@ -15,11 +15,21 @@ from stress.study.failures import describe
 from stress.study.limits import limits
 from stress.study.other_use import is_own, use_of
 from stress.study.pairs import Pairs
-from stress.study.result import Condition, Failure, Leakage, Risk, Victim, Working, Worst
+from stress.study.result import (
+    Condition,
+    Failure,
+    Leakage,
+    Risk,
+    Unanswered,
+    Victim,
+    Working,
+    Worst,
+)
 from stress.study.silicon import SeriesResistor
 from stress.text.figure import figure
 
 SHOWN_VICTIMS = 4  # of one condition, the furthest past their limits
+NAMED = 3  # cases alike that are named, the rest counted
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -221,7 +231,7 @@ def surge_of_rectifiers(results: Results) -> Iterator[Finding]:
 
 
 def without_number(results: Results) -> Iterator[Finding]:
-    """Every case the engine has no number for, counted by what it said."""
+    """Every case the engine has no number for, by position and by what it said."""
     whys = list(results.working.unanswered)
     for leak in results.leakage.values():
         whys += [why for found in leak.by_condition for why in found.unanswered]
@@ -229,17 +239,25 @@ def without_number(results: Results) -> Iterator[Finding]:
         whys += [f.unanswered for f in failures if f.unanswered is not None]
     if results.pairs is not None:
         whys += [why for pair in results.pairs.tried for why in pair.unanswered]
+    groups: dict[tuple[str, str], list[Unanswered]] = {}
     for why in dict.fromkeys(whys):
         if why.kind == "not limited by the netlist":
             continue
         where = why.case.partition(" / ")[2].split(" ")[0] or "equipment"
-        motorboats = why.kind == "unstable"
+        groups.setdefault((where, why.kind), []).append(why)
+    for (where, kind), alike in groups.items():
+        motorboats = kind == "unstable"
+        first, others = alike[0], [why.case for why in alike[1:]]
+        also = ", ".join(others[:NAMED])
+        if len(others) > NAMED:
+            also += f" and {len(others) - NAMED} more"
         yield Finding(
             severity=Severity.WATCH if motorboats else Severity.NOTE,
             where=where,
-            condition=why.case,
-            text=f"{why.case}: {'the equipment motorboats' if motorboats else why.kind}; {why.text}",
-            rule=why.kind.replace(" ", "-"),
+            condition=first.case,
+            text=f"{first.case}: {'the equipment ' if motorboats else f'{kind}; '}{first.text}"
+            + (f"; likewise {also}" if also else ""),
+            rule=kind.replace(" ", "-"),
         )
 
 
