@@ -37,7 +37,7 @@ class Grid:
     """
 
     points: int = 160
-    reltol: float = 1e-4
+    reltol: float = 1e-6
     more: str = ""
 
     @property
@@ -47,7 +47,7 @@ class Grid:
 
 
 # After a numerical failure: smaller steps, a tolerance that is easier to meet, more patience.
-CAREFUL = Grid(points=400, reltol=1e-3, more="itl1=500 itl2=500 abstol=1e-10 vntol=1e-5")
+CAREFUL = Grid(points=400, reltol=1e-4, more="itl1=500 itl2=500 abstol=1e-10 vntol=1e-5")
 
 
 class CycleMap:

@@ -39,11 +39,13 @@ class Seeker:
     Attributes:
         deck: The one that is used now.
         cycles, jacobian_cycles: Periods simulated so far.
+        remarks: What the user must know of how it was found.
     """
 
     def __init__(self, ngspice: Ngspice, deck: Deck, *, spare: Callable[[], Deck]) -> None:
         self.ngspice, self.deck, self.spare = ngspice, deck, spare
         self.cycles = self.jacobian_cycles = 0
+        self.remarks: tuple[str, ...] = ()
         self._groups = groups(deck)
 
     @property
@@ -143,11 +145,16 @@ class Seeker:
             if factor <= 1.0:
                 break
             if factor <= ENOUGH**2:
-                between = round(phi.grid.points * math.sqrt(factor), -1) + 10
-                finer, better = self.regridded(finer, better, points=int(between))
-                if better.found:
-                    return finer, better, finer.waves()
+                points = int(round(phi.grid.points * math.sqrt(factor), -1)) + 10
+                between, middle = self.regridded(finer, better, points=points)
+                if middle.found:
+                    return between, middle, between.waves()
             phi, point, waves = finer, better, found
+        else:
+            self.remarks += (
+                f"{phi.grid.points} points a period do not hold the stresses still: sharp edges "
+                "and peaks are less exact",
+            )
         return phi, point, waves
 
     def regridded(self, phi: CycleMap, point: Point, *, points: int) -> tuple[CycleMap, Point]:

@@ -129,7 +129,8 @@ class Search(Seeker):
             points=waves.time_s.size - 1,
             method="cycle map",
         )
-        answer = Settled(case=self.case, waves=waves, proof=proof, notices=self.deck.notices)
+        notices = (*self.deck.notices, *self.remarks)
+        answer = Settled(case=self.case, waves=waves, proof=proof, notices=notices)
         return self.outcome(answer, self.memory(phi, point.best, point.jacobian))
 
     def standing(self, grid: Grid) -> Outcome:
