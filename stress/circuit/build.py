@@ -63,7 +63,8 @@ def survey(
             SourceError(
                 "the netlist has no capacitors, so there is nothing to do",
                 Span(netlist.path, 0, 0, 1, ""),
-                "the capacitors of a device (a tube model) are no positions",
+                "; ".join(f"{f.where}: {f.text}" for f in odd if f.rule == "no-part")
+                or "the capacitors of a device (a tube model) are no positions",
             )
         )
     uses = use.find(a.surroundings, fed=a.sources, sheet=sheet)

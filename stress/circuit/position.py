@@ -13,6 +13,7 @@ from stress.finding import Finding, Severity
 from stress.netlist.flat import Element
 from stress.parts import styles
 from stress.parts.sheet import CapacitorEntry, Sheet
+from stress.text.figure import figure
 from stress.text.span import SourceError
 
 NO_PLUS = frozenset({Role.LINE_ACROSS, Role.LINE_CHASSIS, Role.BUFFER})
@@ -48,6 +49,9 @@ def find(
                     'value = "0.1 uF"',
                 )
             )
+        if value is not None and value <= 0.0:
+            findings.append(_no_part(element, value))
+            continue
         edge = _valued(edges[name], value)
         role, text = _stated(entry, *role_of(s, edge))
         position, odd = _position(s, element, entry, value, role, text, cans.get(name, ""))
@@ -77,6 +81,17 @@ def _stated(entry: CapacitorEntry, role: Role, text: str) -> tuple[Role, str]:
 
 def _valued(edge: Edge, value: float | None) -> Edge:
     return Edge(edge.name, edge.letter, edge.a, edge.b, value, edge.conducts)
+
+
+def _no_part(element: Element, value_F: float) -> Finding:
+    return Finding(
+        severity=Severity.WATCH,
+        where=element.name,
+        text=f"its value is {figure(value_F, 'F')}: no such part can be fitted, so it is not judged",
+        action="correct the value if a real part sits there",
+        span=element.span,
+        rule="no-part",
+    )
 
 
 def _position(
@@ -109,7 +124,7 @@ def _position(
             )
     if style is None:
         style, source = styles.assumed(
-            max(value or 0.0, 0.0),  # a negative one is a formula's trick, no part
+            value or 0.0,
             role=role.value,
             polar_hint=True if entry.plus is not None else None,
             rated_V=rated,

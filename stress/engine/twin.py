@@ -52,6 +52,8 @@ def metered_pins(part: Part) -> tuple[str, ...]:
     pins joined at one node the first stands for all: their currents cannot be told apart in a
     flat circuit.
     """
+    if part.kind is Kind.DIODE and not {part.name}.issuperset(part.elements):
+        return tuple(part.pins)[:1]  # a model with elements of its own
     if part.kind not in METERED:
         return ()
     seen = {node for pin, node in part.pins.items() if pin.startswith(UNMETERED_PINS)}

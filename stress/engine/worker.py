@@ -247,9 +247,18 @@ def _settled(job: Job, *, own: bool) -> Outcome:
 
 
 def _transient(job: Job, asked: Transient) -> Outcome:
-    draft = _PROCESS.draft(job, forever=job.memory is not None)
-    deck = draft.deck(job.values, phase_deg=asked.phase_deg, keep=asked.keep)
+    """Run; after a numerical failure once more with more careful settings."""
     grid = Grid() if job.memory is None else job.memory.grid
+    try:
+        return _ran(job, asked, grid=grid, easy=True)
+    except RunFailed:
+        careful = replace(grid, reltol=CAREFUL.reltol, more=CAREFUL.more)
+        return _ran(job, asked, grid=careful, easy=False)
+
+
+def _ran(job: Job, asked: Transient, *, grid: Grid, easy: bool) -> Outcome:
+    draft = _PROCESS.draft(job, forever=job.memory is not None, easy=easy)
+    deck = draft.deck(job.values, phase_deg=asked.phase_deg, keep=asked.keep)
     period_s = deck.period_s or asked.stop_s * grid.points / STEPS
     step_s = asked.step_s or period_s / grid.points
     ngspice = _PROCESS.ngspice

@@ -17,6 +17,7 @@ from stress.finding import Severity
 from stress.study.failures import NOT_LIMITED, describe
 from stress.study.likelihood import likelihood
 from stress.study.result import Failure, Leakage, Risk, Victim, Worst
+from stress.study.unjudged import Unjudged
 from stress.text.figure import figure
 
 # How hard the victim is to replace; common practice.
@@ -37,6 +38,7 @@ FIRE = 6.0  # a fault that only the fuse or the wiring limits
 PERSON = 20.0  # a line capacitor whose fault makes touchable metal live
 ONLY_FUNCTION = 0.5
 LIKELY = 0.3  # share of parts from which a leak must be taken as given
+SEVERE = 10.0  # times its healthy stress, for a part whose limit is not known (common practice)
 POSSIBLE = 0.02
 SURE_OHM = 1e5  # a leak that needs less resistance than this is a short, not a leak
 TOUCHABLE_RULE = "class-y"  # of stress.circuit.hazards
@@ -212,6 +214,11 @@ def consequence(circuit: Circuit, victim: Victim) -> float:
     return past * OTHER_POSITION
 
 
+def _severe(strain: Unjudged) -> bool:
+    """Whether a stress grows so far that hardly any part would have the margin."""
+    return strain.stress > SEVERE * strain.healthy
+
+
 def _failures(
     circuit: Circuit, position: Position, failures: tuple[Failure, ...]
 ) -> Iterator[Threat]:
@@ -231,6 +238,15 @@ def _failures(
             yield Threat(
                 text=f"{failure.fault}: {NOT_LIMITED}",
                 consequence=FIRE,
+                likelihood=share,
+                severity=Severity.TEST if share >= POSSIBLE else Severity.WATCH,
+            )
+        elif failure.unjudged and _severe(failure.unjudged[0]):
+            first = failure.unjudged[0]
+            kinds = {part.name: part.kind for part in circuit.parts}
+            yield Threat(
+                text=f"{failure.fault}: {first.risen}, its limit is not known",
+                consequence=WEIGHT[kinds[first.part]],
                 likelihood=share,
                 severity=Severity.TEST if share >= POSSIBLE else Severity.WATCH,
             )

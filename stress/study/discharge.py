@@ -124,15 +124,27 @@ def _alternating(position: Position, healthy: Healthy) -> bool:
     return all(abs(stress.dc_V) < AC_ONLY * stress.peak_V for stress in by.values())
 
 
-def _without_leakage(twin: Twin) -> Twin:
-    """Return the twin without the leakage of any part, which is no bleed path."""
+def _without_leakage(twin: Twin, *, but: frozenset[str] = frozenset()) -> Twin:
+    """Return the twin without the leakage of any part, which is no bleed path.
+
+    Args:
+        twin: The circuit.
+        but: Positions whose leakage stays, lower case.
+    """
     return replace(
         twin,
         elements=tuple(
-            replace(e, value=MOST_LEAKAGE_OHM) if e.name.endswith("#leak") else e
+            replace(e, value=MOST_LEAKAGE_OHM)
+            if e.name.endswith("#leak") and e.name.lower().removesuffix("#leak") not in but
+            else e
             for e in twin.elements
         ),
     )
+
+
+def _stated(circuit: Circuit) -> frozenset[str]:
+    """Return the positions whose insulation was measured or stated; an assumed one may be tighter."""
+    return frozenset(p.name.lower() for p in circuit.positions if p.insulation_ohm is not None)
 
 
 def _ways(circuit: Circuit, healthy: Healthy) -> list[tuple[str, Condition]]:
@@ -212,7 +224,7 @@ def _off(
     quiet = dict.fromkeys((*(sources - direct), *circuit.signals), 0.0)
     return replace(
         steady,
-        twin=_ungated(steady.twin, circuit),
+        twin=_ungated(_without_leakage(steady.twin, but=_stated(circuit)), circuit),
         parent=condition.name,
         values={**steady.values, **quiet},
         removed=frozenset(gone),
@@ -271,7 +283,9 @@ def _charge(
     first_class, second_class = class_V(farad)
     own = insulation_of(position)
     past = inf if bleed_ohm is None else bleed_ohm
-    together = own if past == inf else own * past / (own + past)
+    together = own if past == inf else past
+    if past != inf and position.insulation_ohm is not None:
+        together = own * past / (own + past)  # an assumed one may be tighter, and does not count
     formula = {v: fall_s(together, farad, start_V=start_V, end_V=v) for v in THRESHOLDS_V}
     slow = [own.below_s.get(SAFE_V) for own in decays] or [formula[SAFE_V]]
     back = position.style.absorption

@@ -103,7 +103,8 @@ def part_stresses(
             return _transistor(part, waves)
         case Kind.DIODE:
             volts = _across(part, waves)
-            amps = waves.current(part.name)
+            meter = metered_pins(part)
+            amps = waves.current(f"{part.name}#{meter[0]}" if meter else part.name)
             return {
                 "average_A": waves.mean(amps),
                 "peak_A": float(amps.max()),

@@ -39,12 +39,17 @@ class Unjudged:
     stress: float
     key: str  # of the sheet, that would have it judged
 
-    def __str__(self) -> str:
+    @property
+    def risen(self) -> str:
+        """What has risen, from where to where, in words."""
         unit = STRESSES[self.quantity]
         return (
             f"{self.part} {QUANTITIES[self.quantity]} {figure(self.healthy, unit)} to "
-            f"{figure(self.stress, unit)} ({self.key})"
+            f"{figure(self.stress, unit)}"
         )
+
+    def __str__(self) -> str:
+        return f"{self.risen} ({self.key})"
 
 
 def unjudged(circuit: Circuit, stresses: Stresses, *, healthy: Stresses) -> tuple[Unjudged, ...]:

@@ -235,3 +235,11 @@ def test_the_sheet_goes_before_the_tags(circuit):
     p = circuit(text, '[capacitors.C1]\nrated = "50 V"\nvalue = "82 uF"').position("C1")
 
     assert (p.value_F, p.rated_V) == (82e-6, 50.0)
+
+
+@pytest.mark.parametrize("value", ["0", "-10u"])
+def test_a_value_that_no_part_has_is_told_and_not_judged(circuit, value):
+    found = circuit(STAGE + f"C9 g2 0 {value}\n")
+
+    assert "C9" not in [position.name for position in found.positions]
+    assert [f.where for f in found.findings if f.rule == "no-part"] == ["C9"]

@@ -219,3 +219,20 @@ def test_options_of_the_circuit_count_and_those_of_the_solver_do_not(twin_of, po
     answer = solve(pool, Case(name="gmin", twin=twin))
 
     assert answer.waves.voltage("b")[0] == pytest.approx(-5.0, rel=1e-3)
+
+
+def test_a_bridge_on_a_source_that_nothing_else_holds(twin_of, pool):
+    """Its source floats on junctions alone; the peak less the two drops of the diode law.
+
+    n VT ln(I/IS) is 0.53 V at the load's 0.65 A and 0.60 V with 0.05 ohm at some 2 A, each twice.
+    I/(fC) of 0.65 A at 100 Hz on 2200 uF is 3 V of ripple at most; half of it is lost in the mean.
+    """
+    cards = (
+        "Vline l n SIN(0 17 50)\nD1 l p DR\nD2 n p DR\nD3 0 l DR\nD4 0 n DR\n"
+        ".model DR D(IS=1n RS=0.05)\nC1 p 0 2200u\nRL p 0 24"
+    )
+    answer = solve(pool, Case(name="bridge", twin=twin_of(cards, period_s=0.02)))
+    voltage = answer.waves.voltage("p")
+
+    assert 17.0 - 1.3 < voltage.max() < 17.0 - 1.05
+    assert 1.0 < voltage.max() - voltage.min() < 3.0

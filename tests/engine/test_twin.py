@@ -117,6 +117,18 @@ def test_resistors_carry_no_meter():
     assert metered_pins(part) == ()
 
 
+@pytest.mark.parametrize(
+    ("elements", "metered"),
+    [(("D1",), ()), ((), ()), (("D1.Dx", "D1.Rs"), ("plus",))],
+    ids=["an element", "by hand", "a model with elements of its own"],
+)
+def test_a_diode_is_metered_where_it_is_no_element_itself(elements, metered):
+    pins = {"plus": "a", "minus": "b"}
+    part = Part(name="D1", kind=Kind.DIODE, pins=pins, elements=elements, span=SPAN)
+
+    assert metered_pins(part) == metered
+
+
 def test_nodes_put_in_series_start_where_the_netlist_says():
     """Else a capacitor that `.ic` charges against a node would start with that node at 0 V."""
     drawn = circuit(replace(capacitor(), nodes=("p", "k")), pins=PINS)

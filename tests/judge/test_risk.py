@@ -3,6 +3,8 @@
 The weights are common practice; what is tested is the order that anyone in the trade would give.
 """
 
+from dataclasses import replace
+
 import pytest
 
 from stress.circuit.circuit import Circuit, Kind, Line, Part, Position, Role
@@ -13,6 +15,7 @@ from stress.parts.limit import Limit
 from stress.parts.sheet import CapacitorEntry, Sheet
 from stress.parts.styles import find
 from stress.study.result import Failure, Leakage, LeakageIn, Victim, Worst
+from stress.study.unjudged import Unjudged
 from stress.text.span import Span
 
 SPAN = Span("set.cir", 1, 1, 1, "")
@@ -203,3 +206,21 @@ def test_a_dangerous_short_of_an_electrolytic_is_tested_before_power():
 
     assert found["C1"].severity is Severity.TEST
     assert found["C1"].reason == "short: Lop plate dissipation 15 W, limit 12 W"
+
+
+def test_a_short_that_strains_a_part_without_a_limit_is_tested_not_called_harmless():
+    """From ten times its healthy stress on; below that it may well be within a limit."""
+    of = circuit(position("C1", "aluminium", role=Role.RESERVOIR))
+
+    def shorted(stress):
+        strain = Unjudged(
+            part="Lop", quantity="current_A", healthy=0.035, stress=stress, key="current"
+        )
+        return replace(short("C1"), victims=(), dangerous=False, unjudged=(strain,))
+
+    severe = order(of, failures={"C1": (shorted(1.58),)})["C1"]
+    mild = order(of, failures={"C1": (shorted(0.2),)})["C1"]
+
+    assert severe.severity is Severity.TEST
+    assert severe.reason == "short: Lop current 35 mA to 1.58 A, its limit is not known"
+    assert mild.severity is Severity.NOTE
