@@ -110,14 +110,21 @@ def bears(
     text = f"bears {figure(abs(nominal.dc_V), 'V')}"
     if abs(nominal.dc_V) < NO_VOLTAGE_V:
         text = "bears no direct voltage"
-    if nominal.peak_V - abs(nominal.dc_V) > max(0.05 * abs(nominal.dc_V), 0.5):
+    if _peaks(nominal):
         text += f" with peaks of {figure(nominal.peak_V, 'V')}"
     if worst.worst_V > 1.03 * nominal.peak_V:
-        text += f", {figure(worst.worst_V, 'V')} {stock.told(worst.condition)}"
+        # A meter for direct voltage shows the mean; where the two differ it is said which it is.
+        what = "peaks of " if _peaks(stresses.get(worst.condition, nominal)) else ""
+        text += f", {what}{figure(worst.worst_V, 'V')} {stock.told(worst.condition)}"
     if worst.brief_V is not None and worst.brief_V > 1.03 * worst.worst_V:
         text += f", but {figure(worst.brief_V, 'V')} {stock.told(worst.brief_condition or '')}"
     text += _ripple(nominal)
     return f"{text}: {_fit(replacement, position)}" if replacement is not None else text
+
+
+def _peaks(stress: PositionStress) -> bool:
+    """Whether the peak is worth telling beside the mean."""
+    return stress.peak_V - abs(stress.dc_V) > max(0.05 * abs(stress.dc_V), 0.5)
 
 
 def _ripple(stress: PositionStress) -> str:

@@ -79,7 +79,7 @@ def healthy_over_limit(results: Results) -> Iterator[Finding]:
                     condition=condition.name,
                     text=f"{describe(victim)} ({limit.rating}, {limit.source}) with every "
                     "capacitor healthy",
-                    action="Check the sheet and the netlist against the real set.",
+                    action="check the sheet and the netlist against the real set",
                     rule="healthy-over-limit",
                 )
 

@@ -77,7 +77,8 @@ def _head(review: Review, out: Lines) -> None:
     circuit = review.circuit
     sheet = f"sheet {circuit.sheet.path}" if circuit.sheet.path else "no sheet"
     out.line(circuit.name, bold=True)
-    out.line(f"{circuit.netlist.path}, {sheet}; {len(circuit.positions)} positions")
+    many = len(circuit.positions)
+    out.line(f"{circuit.netlist.path}, {sheet}; {many} position{'s' if many != 1 else ''}")
     if review.cautions:
         out.line("Charged capacitors and live parts kill: the cautions stand at the end.")
 
