@@ -18,6 +18,7 @@ from typing import TypeAlias
 
 import numpy as np
 
+from stress.engine.beyond import bent
 from stress.engine.case import (
     Analysis,
     Answer,
@@ -193,6 +194,14 @@ def _solved(job: Job) -> Outcome:
 def _steady(job: Job, *, own: bool) -> Outcome:
     """Settle, and quiet what oscillates by itself where there is no relative to tell."""
     outcome = _settled(job, own=own)
+    past = _bent(job, outcome.answer)
+    if past:
+        reason = f"no operating point: the law of {past} leaves the range of exp there"
+        return Outcome(
+            answer=Unsolved(case=job.case, reason=reason, cycles=outcome.cycles),
+            memory=None,
+            cycles=outcome.cycles,
+        )
     if job.memory is not None or outcome.memory is None or job.quieted:
         return outcome
     found = _oscillating(job, outcome.memory)
@@ -208,6 +217,14 @@ def _steady(job: Job, *, own: bool) -> Outcome:
         memory = replace(memory, quieted=quieted)
     cycles = outcome.cycles + (again.cycles if quieted else 0)
     return replace(again, answer=answer, memory=memory, cycles=cycles)
+
+
+def _bent(job: Job, answer: Answer) -> str:
+    """Return whose law is past its range at an operating point, or ""."""
+    if not isinstance(answer, Settled) or answer.proof.method != "operating point":
+        return ""
+    elements = _PROCESS.draft(job, forever=True, easy=False).elements
+    return ", ".join(bent(elements, answer.waves))
 
 
 def _oscillating(job: Job, memory: Memory) -> tuple[Tank, ...]:

@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 from scipy.special import i0e
 
-from stress.engine.case import Case, Ran, Response, Settled, SmallSignal, Transient
+from stress.engine.case import Case, Ran, Response, Settled, SmallSignal, Transient, Unsolved
 
 pytestmark = pytest.mark.ngspice
 
@@ -236,3 +236,16 @@ def test_a_bridge_on_a_source_that_nothing_else_holds(twin_of, pool):
 
     assert 17.0 - 1.3 < voltage.max() < 17.0 - 1.05
     assert 1.0 < voltage.max() - voltage.min() < 3.0
+
+
+def test_a_circuit_without_an_operating_point_is_no_number(twin_of, pool):
+    """1 A + exp(V/20 mV) into 1 kohm: V/1k is below 1 A + exp(V/20 mV) for every V.
+
+    At 0 V it is 0 against 2 A; from there on the exponential grows faster, and below 0 V the left
+    side is negative. ngspice bends the exponential and returns 999.98 V.
+    """
+    cards = "I1 0 b 1\nB1 b 0 I=-exp(V(b)/0.02)\nR1 b 0 1k\nC1 b 0 1u"
+    answer = solve(pool, Case(name="none", twin=twin_of(cards)), Unsolved)
+
+    assert "B1" in answer.reason
+    assert "exp" in answer.reason
