@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -46,11 +46,10 @@ class Grid:
         return f"{OPTIONS} reltol={self.reltol!r} {self.more}"
 
 
-# After a numerical failure: smaller steps, a tolerance that is easier to meet, more patience, and
-# 10 gigohm from every node to ground, since what floats on junctions alone has no solution.
-CAREFUL = Grid(
-    points=400, reltol=1e-4, more="itl1=500 itl2=500 abstol=1e-10 vntol=1e-5 rshunt=1e10"
-)
+# After a numerical failure: smaller steps, a tolerance that is easier to meet, more patience.
+CAREFUL = Grid(points=400, reltol=1e-4, more="itl1=500 itl2=500 abstol=1e-10 vntol=1e-5")
+# After one more: what floats on junctions alone is only found with 10 gigohm to ground.
+SHUNTED = replace(CAREFUL, more=f"{CAREFUL.more} rshunt=1e10")
 
 
 class CycleMap:

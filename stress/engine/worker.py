@@ -33,7 +33,7 @@ from stress.engine.case import (
     Wandering,
     Waves,
 )
-from stress.engine.cycle import CAREFUL, Grid
+from stress.engine.cycle import CAREFUL, SHUNTED, Grid
 from stress.engine.deck import Deck
 from stress.engine.draft import Draft
 from stress.engine.ease import holders
@@ -243,7 +243,7 @@ def _oscillating(job: Job, memory: Memory) -> tuple[Tank, ...]:
 
 
 def _settled(job: Job, *, own: bool) -> Outcome:
-    """Settle; after a numerical failure once more from rest with more careful settings."""
+    """Settle; after a numerical failure again from rest with ever more careful settings."""
     deck = _PROCESS.draft(job, forever=True).deck(job.values)
 
     def spare() -> Deck:
@@ -253,24 +253,32 @@ def _settled(job: Job, *, own: bool) -> Outcome:
     try:
         return search.run(job.memory)
     except RunFailed as error:
+        first, spent = error, search.spent
+    for grid in (CAREFUL, SHUNTED):
         again = Search(_PROCESS.ngspice, spare(), spare=spare, case=job.case, own=own)
         try:
-            outcome = again.run(None, grid=CAREFUL)
+            outcome = again.run(None, grid=grid)
         except RunFailed:
-            spent = search.spent + again.spent
-            answer = Unsolved(case=job.case, reason=str(error), cycles=spent)
-            return Outcome(answer=answer, memory=None, cycles=spent)
-        return replace(outcome, cycles=outcome.cycles + search.spent)
+            spent += again.spent
+        else:
+            return replace(outcome, cycles=outcome.cycles + spent)
+    answer = Unsolved(case=job.case, reason=str(first), cycles=spent)
+    return Outcome(answer=answer, memory=None, cycles=spent)
 
 
 def _transient(job: Job, asked: Transient) -> Outcome:
-    """Run; after a numerical failure once more with more careful settings."""
+    """Run; after a numerical failure again with ever more careful settings."""
     grid = Grid() if job.memory is None else job.memory.grid
     try:
         return _ran(job, asked, grid=grid, easy=True)
-    except RunFailed:
-        careful = replace(grid, reltol=CAREFUL.reltol, more=CAREFUL.more)
-        return _ran(job, asked, grid=careful, easy=False)
+    except RunFailed as error:
+        first = error
+    for careful in (CAREFUL, SHUNTED):
+        try:
+            return _ran(job, asked, grid=replace(careful, points=grid.points), easy=False)
+        except RunFailed:
+            continue
+    raise first
 
 
 def _ran(job: Job, asked: Transient, *, grid: Grid, easy: bool) -> Outcome:
