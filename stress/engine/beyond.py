@@ -1,6 +1,6 @@
 """Whether a solution lies where a law has left the range of its exponentials.
 
-ngspice bends exp beyond 227.9 instead of stopping, and then finds "solutions" of circuits that have
+ngspice bends exp beyond `MOST_EXPONENT` instead of stopping, and then finds "solutions" of circuits that have
 none. Such an operating point is refused.
 """
 
@@ -10,7 +10,7 @@ from collections.abc import Iterable
 
 from stress.engine.case import Waves
 from stress.engine.tree import inner
-from stress.netlist.evaluate import FUNCTIONS, OPERATORS
+from stress.netlist.evaluate import FUNCTIONS, MOST_EXPONENT, OPERATORS
 from stress.netlist.expression import (
     Binary,
     Call,
@@ -23,8 +23,6 @@ from stress.netlist.expression import (
     Voltage,
 )
 from stress.netlist.flat import Element
-
-MOST = 227.9  # the largest argument of exp that ngspice takes as it is
 
 
 def bent(elements: Iterable[Element], waves: Waves) -> tuple[str, ...]:
@@ -63,7 +61,7 @@ def _value(part: Expression, rows: dict[str, float]) -> float:
     if isinstance(part, Binary):
         return OPERATORS[part.operator](*values)
     assert isinstance(part, Call)
-    if part.function == "exp" and values[0] > MOST:
+    if part.function == "exp" and values[0] > MOST_EXPONENT:
         raise OverflowError
     return FUNCTIONS[part.function](*values)
 

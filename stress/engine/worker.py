@@ -40,10 +40,12 @@ from stress.engine.ease import holders
 from stress.engine.memory import Memory, Outcome, inherited, start_from, translated
 from stress.engine.ngspice import VARIABLE, Broken, DeckRefused, Ngspice, RunFailed
 from stress.engine.oscillation import Tank, oscillates, tanks
+from stress.engine.response import response
 from stress.engine.solver import Versions
 from stress.engine.steady import Search
 from stress.engine.topology import LoopOfSources
 
+SHUNT_NOTICE = "solved with 10 gigohm from every node to ground, without which nothing starts"
 KEPT_TWINS, KEPT_DRAFTS = 8, 64
 STEPS = 1000  # of a transient without a period
 
@@ -261,9 +263,17 @@ def _settled(job: Job, *, own: bool) -> Outcome:
         except RunFailed:
             spent += again.spent
         else:
-            return replace(outcome, cycles=outcome.cycles + spent)
+            answer = _told(outcome.answer, grid)
+            return replace(outcome, answer=answer, cycles=outcome.cycles + spent)
     answer = Unsolved(case=job.case, reason=str(first), cycles=spent)
     return Outcome(answer=answer, memory=None, cycles=spent)
+
+
+def _told(answer: Answer, grid: Grid) -> Answer:
+    """Return an answer that says what was added to the circuit so that it could be solved."""
+    if grid is not SHUNTED or isinstance(answer, Unsolved):
+        return answer
+    return replace(answer, notices=(*answer.notices, SHUNT_NOTICE))
 
 
 def _transient(job: Job, asked: Transient) -> Outcome:
@@ -275,9 +285,10 @@ def _transient(job: Job, asked: Transient) -> Outcome:
         first = error
     for careful in (CAREFUL, SHUNTED):
         try:
-            return _ran(job, asked, grid=replace(careful, points=grid.points), easy=False)
+            outcome = _ran(job, asked, grid=replace(careful, points=grid.points), easy=False)
         except RunFailed:
             continue
+        return replace(outcome, answer=_told(outcome.answer, careful))
     raise first
 
 
@@ -315,7 +326,7 @@ def _small_signal(job: Job, asked: SmallSignal) -> Outcome:
     values = np.empty((len(names), len(asked.frequencies_Hz)), dtype=np.complex128)
     for column, frequency_Hz in enumerate(asked.frequencies_Hz):
         ngspice.small_signal(frequency_Hz)
-        values[:, column] = _response(ngspice, deck, frequency_Hz)
+        values[:, column] = response(ngspice, deck, frequency_Hz)
     answer = Response(
         case=job.case,
         frequencies_Hz=np.array(asked.frequencies_Hz),
@@ -324,23 +335,3 @@ def _small_signal(job: Job, asked: SmallSignal) -> Outcome:
         notices=deck.notices,
     )
     return Outcome(answer=answer, memory=None, cycles=len(asked.frequencies_Hz))
-
-
-def _response(ngspice: Ngspice, deck: Deck, frequency_Hz: float) -> list[complex]:
-    """Return the row values of one frequency; capacitors' currents follow from their voltages."""
-    states = {f"i({state.element.lower()})": state for state in deck.states if state.kind == "C"}
-
-    def at(node: str) -> complex:
-        return 0j if node in ("0", "") else complex(ngspice.complex_vector(node)[-1])
-
-    found: list[complex] = []
-    for probe in deck.probes:
-        state = states.get(probe.name)
-        if state is not None:
-            voltage = at(state.plus) - at(state.minus)
-            found.append(2j * np.pi * frequency_Hz * state.size * voltage)
-        elif probe.vector.startswith("@"):
-            found.append(complex("nan"))
-        else:
-            found.append(at(probe.vector))
-    return found

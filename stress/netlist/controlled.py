@@ -104,7 +104,10 @@ def _behave(part: Part, into: Assembly, found: Expression) -> None:
     quantity = "V" if part.letter in "EH" else "I"
     times = _multiplier(part)
     if quantity == "I" and times != 1:
-        found = Binary("*", Number(times), found)
+        if isinstance(found, Number):
+            found = Number(times * found.value)
+        else:
+            found = Binary("*", Number(times), found)
     into.add(part, "B", part.nodes(2), law=Law(quantity, found))
 
 

@@ -17,7 +17,8 @@ from stress.netlist.expression import (
     Voltage,
 )
 
-_LARGEST = 1e99  # where ngspice holds its exponential
+MOST_EXPONENT = 227.9  # beyond it ngspice does not raise e any further
+_LARGEST = 1e99  # where it holds the exponential then
 
 
 def _power(x: float, y: float) -> float:
@@ -38,7 +39,7 @@ def _table(x: float, *points: float) -> float:
 
 
 def _exp(x: float) -> float:
-    return math.exp(x) if x < 227.9 else _LARGEST
+    return math.exp(x) if x < MOST_EXPONENT else _LARGEST
 
 
 def _sign(x: float) -> float:

@@ -236,6 +236,7 @@ def test_a_bridge_on_a_source_that_nothing_else_holds(twin_of, pool):
 
     assert 17.0 - 1.3 < voltage.max() < 17.0 - 1.05
     assert 1.0 < voltage.max() - voltage.min() < 3.0
+    assert "10 gigohm from every node to ground" in " ".join(answer.notices)
 
 
 def test_a_circuit_without_an_operating_point_is_no_number(twin_of, pool):
